@@ -1,0 +1,1 @@
+"""Arrival times and amplitudes of sea-level signals along coasts and the equator."""

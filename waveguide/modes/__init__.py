@@ -1,0 +1,1 @@
+"""Vertical and coastal-trapped modes."""

@@ -1,0 +1,1 @@
+"""Directed legs, junctions, the mode atlas and the route search."""

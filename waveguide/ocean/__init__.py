@@ -1,0 +1,1 @@
+"""Depth and stratification, packaged or the user's own."""

@@ -1,0 +1,1 @@
+"""What a route does to a signal: dispersion, junctions, waveforms, arrivals."""

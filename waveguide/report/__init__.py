@@ -1,0 +1,1 @@
+"""Tables, files and figures made from results."""
