@@ -1,0 +1,21 @@
+"""The scenario file: TOML in, a checked and frozen :class:`Scenario` out.
+
+This package is the only place that knows the syntax of the file.
+"""
+
+from __future__ import annotations
+
+from waveguide.scenario.model import Event, Ocean, Output, Scenario, Target, Waves
+from waveguide.scenario.reading import find_scenario, read_scenario, shipped_scenarios
+
+__all__ = [
+    "Event",
+    "Ocean",
+    "Output",
+    "Scenario",
+    "Target",
+    "Waves",
+    "find_scenario",
+    "read_scenario",
+    "shipped_scenarios",
+]

@@ -1,0 +1,142 @@
+"""The sentences a person reads when a scenario file cannot be used.
+
+Each names the key, the value, the rule that was broken and the way out.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from datetime import date
+from difflib import get_close_matches
+from typing import TYPE_CHECKING, Any
+
+from waveguide.scenario.model import Event, Ocean, Output, Scenario, Target, Waves
+
+if TYPE_CHECKING:
+    from pydantic_core import ErrorDetails
+
+_KEYS: dict[str, tuple[str, ...]] = {
+    "": (*Scenario.model_fields, "targets_file"),
+    "event": tuple(Event.model_fields),
+    "targets": tuple(Target.model_fields),
+    "waves": tuple(Waves.model_fields),
+    "ocean": tuple(Ocean.model_fields),
+    "output": tuple(Output.model_fields),
+}
+
+_WAY_OUT = {
+    "name": "write a name of 1 to 120 characters, in quotes",
+    "title": 'write a title of 1 to 120 characters, as in title = "Wind burst on the equator"',
+    "description": "write a text of at most 4000 characters, in quotes",
+    "event": "write an [event] table with start, duration_days and position or box",
+    "event.name": "write a name of 1 to 120 characters, in quotes, or leave it out",
+    "event.position": "write position = [longitude, latitude], in degrees east and north",
+    "event.box": "write box = [west, south, east, north], in degrees east and north",
+    "event.start": "write date, time and zone, as in start = 2031-03-05T00:00:00Z",
+    "event.duration_days": "write the duration in days, as in duration_days = 10",
+    "event.amplitude_m": "write sea level in metres, or leave the key out where it is unknown",
+    "targets": "write a [[targets]] table for each target, or targets_file at the top of the file",
+    "targets.name": 'write a name of 1 to 120 characters, as in name = "Callao"',
+    "targets.position": "write position = [longitude, latitude], in degrees east and north",
+    "waves": "write a [waves] table with modes and period_days",
+    "waves.modes": "write a list of 0 (barotropic) and 1 to 3 (baroclinic), as in modes = [1, 2]",
+    "waves.period_days": "write the dominant period in days, as in period_days = 20",
+    "ocean": "write an [ocean] table, or leave it out to use the packaged ocean",
+    "ocean.bathymetry": "name a NetCDF file, or leave the key out to use the packaged depths",
+    "ocean.climatology": "name a NetCDF file, or leave the key out to use the packaged one",
+    "ocean.temperature": 'write "in-situ", "potential" or "conservative"',
+    "ocean.phase_speed_m_s": "write a speed in m/s, as in phase_speed_m_s = 2.5",
+    "output": "write an [output] table, or leave it out to get every format",
+    "output.formats": 'write a list of "csv", "netcdf", "geojson" and "map"',
+}
+
+_RULES = {
+    "missing": "it is missing",
+    "finite_number": "it must be a finite number",
+    "float_type": "it must be a number",
+    "int_type": "it must be a whole number",
+    "int_from_float": "it must be a whole number",
+    "string_type": "it must be a text in quotes",
+    "string_too_short": "it must not be empty",
+    "string_too_long": "it must have at most {max_length} characters",
+    "greater_than": "it must be greater than {gt:g}",
+    "greater_than_equal": "it must be at least {ge:g}",
+    "less_than_equal": "it must be at most {le:g}",
+    "too_long": "it has too many values",
+    "tuple_type": "it must be a list",
+    "model_type": "it must be a table",
+    "literal_error": "it must be one of {expected}",
+}
+
+
+def problem_lines(errors: Sequence[ErrorDetails], target_labels: Sequence[str]) -> list[str]:
+    """One line for each thing the models refused.
+
+    Parameters
+    ----------
+    errors : sequence of ErrorDetails
+        As given by ``pydantic.ValidationError.errors()``.
+    target_labels : sequence of str
+        What a person calls each target, for example ``"gauges.csv row 3"``.
+
+    Returns
+    -------
+    list of str
+        Without repetition, in the order of the errors.
+    """
+    return list(dict.fromkeys(_line(error, target_labels) for error in errors))
+
+
+def unknown_key(table: str, key: str) -> str:
+    """The rule and the way out for a key that `table` ("" for the top) does not know."""
+    keys = _KEYS[table]
+    where = _heading(table)
+    home = next((t for t, known in _KEYS.items() if key in known and t != table), None)
+    if home is not None:
+        above = "" if home else ", above the first [table]"
+        return f"this key belongs {_heading(home)}{above}, not {where}"
+    near = get_close_matches(key.lower(), keys, n=1)
+    meant = f"did you mean {near[0]}? " if near else ""
+    return f"unknown key {where}; {meant}the keys there are {', '.join(keys)}"
+
+
+def shown(value: object) -> str:
+    """A value as one short line, whatever it holds."""
+    text = str(value) if isinstance(value, date) else repr(value)
+    return text if len(text) <= 60 else text[:57] + "..."
+
+
+def _heading(table: str) -> str:
+    if not table:
+        return "at the top of the file"
+    return "in a [[targets]] table" if table == "targets" else f"in [{table}]"
+
+
+def _line(error: ErrorDetails, target_labels: Sequence[str]) -> str:
+    loc = error["loc"]
+    words = [str(part) for part in loc if isinstance(part, str)]
+    value = error["input"]
+    subject = _subject(loc, words, target_labels)
+    if not isinstance(value, Mapping):  # a whole table is not printed
+        subject = f"{subject} = {shown(value)}"
+    if error["type"] == "extra_forbidden":
+        return f"{subject}: {unknown_key('.'.join(words[:-1]), words[-1])}"
+    advice = "; ".join(filter(None, (_rule(error), _WAY_OUT.get(".".join(words)))))
+    return f"{subject}: {advice}".removeprefix(": ")
+
+
+def _subject(loc: tuple[int | str, ...], words: list[str], target_labels: Sequence[str]) -> str:
+    """The key as a person would point at it: ``event.start``, ``gauges.csv row 3 position``."""
+    if len(loc) > 1 and loc[0] == "targets" and isinstance(loc[1], int):
+        return " ".join([target_labels[loc[1]], *words[1:]])
+    return ".".join(words)
+
+
+def _rule(error: ErrorDetails) -> str:
+    context: dict[str, Any] = error.get("ctx", {})
+    if error["type"] == "value_error":
+        return str(context["error"])
+    if error["type"] == "missing" and isinstance(error["loc"][-1], int):
+        return "it has too few values"
+    template = _RULES.get(error["type"])
+    return template.format(**context) if template else error["msg"]

@@ -1,0 +1,129 @@
+"""From a scenario file, named by its path or by the name of a shipped one, to a Scenario."""
+
+from __future__ import annotations
+
+import os
+import tomllib
+from difflib import get_close_matches
+from pathlib import Path
+from typing import Any
+
+from pydantic import ValidationError
+
+from waveguide.errors import InputError
+from waveguide.scenario.model import Scenario
+from waveguide.scenario.problems import problem_lines, shown
+from waveguide.scenario.target_table import TargetTable, read_target_table
+
+
+def read_scenario(scenario: str | Path) -> Scenario:
+    """Read and check a scenario file.
+
+    Parameters
+    ----------
+    scenario : str or Path
+        The path of a TOML file, or the name of a shipped scenario.
+
+    Returns
+    -------
+    Scenario
+
+    Raises
+    ------
+    InputError
+        With every problem of the file and of its targets file at once.
+    """
+    path = find_scenario(scenario)
+    document = _parse(path)
+    listed = _listed_targets(document, path.parent)
+    labels = _join_targets(document, listed)
+    document.setdefault("name", path.stem)
+    try:
+        result = Scenario.model_validate(document, context={"folder": path.parent})
+        problems = listed.problems
+    except ValidationError as error:
+        errors = error.errors(include_url=False)
+        if listed.problems:  # that no target is left then is no further news
+            errors = [e for e in errors if e["loc"] != ("targets",)]
+        problems = problem_lines(errors, labels) + listed.problems
+    if problems:
+        raise InputError([f"{path.name}: {problem}" for problem in problems])
+    return result
+
+
+def shipped_scenarios() -> dict[str, Path]:
+    """The scenarios that come with the package: name to path, in alphabetical order."""
+    return {path.stem: path for path in sorted(_scenario_folder().glob("*.toml"))}
+
+
+def find_scenario(scenario: str | Path) -> Path:
+    """The file that a path or the name of a shipped scenario stands for.
+
+    Parameters
+    ----------
+    scenario : str or Path
+        A path comes first where a file of that name exists.
+
+    Returns
+    -------
+    Path
+
+    Raises
+    ------
+    InputError
+        Where there is neither such a file nor a shipped scenario of that name.
+    """
+    if os.path.isfile(scenario):
+        return Path(scenario)
+    shipped = shipped_scenarios()
+    if str(scenario) in shipped:
+        return shipped[str(scenario)]
+    near = get_close_matches(str(scenario), shipped, n=1)
+    meant = f"did you mean {near[0]}? " if near else ""
+    raise InputError(
+        f"scenario {shown(str(scenario))}: there is no such file and no shipped scenario of that "
+        f"name; {meant}shipped are {', '.join(shipped)}"
+    )
+
+
+def _scenario_folder() -> Path:
+    """The shipped scenarios, inside an installed wheel or beside the package in a clone."""
+    package = Path(__file__).resolve().parents[1]
+    installed = package / "_scenarios"
+    return installed if installed.is_dir() else package.parent / "scenarios"
+
+
+def _parse(path: Path) -> dict[str, Any]:
+    try:
+        return tomllib.loads(path.read_bytes().decode("utf-8-sig"))
+    except OSError as error:
+        raise InputError(f"scenario {path.name}: it cannot be opened ({error.strerror})") from None
+    except (ValueError, RecursionError) as error:
+        raise InputError(
+            f"{path.name}: this is not a TOML file in UTF-8 ({error}); correct it there, or start "
+            "from a shipped scenario"
+        ) from None
+
+
+def _listed_targets(document: dict[str, Any], folder: Path) -> TargetTable:
+    """The targets of the targets file, which leaves `document`."""
+    if "targets_file" not in document:
+        return TargetTable([], [], [])
+    name = document.pop("targets_file")
+    if not isinstance(name, str) or not os.path.isfile(folder / name):
+        problem = (
+            f"targets_file = {shown(name)}: there is no such file, seen from the folder of the "
+            'scenario; name a CSV file, as in targets_file = "gauges.csv"'
+        )
+        return TargetTable([], [], [problem])
+    return read_target_table(folder / name)
+
+
+def _join_targets(document: dict[str, Any], listed: TargetTable) -> list[str]:
+    """Put the listed targets after the inline ones; what a person calls each of them."""
+    inline = document.get("targets", [])
+    if not isinstance(inline, list):
+        return []  # refused by the model
+    if inline or listed.targets:
+        document["targets"] = inline + listed.targets
+    return [f"target {number + 1}" for number in range(len(inline))] + listed.labels
