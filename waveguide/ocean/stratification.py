@@ -19,7 +19,11 @@ if TYPE_CHECKING:
 Array = NDArray[np.float64]
 
 SEARCH_DISTANCE = 500e3
-"""Distance (m) within which a column of the climatology is taken for a position."""
+"""Distance (m) within which a deep enough column is taken for a position."""
+
+SHORE_DISTANCE = 200e3
+"""Distance (m) within which the sea of the climatology must begin: two of its cells, so that
+no sea without data (the Black Sea, the Caspian) takes the water of another."""
 
 
 @dataclass(frozen=True)
@@ -151,11 +155,11 @@ class Climatology:
         from scipy.spatial import KDTree
 
         wet = np.flatnonzero(self.levels > 0)
-        _, nearest = KDTree(self.vectors[wet]).query(vectors)
+        away, nearest = KDTree(self.vectors[wet]).query(vectors)
         start = wet[nearest]
         column = np.full(start.size, -1)
         for number in np.unique(count[count <= self.depth.size]):
-            here = count == number
+            here = (count == number) & (arc(away) <= SHORE_DISTANCE)
             column[here] = self.nearest_with(int(number))[start[here]]
         return column
 
@@ -179,7 +183,8 @@ class Climatology:
         Returns
         -------
         Profiles
-            With NaN where no such column lies within `SEARCH_DISTANCE`.
+            With NaN where no sea lies within `SHORE_DISTANCE` or no such column within
+            `SEARCH_DISTANCE`.
         """
         x, y, deep = np.broadcast_arrays(
             np.atleast_1d(wrap_longitude(lon)), np.asarray(lat, float), minimum_depth
