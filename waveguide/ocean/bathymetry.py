@@ -12,7 +12,13 @@ from numpy.typing import ArrayLike, NDArray
 
 from waveguide.errors import InputError
 from waveguide.geodesy import wrap_longitude
-from waveguide.ocean.gridded import axis_name, horizontal_grid, open_grid, read_values
+from waveguide.ocean.gridded import (
+    axis_name,
+    horizontal_grid,
+    metres_per_unit,
+    open_grid,
+    read_values,
+)
 from waveguide.ocean.packaged import packaged_file
 
 if TYPE_CHECKING:
@@ -34,10 +40,6 @@ DOWNWARD_STANDARD_NAMES = {
     "sea_floor_depth_below_geoid", "sea_floor_depth_below_mean_sea_level", "sea_floor_depth",
     "sea_floor_depth_below_sea_surface", "sea_floor_depth_below_sea_level", "depth",
     "model_sea_floor_depth_below_geoid", "sea_floor_depth_below_reference_ellipsoid",
-}
-LENGTHS = {
-    "": 1.0, "m": 1.0, "meter": 1.0, "meters": 1.0, "metre": 1.0, "metres": 1.0,
-    "km": 1e3, "kilometer": 1e3, "kilometers": 1e3, "kilometre": 1e3, "kilometres": 1e3,
 }
 
 
@@ -190,7 +192,7 @@ def read_bathymetry(path: str | Path, variable: str | None = None) -> Bathymetry
         attributes = dict(field.attrs)
         name = str(field.name)
     values = grid.apply(values).astype(np.float32)
-    values *= np.float32(_unit(attributes, name, path))
+    values *= np.float32(metres_per_unit(attributes, name, path))
     if not np.isfinite(values).any():
         raise InputError(f"data file {path}: every value of {name} is missing; give another file")
     upward, note = points_up(name, attributes, grid.lon, grid.lat, values)
@@ -251,18 +253,6 @@ def _likeness(array: xr.DataArray) -> int:
         return 0
     name = str(array.name).lower()
     return 1 if name in UPWARD_NAMES | DOWNWARD_NAMES else 2 if name in OTHER_NAMES else 3
-
-
-def _unit(attributes: dict[str, object], name: str, path: str | Path) -> float:
-    """Metres in one unit of the variable."""
-    text = str(attributes.get("units", "")).strip().lower()
-    words = text.split()
-    if (words[0] if words else "") not in LENGTHS:
-        raise InputError(
-            f"data file {path}: {name} is in {text!r}, which is no length known here; convert "
-            "it to m or km"
-        )
-    return LENGTHS[words[0] if words else ""]
 
 
 def points_up(

@@ -32,6 +32,13 @@ AXES = {
 }
 """For each axis the units and the usual names, as regular expressions."""
 
+LENGTHS = {
+    "": 1.0, "m": 1.0, "meter": 1.0, "meters": 1.0, "metre": 1.0, "metres": 1.0,
+    "km": 1e3, "kilometer": 1e3, "kilometers": 1e3, "kilometre": 1e3, "kilometres": 1e3,
+    "cm": 1e-2, "centimeter": 1e-2, "centimeters": 1e-2, "centimetre": 1e-2, "centimetres": 1e-2,
+}
+"""Units of length (m); none at all means metres."""
+
 
 @dataclass(frozen=True)
 class HorizontalGrid:
@@ -230,3 +237,15 @@ def check_axis(name: str, axis: Array, path: str | Path) -> None:
             f"data file {path}: {name} is not monotonic ({axis[k]:g} is followed by "
             f"{axis[k + 1]:g}); sort the file along it"
         )
+
+
+def metres_per_unit(attributes: dict[str, object], name: str, path: str | Path) -> float:
+    """Metres in the unit of a variable, which is the first word of its attribute `units`."""
+    text = str(attributes.get("units", "")).strip()
+    word = text.lower().split()[0] if text else ""
+    if word not in LENGTHS:
+        raise InputError(
+            f"data file {path}: {name} is in {text!r}, which is no length known here; convert "
+            "it to m or km"
+        )
+    return LENGTHS[word]
