@@ -1,0 +1,131 @@
+"""Shared by all tests: a small set of arrivals made by hand."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+import pytest
+import xarray as xr
+
+from waveguide.schema import ARRIVALS, ARRIVALS_ATTRIBUTES, CAUTION, assemble
+
+# Two targets and one out of reach, two modes. Mode 1 crosses the date line along the equator
+# and turns along the coast of South America; the first target has a second route.
+ROUTES = [
+    # target, mode, kind, via, legs: (kind, [(lon, lat), …], speed m/s)
+    (0, 0, "earliest", "the equator", [
+        ("attachment", [(165.0, 0.5), (165.0, 0.0)], 2.5),
+        ("equator", [(165.0, 0.0), (175.0, 0.0), (-175.0, 0.0), (-120.0, 0.0), (-80.5, 0.0)], 2.5),
+        ("coast", [(-80.5, 0.0), (-81.2, -4.6), (-79.0, -8.1), (-77.2, -12.1)], 2.8),
+    ]),
+    (0, 0, "alternative", "Galápagos", [
+        ("equator", [(165.0, 0.0), (-170.0, 0.0), (-90.0, 0.0)], 2.5),
+        ("facing coast", [(-90.0, 0.0), (-80.5, -2.0)], 1.5),
+        ("coast", [(-80.5, -2.0), (-77.2, -12.1)], 2.8),
+    ]),
+    (0, 1, "earliest", "the equator", [
+        ("equator", [(165.0, 0.0), (-160.0, 0.0), (-80.5, 0.0)], 1.6),
+        ("coast", [(-80.5, 0.0), (-81.2, -4.6), (-77.2, -12.1)], 1.9),
+    ]),
+    (1, 0, "earliest", "the equator", [
+        ("equator", [(165.0, 0.0), (-160.0, 0.0), (-80.5, 0.0)], 2.5),
+        ("coast", [(-80.5, 0.0), (-78.0, 7.0), (-99.9, 16.8)], 2.7),
+    ]),
+]  # fmt: skip
+NAMES = ["Callao", "Acapulco", "=Lima\n$x_1$ \u202eevil"]
+PLACES = [(-77.15, -12.05), (-99.92, 16.82), (-60.0, -10.0)]
+
+
+def _ragged() -> dict[str, list[object]]:
+    """Routes, legs and vertices of ROUTES as columns."""
+    from waveguide.geodesy import geodesic_length
+
+    table: dict[str, list[object]] = {n: [] for n, v in ARRIVALS.items() if len(v.dims) == 1}
+    for route, (target, mode, kind, via, legs) in enumerate(ROUTES):
+        distance = time = 0.0
+        for leg_kind, line, speed in legs:
+            leg = len(table["leg_kind"])
+            lon, lat = np.transpose(line)
+            steps = geodesic_length(lon[:-1], lat[:-1], lon[1:], lat[1:]) / 1e3
+            along = distance + np.concatenate([[0.0], np.cumsum(steps)])
+            days = time + (along - distance) * 1e3 / speed / 86400.0
+            for column, value in {
+                "leg_route": route, "leg_kind": leg_kind, "leg_length_km": steps.sum(),
+                "leg_from_longitude": lon[0], "leg_from_latitude": lat[0],
+                "leg_to_longitude": lon[-1], "leg_to_latitude": lat[-1],
+                "leg_time_days": days[-1] - time, "leg_phase_speed_m_s": speed,
+                "leg_amplitude_factor": 0.8,
+            }.items():  # fmt: skip
+                table[column].append(value)
+            for column, values in {
+                "vertex_leg": [leg] * len(lon), "vertex_longitude": lon, "vertex_latitude": lat,
+                "vertex_distance_km": along, "vertex_time_days": days,
+            }.items():  # fmt: skip
+                table[column].extend(values)
+            distance, time = float(along[-1]), float(days[-1])
+        for column, value in {
+            "route_target": target, "route_mode": mode, "route_kind": kind, "route_via": via,
+            "route_front_time_days": time, "route_amplitude_ratio": 0.8 ** len(legs),
+            "route_length_km": distance,
+        }.items():  # fmt: skip
+            table[column].append(value)
+    return table
+
+
+def build_arrivals() -> xr.Dataset:
+    """Arrivals made by hand: Callao in two modes, Acapulco in the first, an inland target."""
+    table = _ragged()
+    rows: dict[str, np.ndarray] = {
+        name: np.full((3, 2), np.nan)
+        for name, variable in ARRIVALS.items()
+        if variable.dims == ("target", "mode") and variable.kind == "number"
+    }
+    status = np.full((3, 2), "off the guide", dtype="<U24")
+    status[1, 1] = "no route"
+    caution = np.full((3, 2), "", dtype="<U120")
+    caution[0, 0] = "shelf wider than the deformation radius; ω/|f| is not small"
+    caution[0, 1] = "ω/|f| is not small"
+    for route, (target, mode, kind, _, _) in enumerate(ROUTES):
+        if kind != "earliest":
+            continue
+        row = target, mode
+        status[row] = "reached"
+        rows["front_time_days"][row] = table["route_front_time_days"][route]
+        rows["path_length_km"][row] = table["route_length_km"][route]
+        rows["amplitude_ratio"][row] = table["route_amplitude_ratio"][route]
+        rows["mean_speed_m_s"][row] = (
+            rows["path_length_km"][row] * 1e3 / rows["front_time_days"][row] / 86400.0
+        )
+    start = np.datetime64("2031-03-05T00:00:00", "ns")
+    known = np.isfinite(rows["front_time_days"])
+    delay = np.where(known, rows["front_time_days"], 0.0) * 86400e9
+    date = np.where(known, start + delay.astype("timedelta64[ns]"), np.datetime64("NaT"))
+    lon, lat = np.transpose(PLACES)
+    values = {
+        "target": NAMES, "mode": [1, 2], "target_longitude": lon, "target_latitude": lat,
+        "status": status, "caution": caution, "front_date": date, **rows,
+        **{name: column for name, column in table.items() if name not in ("target", "mode")
+           and not name.startswith("target_")},
+    }  # fmt: skip
+    attributes = dict.fromkeys(ARRIVALS_ATTRIBUTES, "") | {
+        "Conventions": "CF-1.11",
+        "title": "A burst with $dollars$ in its name",
+        "scenario": "by_hand",
+        "event_name": "burst",
+        "event_start": "2031-03-05T00:00:00Z",
+        "event_duration_days": 10.0,
+        "event_amplitude_m": math.nan,
+        "source_longitude": 165.0,
+        "source_latitude": 0.5,
+        "period_days": 40.0,
+        "ocean": "packaged",
+        "source": "waveguide 0",
+        "caution": CAUTION,
+    }
+    return assemble(values, attributes)
+
+
+@pytest.fixture
+def arrivals() -> xr.Dataset:
+    return build_arrivals()

@@ -1,0 +1,72 @@
+"""The arrivals and the legs of their routes as CSV, for a spreadsheet."""
+
+from __future__ import annotations
+
+import csv
+from collections.abc import Iterator, Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from waveguide.report.document import plain_value
+from waveguide.report.routes import legs_of
+from waveguide.report.text import plain
+from waveguide.schema import ARRIVALS
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+_ROW = [name for name, v in ARRIVALS.items() if v.dims == ("target", "mode")]
+_PLACE = ["target_longitude", "target_latitude"]
+_ROUTE = ["route_kind", "route_via"]
+_LEG = [name for name, v in ARRIVALS.items() if v.dims == ("leg",) and name != "leg_route"]
+
+_FORMULA = ("=", "+", "-", "@")
+"""First characters by which a spreadsheet takes a text for a formula."""
+
+
+def write_csv(dataset: xr.Dataset, folder: Path) -> None:
+    """Write ``arrivals.csv``, a line for each target and mode, and ``legs.csv``, one for each leg.
+
+    Missing numbers are empty; a text that a spreadsheet would run as a formula starts with an
+    apostrophe.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+        Arrivals that pass :func:`waveguide.schema.check`.
+    folder : Path
+    """
+    _write(folder / "arrivals.csv", ["target", *_PLACE, "mode", *_ROW], _arrival_rows(dataset))
+    _write(folder / "legs.csv", ["target", "mode", *_ROUTE, "leg", *_LEG], _leg_rows(dataset))
+
+
+def _write(path: Path, header: Sequence[str], rows: Iterator[list[Any]]) -> None:
+    with path.open("w", encoding="utf-8", newline="") as file:
+        writer = csv.writer(file, lineterminator="\n")
+        writer.writerow(header)
+        writer.writerows([_cell(value) for value in row] for row in rows)
+
+
+def _cell(value: Any) -> Any:
+    value = plain_value(value)
+    if not isinstance(value, str):
+        return "" if value is None else value
+    text = plain(value, limit=1000)
+    return f"'{text}" if text.startswith(_FORMULA) else text
+
+
+def _arrival_rows(dataset: xr.Dataset) -> Iterator[list[Any]]:
+    for t, target in enumerate(dataset["target"].values):
+        for m, mode in enumerate(dataset["mode"].values):
+            place = [dataset[name].values[t] for name in _PLACE]
+            yield [target, *place, mode, *(dataset[name].values[t, m] for name in _ROW)]
+
+
+def _leg_rows(dataset: xr.Dataset) -> Iterator[list[Any]]:
+    for route in range(dataset.sizes["route"]):
+        head = [
+            dataset[dim].values[dataset[f"route_{dim}"].values[route]] for dim in ("target", "mode")
+        ]
+        head += [dataset[name].values[route] for name in _ROUTE]
+        for number, leg in enumerate(legs_of(dataset, route), start=1):
+            yield [*head, number, *(dataset[name].values[leg] for name in _LEG)]

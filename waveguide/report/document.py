@@ -1,0 +1,113 @@
+"""The arrivals as one JSON document."""
+
+from __future__ import annotations
+
+import math
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from waveguide.report.routes import legs_of, routes_of
+from waveguide.schema import ARRIVALS
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+_ROW = [name for name, v in ARRIVALS.items() if v.dims == ("target", "mode")]
+_EVENT = ("event_name", "event_start", "event_duration_days", "event_amplitude_m")
+_HEAD = ("scenario", "title", "summary", "period_days", "ocean", "source", "data_sha256", "caution")
+
+
+def document(dataset: xr.Dataset) -> dict[str, Any]:
+    """The arrivals as nested dictionaries and lists that JSON can hold.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+        Arrivals that pass :func:`waveguide.schema.check`.
+
+    Returns
+    -------
+    dict
+        ``arrivals`` has one entry for each target and mode, reached or not, with the legs of the
+        earliest route; ``alternatives`` has the further routes; then the event and what the
+        answer was computed from. Missing numbers are None.
+    """
+    rows = [(t, m) for t in range(dataset.sizes["target"]) for m in range(dataset.sizes["mode"])]
+    further = [route for row in rows for route in routes_of(dataset, *row)[1:]]
+    head = {key: plain_value(dataset.attrs[key]) for key in _HEAD}
+    event = {key.removeprefix("event_"): plain_value(dataset.attrs[key]) for key in _EVENT}
+    event["position"] = [
+        plain_value(dataset.attrs[f"source_{axis}"]) for axis in ("longitude", "latitude")
+    ]
+    return {
+        "arrivals": [_arrival(dataset, *row) for row in rows],
+        "alternatives": [_alternative(dataset, route) for route in further],
+        "event": event,
+        **head,
+    }
+
+
+def plain_value(value: Any) -> Any:
+    """A number, date or text as JSON holds it: nine digits, ISO 8601 in UTC, None for missing."""
+    if isinstance(value, np.generic):
+        value = None if isinstance(value, np.datetime64) and np.isnat(value) else value
+    if isinstance(value, np.datetime64):
+        return f"{np.datetime_as_string(value, unit='s')}Z"
+    if isinstance(value, np.integer):
+        return int(value)
+    if isinstance(value, float | np.floating):
+        return float(f"{value:.9g}") if math.isfinite(value) else None
+    return str(value) if isinstance(value, np.str_) else value
+
+
+def _arrival(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
+    routes = routes_of(dataset, target, mode)
+    return {
+        **_identity(dataset, target, mode),
+        **{name: plain_value(dataset[name].values[target, mode]) for name in _ROW},
+        "legs": _legs(dataset, routes[0]) if routes else [],
+    }
+
+
+def _alternative(dataset: xr.Dataset, route: int) -> dict[str, Any]:
+    target, mode = (int(dataset[f"route_{dim}"].values[route]) for dim in ("target", "mode"))
+    return {
+        **_identity(dataset, target, mode),
+        "kind": plain_value(dataset["route_kind"].values[route]),
+        "via": plain_value(dataset["route_via"].values[route]),
+        "front_time_days": plain_value(dataset["route_front_time_days"].values[route]),
+        "amplitude_ratio": plain_value(dataset["route_amplitude_ratio"].values[route]),
+        "path_length_km": plain_value(dataset["route_length_km"].values[route]),
+        "legs": _legs(dataset, route),
+    }
+
+
+def _identity(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
+    return {
+        "target": plain_value(dataset["target"].values[target]),
+        "mode": plain_value(dataset["mode"].values[mode]),
+        "target_position": [
+            plain_value(dataset[f"target_{axis}"].values[target])
+            for axis in ("longitude", "latitude")
+        ],
+    }
+
+
+def _legs(dataset: xr.Dataset, route: int) -> list[dict[str, Any]]:
+    return [_leg(dataset, leg) for leg in legs_of(dataset, route)]
+
+
+def _leg(dataset: xr.Dataset, leg: int) -> dict[str, Any]:
+    def value(name: str) -> Any:
+        return plain_value(dataset[f"leg_{name}"].values[leg])
+
+    return {
+        "kind": value("kind"),
+        "from": [value("from_longitude"), value("from_latitude")],
+        "to": [value("to_longitude"), value("to_latitude")],
+        "length_km": value("length_km"),
+        "time_days": value("time_days"),
+        "phase_speed_m_s": value("phase_speed_m_s"),
+        "amplitude_factor": value("amplitude_factor"),
+    }

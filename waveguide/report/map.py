@@ -1,0 +1,276 @@
+"""The arrivals as a map: routes by mode, travel-time ticks, source and targets."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from waveguide.report.map_labels import LabelPlacer
+from waveguide.report.map_view import View, choose_view, draw_graticule, draw_land, extent
+from waveguide.report.routes import leg_line, legs_of, split_at_date_line, vertices_of
+from waveguide.report.text import plain
+
+if TYPE_CHECKING:
+    import xarray as xr
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+    from waveguide.geodesy import Array
+
+# Colours that stay apart in the common kinds of colour blindness, and widths that let each mode
+# be seen where several follow the same coast.
+_COLOURS = {0: "#3b3b3b", 1: "#1f6fb4", 2: "#e06c00", 3: "#0a8f63"}
+_WIDTHS = {0: 6.0, 1: 4.4, 2: 2.6, 3: 1.2}
+
+_TICK_STEPS = np.array([0.05, 0.1, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0, 200.0])
+"""Intervals of the travel-time ticks (days)."""
+
+
+@dataclass(frozen=True)
+class _Line:
+    """A leg as drawn: pieces of (n, 2) map coordinates (m), its mode and how it is dashed."""
+
+    pieces: list[Array]
+    mode: int
+    dashes: str
+
+
+def write_map(dataset: xr.Dataset, folder: Path) -> None:
+    """Write ``map.png`` and ``map.pdf``.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+        Arrivals that pass :func:`waveguide.schema.check`.
+    folder : Path
+    """
+    figure = draw_map(dataset)
+    figure.savefig(folder / "map.png", dpi=figure.dpi)
+    figure.savefig(folder / "map.pdf", metadata={"Title": plain(dataset.attrs["title"], 120)})
+
+
+def draw_map(dataset: xr.Dataset) -> Figure:
+    """A figure with the routes of the arrivals.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+        Arrivals that pass :func:`waveguide.schema.check`.
+
+    Returns
+    -------
+    matplotlib.figure.Figure
+    """
+    lon, lat = _all_positions(dataset)
+    view = choose_view(lon, lat)
+    bounds = extent(view, *view.place(lon, lat))
+    figure, axes = _frame(dataset, bounds)
+    draw_land(axes, view, bounds)
+    draw_graticule(axes, view, bounds)
+    lines = [_line(dataset, leg, view) for leg in range(dataset.sizes["leg"])]
+    for line in lines:
+        _draw_line(axes, line)
+    labels = LabelPlacer(axes, _pixels(axes, lines))
+    _draw_places(axes, dataset, view, labels)
+    _draw_ticks(axes, dataset, view, labels)
+    _draw_legend(figure, axes, dataset)
+    return figure
+
+
+def _all_positions(dataset: xr.Dataset) -> tuple[Array, Array]:
+    lon, lat = (
+        np.concatenate(
+            [
+                [dataset.attrs[f"source_{axis}"]],
+                *(dataset[f"{what}_{axis}"].values for what in ("target", "leg_from", "leg_to")),
+                dataset[f"vertex_{axis}"].values,
+            ]
+        )
+        for axis in ("longitude", "latitude")
+    )
+    return lon, lat
+
+
+def _frame(dataset: xr.Dataset, bounds: tuple[float, float, float, float]) -> tuple[Figure, Axes]:
+    """A figure of the shape of the map, with room for title and legend outside the axes."""
+    from matplotlib.backends.backend_agg import FigureCanvasAgg
+    from matplotlib.figure import Figure
+
+    shape = (bounds[3] - bounds[2]) / (bounds[1] - bounds[0])
+    width = min(9.4, 7.4 / shape)
+    height = width * shape
+    left, right, below, above = 0.65, 0.25, 1.15, 0.75
+    full = max(width + left + right, 7.0), height + below + above
+    figure = Figure(figsize=full, dpi=150)
+    FigureCanvasAgg(figure)
+    inset = (full[0] - width - left - right) / 2.0 + left
+    axes = figure.add_axes(
+        (inset / full[0], below / full[1], width / full[0], height / full[1]),
+        xlim=bounds[:2],
+        ylim=bounds[2:],
+        facecolor="white",
+    )
+    attributes = dataset.attrs
+    subtitle = (
+        f"event {attributes['event_start'][:16].replace('T', ' ')} UTC, "
+        f"{attributes['event_duration_days']:g} days; "
+        f"dominant period {attributes['period_days']:g} days; times in days from its start"
+    )
+    style: dict[str, Any] = {"ha": "center", "parse_math": False}
+    title = plain(attributes["title"], 85)
+    figure.text(0.5, 1.0 - 0.32 / full[1], title, fontsize=12, weight="bold", **style)
+    figure.text(0.5, 1.0 - 0.58 / full[1], subtitle, fontsize=8.5, color="#4a4a4a", **style)
+    return figure, axes
+
+
+def _line(dataset: xr.Dataset, leg: int, view: View) -> _Line:
+    route = int(dataset["leg_route"].values[leg])
+    mode = int(dataset["mode"].values[dataset["route_mode"].values[route]])
+    alternative = dataset["route_kind"].values[route] == "alternative"
+    attachment = dataset["leg_kind"].values[leg] == "attachment"
+    dashes = ":" if attachment else "--" if alternative else "-"
+    lon, lat = leg_line(dataset, leg)
+    pieces = split_at_date_line(lon - view.middle, lat)
+    return _Line([np.column_stack(view.project(*_fine(*p))) for p in pieces], mode, dashes)
+
+
+def _fine(lon: Array, lat: Array) -> tuple[Array, Array]:
+    """A line with a vertex at every degree at least, so that it curves as the map does."""
+    steps = np.maximum(np.ceil(np.maximum(np.abs(np.diff(lon)), np.abs(np.diff(lat)))), 1.0)
+    place = np.concatenate([[0.0], np.cumsum(steps)])
+    every = np.arange(place[-1] + 1.0)
+    return np.interp(every, place, lon), np.interp(every, place, lat)
+
+
+def _draw_line(axes: Axes, line: _Line) -> None:
+    main = line.dashes == "-"
+    for piece in line.pieces:
+        axes.plot(
+            *piece.T,
+            color=_COLOURS[line.mode],
+            linewidth=_WIDTHS[line.mode] if main else 1.2,
+            linestyle=line.dashes,
+            solid_capstyle="round",
+            zorder=3.0 + 0.1 * line.mode + (0.05 if main else 0.0),
+        )
+
+
+def _pixels(axes: Axes, lines: list[_Line]) -> Array:
+    """Points along all lines, in pixels, a few pixels apart."""
+    points = [np.empty((0, 2))]
+    for line in lines:
+        for piece in line.pieces:
+            pixels = axes.transData.transform(piece)
+            steps = np.maximum(np.hypot(*np.diff(pixels, axis=0).T) / 4.0, 0.01)
+            place = np.concatenate([[0.0], np.cumsum(steps)])
+            every = np.linspace(0.0, place[-1], int(place[-1]) + 2)
+            points.append(np.column_stack([np.interp(every, place, c) for c in pixels.T]))
+    return np.concatenate(points)
+
+
+def _draw_places(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer) -> None:
+    """Source and targets; a target that no mode reaches is hollow."""
+    sx, sy = view.place(dataset.attrs["source_longitude"], dataset.attrs["source_latitude"])
+    tx, ty = view.place(dataset["target_longitude"].values, dataset["target_latitude"].values)
+    reached = (dataset["status"].values == "reached").any(axis=1)
+    for chosen, face in ((reached, "black"), (~reached, "white")):
+        axes.scatter(tx[chosen], ty[chosen], s=22, c=face, edgecolors="black", zorder=6)
+    axes.scatter([sx], [sy], s=150, marker="*", c="#ffd23f", edgecolors="black", zorder=7)
+    labels.keep_clear(float(sx), float(sy), 7.0)
+    for x, y in zip(tx, ty, strict=True):
+        labels.keep_clear(float(x), float(y), 3.0)
+    names = [plain(dataset.attrs["event_name"] or "event", 32)]
+    names += [plain(name, 28) for name in dataset["target"].values]
+    for name, x, y in zip(names, np.append(sx, tx), np.append(sy, ty), strict=True):
+        labels.place(name, float(x), float(y), (5, 12, 22, 36, 52, 70), True, fontsize=8, zorder=8)
+
+
+def _draw_ticks(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer) -> None:
+    """Marks at round travel times along the earliest routes, labelled where there is room."""
+    longest = float(np.max(dataset["route_front_time_days"].values, initial=0.0))
+    step = float(_TICK_STEPS[np.searchsorted(_TICK_STEPS[:-1], longest / 8.0)])
+    near = np.ptp(axes.get_xlim()) / 80.0  # closer ticks of the same time are one
+    drawn: dict[tuple[int, int], list[complex]] = {}
+    for route in np.flatnonzero(dataset["route_kind"].values == "earliest"):
+        mode = int(dataset["mode"].values[dataset["route_mode"].values[route]])
+        for number, x, y, along in _tick_places(dataset, int(route), view, step):
+            same = drawn.setdefault((mode, number), [])
+            if any(abs(complex(x, y) - other) < near for other in same):
+                continue
+            same.append(complex(x, y))
+            axes.plot(
+                x,
+                y,
+                marker=(2, 0, along),
+                markersize=9 + _WIDTHS[mode],
+                markeredgecolor=_COLOURS[mode],
+                markeredgewidth=1.4,
+                zorder=5,
+            )
+            style: dict[str, Any] = {"fontsize": 7, "color": _COLOURS[mode], "zorder": 7.5}
+            labels.place(f"{number * step:g} d", x, y, (6.0, 10.0), False, **style)
+
+
+def _tick_places(
+    dataset: xr.Dataset, route: int, view: View, step: float
+) -> list[tuple[int, float, float, float]]:
+    """Number of the tick, map coordinates and direction of travel (degrees) along a route."""
+    legs = legs_of(dataset, route)
+    index = [vertex for leg in legs for vertex in vertices_of(dataset, leg)]
+    if len(index) < 2:
+        return []
+    time = dataset["vertex_time_days"].values[index]
+    x, y = view.place(
+        dataset["vertex_longitude"].values[index], dataset["vertex_latitude"].values[index]
+    )
+    numbers = np.arange(1, int(np.floor(time[-1] / step)) + 1)
+    before = np.clip(np.searchsorted(time, numbers * step) - 1, 0, time.size - 2)
+    share = (numbers * step - time[before]) / np.maximum(time[before + 1] - time[before], 1e-12)
+    px, py = (v[before] + share * (v[before + 1] - v[before]) for v in (x, y))
+    angle = np.degrees(np.arctan2(y[before + 1] - y[before], x[before + 1] - x[before]))
+    return [
+        (int(n), float(a), float(b), float(c))
+        for n, a, b, c in zip(numbers, px, py, angle, strict=True)
+    ]
+
+
+def _draw_legend(figure: Figure, axes: Axes, dataset: xr.Dataset) -> None:
+    """What the lines and marks mean, below the map, and the caution."""
+    from matplotlib.lines import Line2D
+
+    present = sorted({int(dataset["mode"].values[i]) for i in dataset["route_mode"].values})
+    handles = [
+        Line2D([], [], color=_COLOURS[m], lw=_WIDTHS[m], label=_mode_name(m)) for m in present
+    ]
+    if (dataset["leg_kind"].values == "attachment").any():
+        handles.append(Line2D([], [], color="#3b3b3b", lw=1.2, ls=":", label="to the guide"))
+    if (dataset["route_kind"].values == "alternative").any():
+        handles.append(Line2D([], [], color="#3b3b3b", lw=1.2, ls="--", label="alternative route"))
+    mark: dict[str, Any] = {"ls": "", "mec": "black"}
+    handles.append(Line2D([], [], marker="*", mfc="#ffd23f", ms=12, label="event", **mark))
+    reached = (dataset["status"].values == "reached").any(axis=1)
+    if reached.any():
+        handles.append(Line2D([], [], marker="o", mfc="black", ms=5, label="target", **mark))
+    if not reached.all():
+        handles.append(
+            Line2D([], [], marker="o", mfc="white", ms=5, label="target not reached", **mark)
+        )
+    height = float(figure.get_figheight())
+    figure.legend(
+        handles=handles,
+        loc="lower center",
+        bbox_to_anchor=(0.5, 0.34 / height),
+        ncols=7 if figure.get_figwidth() > 9.0 else 4,
+        columnspacing=1.4,
+        fontsize=8.5,
+        frameon=False,
+    )
+    note = dataset.attrs["caution"].split("; ")[0].split(": ")[0]
+    figure.text(0.5, 0.14 / height, note + ".", ha="center", fontsize=7, color="#6a6a6a")
+
+
+def _mode_name(mode: int) -> str:
+    return "mode 0 (barotropic)" if mode == 0 else f"mode {mode}"

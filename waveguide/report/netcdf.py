@@ -1,0 +1,37 @@
+"""The arrivals as a NetCDF file that follows the CF conventions."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+
+def write_netcdf(dataset: xr.Dataset, folder: Path) -> None:
+    """Write ``arrivals.nc``, NetCDF-4 by CF-1.11.
+
+    CF allows no texts in a coordinate variable, so the names of the targets are stored as the
+    label ``target_name``; ``xarray.open_dataset(path).set_index(target="target_name")`` brings
+    the selection by name back.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+        Arrivals that pass :func:`waveguide.schema.check`.
+    folder : Path
+    """
+    stored = dataset.reset_index("target").rename(target="target_name")
+    encoding = {str(name): _encoding(variable) for name, variable in stored.variables.items()}
+    stored.to_netcdf(folder / "arrivals.nc", engine="netcdf4", encoding=encoding)
+
+
+def _encoding(variable: xr.Variable) -> dict[str, Any]:
+    if variable.dtype.kind == "M":
+        return {"units": "days since 1970-01-01 00:00:00", "dtype": "f8", "_FillValue": np.nan}
+    if variable.dtype.kind == "f":
+        return {"_FillValue": np.nan}
+    return {}

@@ -1,0 +1,151 @@
+"""The arrivals as a table for the terminal."""
+
+from __future__ import annotations
+
+import itertools
+import math
+import textwrap
+from collections.abc import Callable, Iterable
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from waveguide.report.routes import legs_of, routes_of
+from waveguide.report.text import columns, pad, plain
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+_WIDTH = 110
+"""Columns of the terminal that the running text keeps to."""
+
+_ABSENT = "–"
+
+
+def table(dataset: xr.Dataset) -> str:
+    """What a person wants to read: rows, routes and cautions.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+        Arrivals that pass :func:`waveguide.schema.check`.
+
+    Returns
+    -------
+    str
+        Lines of at most about 110 columns, without colours or control characters.
+    """
+    rows = [(t, m) for t in range(dataset.sizes["target"]) for m in range(dataset.sizes["mode"])]
+    parts = [_heading(dataset), _rows(dataset, rows), _routes(dataset, rows)]
+    parts.append(_cautions(dataset, rows))
+    return "\n\n".join(part for part in parts if part)
+
+
+def _heading(dataset: xr.Dataset) -> str:
+    attributes = dataset.attrs
+    place = _position(attributes["source_longitude"], attributes["source_latitude"])
+    amplitude = attributes["event_amplitude_m"]
+    height = f"{amplitude:g} m" if math.isfinite(amplitude) else "amplitude unknown"
+    event = (
+        f"Event   {plain(attributes['event_name']) or 'unnamed'}, at {place}, from "
+        f"{attributes['event_start'][:16].replace('T', ' ')} UTC, "
+        f"{attributes['event_duration_days']:g} days, {height}"
+    )
+    waves = f"Waves   dominant period {attributes['period_days']:g} days"
+    ocean = f"Ocean   {attributes['ocean']}"
+    return "\n".join([plain(attributes["title"], _WIDTH), _filled(event, 8), waves, ocean])
+
+
+def _position(lon: float, lat: float) -> str:
+    east, north = "E" if lon >= 0.0 else "W", "N" if lat >= 0.0 else "S"
+    return f"{abs(lat):.2f}°{north} {abs(lon):.2f}°{east}"
+
+
+def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
+    """The table itself: a heading of two lines and one line for each target and mode."""
+    show: list[tuple[str, str, Callable[[int, int], str]]] = [
+        ("Mode", "", lambda t, m: str(int(dataset["mode"].values[m]))),
+        ("Front", "(days)", _column(dataset, "front_time_days", ".1f")),
+        ("Front", "(UTC)", _date(dataset)),
+        ("Speed", "(m/s)", _column(dataset, "mean_speed_m_s", ".2f")),
+        ("Path", "(km)", _column(dataset, "path_length_km", ".0f")),
+        ("Amplitude", "ratio", _column(dataset, "amplitude_ratio", ".3g")),
+    ]
+    if np.isfinite(dataset["amplitude_m"].values).any():
+        show.append(("Amplitude", "(m)", _column(dataset, "amplitude_m", ".3f")))
+    names = ["Target", ""] + [plain(dataset["target"].values[t], 28) for t, _ in rows]
+    status = ["Status", ""] + [plain(dataset["status"].values[row], 28) for row in rows]
+    middle = [[top, unit, *(cell(*row) for row in rows)] for top, unit, cell in show]
+    filled = [_filled_column(names), *(_filled_column(c, right=True) for c in middle), status]
+    lines = ["  ".join(cells).rstrip() for cells in zip(*filled, strict=True)]
+    rule = "─" * max(columns(line) for line in lines)
+    return "\n".join([*lines[:2], rule, *lines[2:]])
+
+
+def _column(dataset: xr.Dataset, name: str, style: str) -> Callable[[int, int], str]:
+    values = dataset[name].values
+    return lambda t, m: format(values[t, m], style) if np.isfinite(values[t, m]) else _ABSENT
+
+
+def _date(dataset: xr.Dataset) -> Callable[[int, int], str]:
+    values = dataset["front_date"].values
+
+    def cell(target: int, mode: int) -> str:
+        moment = values[target, mode]
+        if np.isnat(moment):
+            return _ABSENT
+        return str(np.datetime_as_string(moment, unit="m")).replace("T", " ")
+
+    return cell
+
+
+def _filled_column(cells: list[str], right: bool = False) -> list[str]:
+    width = max(columns(cell) for cell in cells)
+    return [pad(cell, width, right) for cell in cells]
+
+
+def _routes(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
+    """By which legs the front comes, one paragraph for each route."""
+    lines = [
+        _filled(f"  {_row_name(dataset, *row)}, {_route(dataset, route)}", 6)
+        for row in rows
+        for route in routes_of(dataset, *row)
+    ]
+    return "\n".join(["Routes", *lines]) if lines else ""
+
+
+def _route(dataset: xr.Dataset, route: int) -> str:
+    kind = plain(dataset["route_kind"].values[route])
+    via = plain(dataset["route_via"].values[route], 60)
+    time = float(dataset["route_front_time_days"].values[route])
+    ratio = float(dataset["route_amplitude_ratio"].values[route])
+    head = f"{kind} via {via}" if via else kind
+    return f"{head}: {_legs(dataset, route)} ({time:.1f} days, amplitude ratio {ratio:.3g})"
+
+
+def _legs(dataset: xr.Dataset, route: int) -> str:
+    """Legs of one kind that follow each other are told as one."""
+    length = dataset["leg_length_km"].values
+    kinds = itertools.groupby(legs_of(dataset, route), key=lambda i: dataset["leg_kind"].values[i])
+    return " → ".join(
+        f"{plain(kind)} {sum(length[i] for i in legs):.0f} km" for kind, legs in kinds
+    )
+
+
+def _cautions(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
+    """Each caution once, with the rows it belongs to, and the one that belongs to all."""
+    found: dict[str, list[str]] = {}
+    for row in rows:
+        for caution in filter(None, str(dataset["caution"].values[row]).split("; ")):
+            found.setdefault(plain(caution, 300), []).append(_row_name(dataset, *row))
+    lines = [_filled(f"  {caution} ({', '.join(where)})", 4) for caution, where in found.items()]
+    return "\n".join(["Cautions", *lines, _filled(f"  {dataset.attrs['caution']}", 4)])
+
+
+def _row_name(dataset: xr.Dataset, target: int, mode: int) -> str:
+    name: Any = dataset["target"].values[target]
+    return f"{plain(name, 28)} mode {int(dataset['mode'].values[mode])}"
+
+
+def _filled(text: str, indent: int) -> str:
+    return textwrap.fill(text, _WIDTH, subsequent_indent=" " * indent, break_on_hyphens=False)

@@ -1,0 +1,275 @@
+"""One table of the variables the package stores, and the check that holds results to it.
+
+Units are those UDUNITS reads; names and attributes follow the CF conventions 1.11.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any, Literal
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from waveguide.errors import WaveguideError
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+Kind = Literal["text", "integer", "number", "date"]
+
+CAUTION = (
+    "A linear-theory estimate for research and planning. It is no warning system: for tsunami, "
+    "storm surge, navigation or public safety follow the responsible national service and "
+    "licensed practice."
+)
+"""Shown with every result."""
+
+_KINDS: dict[Kind, str] = {"text": "UOT", "integer": "i", "number": "f", "date": "M"}
+"""NumPy's dtype kinds that hold each kind of variable."""
+
+
+class SchemaError(WaveguideError, ValueError):
+    """A dataset is not what the table of stored variables declares."""
+
+
+@dataclass(frozen=True)
+class Variable:
+    """The declaration of a stored variable.
+
+    Parameters
+    ----------
+    dims : tuple of str
+    kind : {"text", "integer", "number", "date"}
+    long_name : str
+        What it is, in plain words.
+    units : str or None
+        As UDUNITS reads it; None for texts, indices and dates.
+    standard_name : str or None
+        The CF standard name, where there is one.
+    coordinate : bool
+        Whether it says where, rather than what.
+    """
+
+    dims: tuple[str, ...]
+    kind: Kind
+    long_name: str
+    units: str | None = None
+    standard_name: str | None = None
+    coordinate: bool = False
+
+    def attributes(self) -> dict[str, str]:
+        """The CF attributes of the variable."""
+        named = {
+            "long_name": self.long_name,
+            "units": self.units,
+            "standard_name": self.standard_name,
+        }
+        return {key: value for key, value in named.items() if value is not None}
+
+
+def _longitude(dim: str, what: str) -> Variable:
+    return Variable((dim,), "number", f"longitude of {what}", "degrees_east", "longitude", True)
+
+
+def _latitude(dim: str, what: str) -> Variable:
+    return Variable((dim,), "number", f"latitude of {what}", "degrees_north", "latitude", True)
+
+
+def _number(dims: tuple[str, ...], long_name: str, units: str) -> Variable:
+    return Variable(dims, "number", long_name, units)
+
+
+_ROW = ("target", "mode")
+_ROUTE, _LEG, _VERTEX = ("route",), ("leg",), ("vertex",)
+
+ARRIVALS: dict[str, Variable] = {
+    "target": Variable(("target",), "text", "name of the target", coordinate=True),
+    "mode": Variable(
+        ("mode",), "integer", "mode number, 0 barotropic, 1 and up baroclinic", "1", None, True
+    ),
+    "target_longitude": _longitude("target", "the target"),
+    "target_latitude": _latitude("target", "the target"),
+    "status": Variable(_ROW, "text", "reached, or why there is no arrival"),
+    "front_time_days": _number(_ROW, "time from the start of the event to the front", "day"),
+    "front_date": Variable(_ROW, "date", "date of the front (UTC)", None, "time"),
+    "amplitude_ratio": _number(_ROW, "sea level at the target over sea level at the source", "1"),
+    "amplitude_m": _number(_ROW, "sea level at the target", "m"),
+    "path_length_km": _number(_ROW, "length of the route", "km"),
+    "mean_speed_m_s": _number(_ROW, "length of the route over the time of the front", "m s-1"),
+    "source_distance_km": _number(_ROW, "distance from the source to the guide", "km"),
+    "source_distance_radii": _number(
+        _ROW, "distance from the source to the guide in deformation radii", "1"
+    ),
+    "source_factor": _number(_ROW, "amplitude factor for the source's distance", "1"),
+    "target_distance_km": _number(_ROW, "distance from the target to the guide", "km"),
+    "target_distance_radii": _number(
+        _ROW, "distance from the target to the guide in deformation radii", "1"
+    ),
+    "target_factor": _number(_ROW, "amplitude factor for the target's distance", "1"),
+    "caution": Variable(_ROW, "text", "cautions, separated by '; '"),
+    "route_target": Variable(_ROUTE, "integer", "index of the route's target"),
+    "route_mode": Variable(_ROUTE, "integer", "index of the route's mode along mode"),
+    "route_kind": Variable(_ROUTE, "text", "earliest, strongest or alternative"),
+    "route_via": Variable(_ROUTE, "text", "what tells the route from the others"),
+    "route_front_time_days": _number(_ROUTE, "time of the front by this route", "day"),
+    "route_amplitude_ratio": _number(_ROUTE, "amplitude ratio by this route", "1"),
+    "route_length_km": _number(_ROUTE, "length of the route", "km"),
+    "leg_route": Variable(_LEG, "integer", "index of the leg's route"),
+    "leg_kind": Variable(
+        _LEG, "text", "attachment, coast, equator, strait, facing coast or opening"
+    ),
+    "leg_from_longitude": _longitude("leg", "the start of the leg"),
+    "leg_from_latitude": _latitude("leg", "the start of the leg"),
+    "leg_to_longitude": _longitude("leg", "the end of the leg"),
+    "leg_to_latitude": _latitude("leg", "the end of the leg"),
+    "leg_length_km": _number(_LEG, "length of the leg", "km"),
+    "leg_time_days": _number(_LEG, "time the front takes along the leg", "day"),
+    "leg_phase_speed_m_s": _number(_LEG, "length of the leg over its time", "m s-1"),
+    "leg_amplitude_factor": _number(_LEG, "amplitude at the end over that at the start", "1"),
+    "vertex_leg": Variable(_VERTEX, "integer", "index of the vertex's leg"),
+    "vertex_longitude": _longitude("vertex", "the vertex"),
+    "vertex_latitude": _latitude("vertex", "the vertex"),
+    "vertex_distance_km": _number(_VERTEX, "distance from the source along the route", "km"),
+    "vertex_time_days": _number(_VERTEX, "time of the front at the vertex", "day"),
+}
+"""Arrivals: one row for each target and mode, reached or not, and the routes behind them.
+
+Routes, legs and vertices are ragged: each carries the index of what it belongs to, in rising
+order, the vertices of a leg and the legs of a route in the order of travel.
+"""
+
+ARRIVALS_ATTRIBUTES = (
+    "Conventions",
+    "title",
+    "summary",
+    "scenario",
+    "event_name",
+    "event_start",
+    "event_duration_days",
+    "event_amplitude_m",
+    "source_longitude",
+    "source_latitude",
+    "period_days",
+    "ocean",
+    "source",
+    "data_sha256",
+    "caution",
+)
+"""Global attributes of the arrivals; `source` is the software, in the sense of CF."""
+
+_PARENTS = {
+    "route_target": "target",
+    "route_mode": "mode",
+    "leg_route": "route",
+    "vertex_leg": "leg",
+}
+
+
+def assemble(
+    values: Mapping[str, ArrayLike],
+    attributes: Mapping[str, Any],
+    table: Mapping[str, Variable] = ARRIVALS,
+) -> xr.Dataset:
+    """Put arrays into a dataset with the dimensions, types and attributes of a table.
+
+    Parameters
+    ----------
+    values : mapping of str to array_like
+        One array for each variable of `table`.
+    attributes : mapping
+        The global attributes.
+    table : mapping of str to Variable
+
+    Returns
+    -------
+    xarray.Dataset
+        Not yet checked: see :func:`check`.
+
+    Raises
+    ------
+    SchemaError
+        Where a variable of the table has no values, or a value has no variable.
+    """
+    import xarray as xr
+
+    if set(values) != set(table):
+        raise SchemaError(_difference(set(table), set(values)))
+    arrays = {
+        name: (variable.dims, _typed(values[name], variable.kind), variable.attributes())
+        for name, variable in table.items()
+    }
+    coordinates = {name for name, variable in table.items() if variable.coordinate}
+    return xr.Dataset(
+        {name: array for name, array in arrays.items() if name not in coordinates},
+        {name: arrays[name] for name in coordinates},
+        dict(attributes),
+    )
+
+
+def check(dataset: xr.Dataset) -> None:
+    """Refuse arrivals that are not what the table declares.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+
+    Raises
+    ------
+    SchemaError
+        With every difference: names, dimensions, types, units, global attributes, indices out of
+        range or order, and rows that are reached without a time or not reached with one.
+    """
+    names = {str(name) for name in dataset.variables}
+    problems = [] if names == set(ARRIVALS) else [_difference(set(ARRIVALS), names)]
+    for name in sorted(names & set(ARRIVALS)):
+        problems += _variable_problems(dataset[name], ARRIVALS[name])
+    absent = [name for name in ARRIVALS_ATTRIBUTES if name not in dataset.attrs]
+    if absent:
+        problems.append(f"global attributes missing: {', '.join(absent)}")
+    if not problems:
+        problems = _index_problems(dataset) + _row_problems(dataset)
+    if problems:
+        raise SchemaError("; ".join(problems))
+
+
+def _difference(wanted: set[str], given: set[str]) -> str:
+    parts = {"missing": sorted(wanted - given), "not declared": sorted(given - wanted)}
+    return "variables " + "; ".join(f"{k}: {', '.join(v)}" for k, v in parts.items() if v)
+
+
+def _typed(values: ArrayLike, kind: Kind) -> NDArray[Any]:
+    dtype: dict[Kind, Any] = {"text": str, "integer": np.int64, "number": np.float64}
+    return np.asarray(values, dtype=dtype.get(kind, "datetime64[ns]"))
+
+
+def _variable_problems(array: xr.DataArray, variable: Variable) -> list[str]:
+    problems = []
+    if array.dims != variable.dims:
+        problems.append(f"{array.name} has dimensions {array.dims}, not {variable.dims}")
+    if array.dtype.kind not in _KINDS[variable.kind]:
+        problems.append(f"{array.name} has type {array.dtype}, not {variable.kind}")
+    if variable.units is not None and array.attrs.get("units") != variable.units:
+        problems.append(f"{array.name} has units {array.attrs.get('units')}, not {variable.units}")
+    return problems
+
+
+def _index_problems(dataset: xr.Dataset) -> list[str]:
+    problems = []
+    for name, parent in _PARENTS.items():
+        index = dataset[name].values
+        if index.size and not 0 <= index.min() <= index.max() < dataset.sizes[parent]:
+            problems.append(f"{name} points outside {parent}")
+        if name in ("leg_route", "vertex_leg") and np.any(np.diff(index) < 0):
+            problems.append(f"{name} does not rise")
+    return problems
+
+
+def _row_problems(dataset: xr.Dataset) -> list[str]:
+    reached = dataset["status"].values == "reached"
+    problems = []
+    for name in ("front_time_days", "path_length_km", "amplitude_ratio"):
+        if np.any(np.isfinite(dataset[name].values) != reached):
+            problems.append(f"{name} is finite where the target is not reached, or the other way")
+    return problems
