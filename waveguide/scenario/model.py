@@ -100,6 +100,12 @@ def _existing_file(value: object, info: ValidationInfo) -> Path:
     return path
 
 
+def _storable(value: str) -> str:
+    if "\0" in value:
+        raise ValueError("a text must not hold the character NUL, which ends it in a NetCDF file")
+    return value
+
+
 def _not_empty(value: tuple[Any, ...]) -> tuple[Any, ...]:
     # Not pydantic's min_length, which counts only the valid members.
     if not value:
@@ -116,9 +122,15 @@ def _distinct_modes(value: tuple[int, ...]) -> tuple[int, ...]:
 Number = Annotated[float, Field(strict=True, allow_inf_nan=False)]
 Days = Annotated[float, Field(strict=True, allow_inf_nan=False, gt=0.0, le=LONGEST_DAYS)]
 Name = Annotated[
-    str, StringConstraints(strict=True, strip_whitespace=True, min_length=1, max_length=120)
+    str,
+    StringConstraints(strict=True, strip_whitespace=True, min_length=1, max_length=120),
+    AfterValidator(_storable),
 ]
-Prose = Annotated[str, StringConstraints(strict=True, strip_whitespace=True, max_length=4000)]
+Prose = Annotated[
+    str,
+    StringConstraints(strict=True, strip_whitespace=True, max_length=4000),
+    AfterValidator(_storable),
+]
 Position = Annotated[tuple[Number, Number], AfterValidator(_position)]
 Box = Annotated[tuple[Number, Number, Number, Number], AfterValidator(_box)]
 Moment = Annotated[datetime, BeforeValidator(_utc)]
