@@ -54,7 +54,8 @@ SALINITY_NAMES = ("s_an", "salinity", "salt", "so", "psal", "sa", "vosaline", "s
 PRESSURES = {"dbar": 1.0, "decibar": 1.0, "decibars": 1.0, "db": 1.0, "bar": 10.0, "pa": 1e-4}
 """Units of sea pressure (dbar)."""
 
-CELSIUS = r"(deg(ree)?s?[ _]?)?c(elsius)?|°c"
+KILOGRAM_PER_KILOGRAM = ("kg kg-1", "kg/kg", "kg kg**-1")
+CELSIUS = r"(deg(ree)?s?[ _]?)?c(elsius)?"
 KELVIN = r"(deg(ree)?s?[ _]?)?k(elvin)?"
 DEPTH_LATITUDE = 45.0
 """Latitude at which a pressure axis is turned into depth: 0.3 % at most from the others."""
@@ -125,9 +126,13 @@ def read_climatology(
     s_kind, s_note = _kind(s, SALINITY_KINDS, get_args(SalinityKind), salinity,
                            "salinity", salt_path)
     celsius, unit_note = _celsius(t, path)
+    salt = s.values * (1e3 if _unit(s) in KILOGRAM_PER_KILOGRAM else 1.0)
     _plausible(t.name, celsius, -5.0, 45.0, path)
-    _plausible(s.name, s.values, 0.0, 60.0, salt_path)
-    depth, n2 = _depth_and_n2(t, s, celsius, t_kind, s_kind)
+    _plausible(s.name, salt, 0.0, 60.0, salt_path)
+    if np.nanmax(salt) < 1.0:
+        raise InputError(f"climatology {salt_path}: {s.name} is nowhere above {np.nanmax(salt):g}, "
+                         "which is fresh water; convert it to g/kg (or practical salinity)")
+    depth, n2 = _depth_and_n2(t, celsius, salt, t_kind, s_kind)
     if not np.isfinite(n2).any():
         raise InputError(f"climatology {path}: no column has two levels with both {t.name} and "
                          f"{s.name}; give another file")
@@ -137,14 +142,14 @@ def read_climatology(
 
 
 def _depth_and_n2(
-    t: _Field, s: _Field, celsius: Array, t_kind: str, s_kind: str
+    t: _Field, celsius: Array, salt: Array, t_kind: str, s_kind: str
 ) -> tuple[Array, Array]:
     """Depths halfway between the levels, and N² there."""
     import gsw
 
     pressure = layer_pressures(t.levels, t.grid.lat, t.axis)
     ct, sa = conservative_temperature_absolute_salinity(
-        celsius, s.values, pressure, t.grid.lon, t.grid.lat,
+        celsius, salt, pressure, t.grid.lon, t.grid.lat,
         t_kind, s_kind,  # type: ignore[arg-type]  # checked by _kind
     )
     levels = t.levels
@@ -180,9 +185,14 @@ def _kind(
     return given or str(stated), ()
 
 
+def _unit(field: _Field) -> str:
+    """Unit of a field in lower case, empty where there is none."""
+    return str(field.attributes.get("units", "")).strip().lower().replace("°", "deg")
+
+
 def _celsius(field: _Field, path: str | Path) -> tuple[Array, tuple[str, ...]]:
     """Temperature in °C."""
-    unit = str(field.attributes.get("units", "")).strip().lower().replace("°", "deg")
+    unit = _unit(field)
     if re.fullmatch(CELSIUS, unit):
         return field.values, ()
     if re.fullmatch(KELVIN, unit):
