@@ -24,7 +24,7 @@ def write_netcdf(dataset: xr.Dataset, folder: Path) -> None:
         Arrivals that pass :func:`waveguide.schema.check`.
     folder : Path
     """
-    stored = dataset.reset_index("target").rename(target="target_name")
+    stored = dataset.reset_index("target").rename_vars(target="target_name")
     encoding = {str(name): _encoding(variable) for name, variable in stored.variables.items()}
     stored.to_netcdf(folder / "arrivals.nc", engine="netcdf4", encoding=encoding)
 
