@@ -1,0 +1,226 @@
+"""The mode atlas: what every node of a network knows about its modes.
+
+For now the modes are those of a flat bottom over the deep water that adjoins the node (section by
+section modes go into the same table). The deep water is the deepest within two deformation radii,
+since that is what the trapped wave feels; a barotropic wave feels the whole ocean within its R,
+so its depth is the mean over the offshore distance x with the weight e^(−2x/R) of its energy.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from waveguide.constants import BETA_EQUATOR, EARTH_RADIUS, deformation_radius
+from waveguide.geodesy import destination
+from waveguide.modes.vertical import barotropic_speed, phase_speeds, surface_values
+from waveguide.network.graph import Network
+from waveguide.ocean.bathymetry import Bathymetry
+from waveguide.ocean.stratification import Climatology
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+BAROCLINIC_MODES = (1, 2, 3)
+SHALLOWEST_DEEP_WATER = 200.0
+"""Nodes whose adjoining water is nowhere deeper than this carry no baroclinic mode (m)."""
+
+
+@dataclass(frozen=True)
+class Atlas:
+    """Modes at the nodes of a network.
+
+    Attributes
+    ----------
+    mode : ndarray of int, shape (k,)
+    depth : ndarray, shape (n,)
+        Depth of the adjoining deep water (m), NaN where there is none.
+    phase_speed : ndarray, shape (k, n)
+        Long-wave phase speed (m/s), NaN where the mode does not exist.
+    coastal_value : ndarray, shape (k, n)
+        Modal pressure at the coast F(0,0) with ∫ F² dz = 1 over the coastal wall (m^-1/2).
+    """
+
+    mode: Index
+    depth: Array
+    phase_speed: Array
+    coastal_value: Array
+
+    def row(self, mode: int) -> int:
+        """Row of a mode, −1 if the atlas does not hold it."""
+        found = np.nonzero(self.mode == mode)[0]
+        return int(found[0]) if found.size else -1
+
+
+def _offshore_depths(network: Network, depths: Bathymetry, nodes: Index, distance: Array) -> Array:
+    """Depths along the seaward normals, NaN from the first far shore on.
+
+    Parameters
+    ----------
+    network : Network
+    depths : Bathymetry
+    nodes : ndarray of int, shape (n,)
+        Coast nodes.
+    distance : ndarray, shape (k,)
+        Offshore distances (m).
+
+    Returns
+    -------
+    ndarray, shape (n, k)
+    """
+    lon, lat = destination(
+        network.lon[nodes, None], network.lat[nodes, None], network.offshore[nodes, None],
+        distance[None, :],
+    )
+    depth = depths.sample(lon, lat)
+    wet = np.maximum.accumulate(depth > SHALLOWEST_DEEP_WATER, axis=1)
+    dry_again = wet & ~(depth > 0.0) & np.isfinite(depth)
+    return np.where(np.maximum.accumulate(dry_again, axis=1), np.nan, depth)
+
+
+def adjoining_depth(network: Network, depths: Bathymetry, radius: Array) -> Array:
+    """Depth of the deep water next to each node, for baroclinic modes.
+
+    Parameters
+    ----------
+    network : Network
+    depths : Bathymetry
+    radius : ndarray, shape (n,)
+        Deformation radius (m).
+
+    Returns
+    -------
+    ndarray, shape (n,)
+        Greatest depth within 2 R (at least 60 km) seaward of a coast node and within 1° of a node
+        on the equator (m); NaN where none is known.
+    """
+    result = np.full(network.size, np.nan)
+    coast = np.nonzero(~network.equatorial)[0]
+    fractions = np.linspace(0.0, 1.0, 25)[1:]
+    reach = np.maximum(2.0 * radius[coast], 60e3)
+    lon, lat = destination(
+        network.lon[coast, None], network.lat[coast, None], network.offshore[coast, None],
+        reach[:, None] * fractions[None, :],
+    )
+    result[coast] = _greatest(depths.sample(lon, lat))
+    equator = np.nonzero(network.equatorial)[0]
+    lat = np.linspace(-1.0, 1.0, 21)
+    result[equator] = _mean(depths.sample(network.lon[equator, None], lat[None, :]),
+                            np.ones(lat.size))
+    return np.where(result > SHALLOWEST_DEEP_WATER, result, np.nan)
+
+
+def _greatest(values: Array) -> Array:
+    """Largest known value along the last axis, NaN where nothing is known."""
+    return np.where(
+        np.isfinite(values).any(axis=-1), np.nanmax(np.nan_to_num(values, nan=-1e9), axis=-1), np.nan
+    )
+
+
+def _mean(values: Array, weight: Array) -> Array:
+    """Weighted mean over the water along the last axis, NaN where there is none."""
+    wet = np.where(np.nan_to_num(values, nan=-1.0) > 0.0, weight, 0.0)
+    total = wet.sum(axis=-1)
+    summed = (wet * np.nan_to_num(values)).sum(axis=-1)
+    return np.where(total > 0.0, summed / np.where(total > 0.0, total, 1.0), np.nan)
+
+
+def barotropic_depth(network: Network, depths: Bathymetry) -> Array:
+    """Depth that a barotropic wave feels at each node.
+
+    Parameters
+    ----------
+    network : Network
+    depths : Bathymetry
+
+    Returns
+    -------
+    ndarray, shape (n,)
+        Mean depth weighted by the wave's energy, e^(−2x/R) off a coast out to 2000 km and
+        e^(−y²/L_e²) about the equator (m).
+    """
+    result = np.full(network.size, np.nan)
+    speed = 200.0  # √(gh) over 4000 m; sets the width of the weight only
+    coast = np.nonzero(~network.equatorial)[0]
+    distance = np.linspace(0.0, 2000e3, 81)[1:]
+    radius = deformation_radius(speed, network.lat[coast])
+    weight = np.exp(-2.0 * distance[None, :] / radius[:, None])
+    result[coast] = _mean(_offshore_depths(network, depths, coast, distance), weight)
+    equator = np.nonzero(network.equatorial)[0]
+    lat = np.linspace(-25.0, 25.0, 101)
+    y = np.radians(lat) * EARTH_RADIUS
+    result[equator] = _mean(
+        depths.sample(network.lon[equator, None], lat[None, :]),
+        np.exp(-(y**2) * BETA_EQUATOR / speed),
+    )
+    return result
+
+
+def barotropic_atlas(network: Network, depths: Bathymetry) -> Atlas:
+    """Barotropic phase speeds √(gh) and coastal values h^(−1/2) at every node.
+
+    Parameters
+    ----------
+    network : Network
+        Of the barotropic family.
+    depths : Bathymetry
+
+    Returns
+    -------
+    Atlas
+        One mode, number 0.
+    """
+    depth = barotropic_depth(network, depths)
+    speed = barotropic_speed(np.nan_to_num(depth))
+    known = np.isfinite(depth) & (depth > 0.0)
+    return Atlas(
+        mode=np.array([0]),
+        depth=depth,
+        phase_speed=np.where(known, speed, np.nan)[None, :],
+        coastal_value=np.where(known, 1.0 / np.sqrt(np.where(known, depth, 1.0)), np.nan)[None, :],
+    )
+
+
+def flat_bottom_atlas(
+    network: Network,
+    depths: Bathymetry,
+    climatology: Climatology,
+    radius: Array,
+    report: Callable[[int, int], None] = lambda done, total: None,
+) -> Atlas:
+    """Baroclinic modes 1 to 3 over the adjoining deep water at every node.
+
+    Parameters
+    ----------
+    network : Network
+        Of the baroclinic family.
+    depths : Bathymetry
+    climatology : Climatology
+    radius : ndarray, shape (n,)
+        First-mode deformation radius expected at the nodes (m); sets how far out "deep" is sought.
+    report : callable, optional
+        Told how many nodes of how many are done.
+
+    Returns
+    -------
+    Atlas
+    """
+    depth = adjoining_depth(network, depths, radius)
+    known = np.nonzero(np.isfinite(depth))[0]
+    count = len(BAROCLINIC_MODES)
+    speed = np.full((count, network.size), np.nan)
+    value = np.full((count, network.size), np.nan)
+    n2 = climatology.profiles(network.lon[known], network.lat[known]).n2
+    for start in range(0, known.size, 1000):
+        nodes, columns = known[start : start + 1000], n2[start : start + 1000]
+        usable = np.isfinite(columns).all(axis=1)
+        if usable.any():
+            column = (columns[usable], climatology.depth, depth[nodes[usable]])
+            c = phase_speeds(*column, count)
+            speed[:, nodes[usable]] = c.T
+            value[:, nodes[usable]] = surface_values(*column, c).T
+        report(min(start + 1000, known.size), known.size)
+    return Atlas(np.array(BAROCLINIC_MODES), depth, speed, value)
