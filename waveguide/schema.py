@@ -154,6 +154,7 @@ ARRIVALS_ATTRIBUTES = (
     "period_days",
     "ocean",
     "source",
+    "history",
     "data_sha256",
     "caution",
 )

@@ -51,6 +51,7 @@ def arrivals_attributes(scenario: Scenario, data_sha256: Mapping[str, str]) -> d
         "period_days": scenario.waves.period_days,
         "ocean": scenario.ocean.source,
         "source": f"waveguide {software_version()}",
+        "history": f"waveguide arrivals {scenario.name}",
         "data_sha256": "; ".join(f"{name} {digest}" for name, digest in data_sha256.items()),
         "caution": CAUTION,
     }

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.report.map_labels import LabelPlacer
-from waveguide.report.map_view import View, choose_view, draw_graticule, draw_land, extent
+from waveguide.report.map_view import Bounds, View, choose_view, draw_graticule, draw_land, extent
 from waveguide.report.routes import leg_line, legs_of, split_at_date_line, vertices_of
 from waveguide.report.text import plain
 
@@ -20,10 +20,8 @@ if TYPE_CHECKING:
 
     from waveguide.geodesy import Array
 
-# Colours that stay apart in the common kinds of colour blindness, and widths that let each mode
-# be seen where several follow the same coast.
 _COLOURS = {0: "#3b3b3b", 1: "#1f6fb4", 2: "#e06c00", 3: "#0a8f63"}
-_WIDTHS = {0: 6.0, 1: 4.4, 2: 2.6, 3: 1.2}
+"""Of the modes; they stay apart in the common kinds of colour blindness."""
 
 _TICK_STEPS = np.array([0.05, 0.1, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0, 200.0])
 """Intervals of the travel-time ticks (days)."""
@@ -31,10 +29,11 @@ _TICK_STEPS = np.array([0.05, 0.1, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 10
 
 @dataclass(frozen=True)
 class _Line:
-    """A leg as drawn: pieces of (n, 2) map coordinates (m), its mode and how it is dashed."""
+    """A leg as drawn: pieces of (n, 2) map coordinates (m), its mode, width and dashes."""
 
     pieces: list[Array]
     mode: int
+    width: float
     dashes: str
 
 
@@ -74,6 +73,7 @@ def draw_map(dataset: xr.Dataset) -> Figure:
     for line in lines:
         _draw_line(axes, line)
     labels = LabelPlacer(axes, _pixels(axes, lines))
+    labels.keep_texts_clear()
     _draw_places(axes, dataset, view, labels)
     _draw_ticks(axes, dataset, view, labels)
     _draw_legend(figure, axes, dataset)
@@ -94,7 +94,7 @@ def _all_positions(dataset: xr.Dataset) -> tuple[Array, Array]:
     return lon, lat
 
 
-def _frame(dataset: xr.Dataset, bounds: tuple[float, float, float, float]) -> tuple[Figure, Axes]:
+def _frame(dataset: xr.Dataset, bounds: Bounds) -> tuple[Figure, Axes]:
     """A figure of the shape of the map, with room for title and legend outside the axes."""
     from matplotlib.backends.backend_agg import FigureCanvasAgg
     from matplotlib.figure import Figure
@@ -134,7 +134,15 @@ def _line(dataset: xr.Dataset, leg: int, view: View) -> _Line:
     dashes = ":" if attachment else "--" if alternative else "-"
     lon, lat = leg_line(dataset, leg)
     pieces = split_at_date_line(lon - view.middle, lat)
-    return _Line([np.column_stack(view.project(*_fine(*p))) for p in pieces], mode, dashes)
+    width = _widths(dataset)[mode] if dashes == "-" else 1.2
+    lines = [np.column_stack(view.project(*_fine(*piece))) for piece in pieces]
+    return _Line(lines, mode, width, dashes)
+
+
+def _widths(dataset: xr.Dataset) -> dict[int, float]:
+    """Line widths (points): the lower the mode the wider, so that each shows beneath the next."""
+    modes = sorted(dataset["mode"].values.tolist(), reverse=True)
+    return {mode: 2.0 + 1.6 * rank for rank, mode in enumerate(modes)}
 
 
 def _fine(lon: Array, lat: Array) -> tuple[Array, Array]:
@@ -146,15 +154,15 @@ def _fine(lon: Array, lat: Array) -> tuple[Array, Array]:
 
 
 def _draw_line(axes: Axes, line: _Line) -> None:
-    main = line.dashes == "-"
+    above = 0.05 if line.dashes == "-" else 0.0
     for piece in line.pieces:
         axes.plot(
             *piece.T,
             color=_COLOURS[line.mode],
-            linewidth=_WIDTHS[line.mode] if main else 1.2,
+            linewidth=line.width,
             linestyle=line.dashes,
             solid_capstyle="round",
-            zorder=3.0 + 0.1 * line.mode + (0.05 if main else 0.0),
+            zorder=3.0 + 0.1 * line.mode + above,
         )
 
 
@@ -193,6 +201,7 @@ def _draw_ticks(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer
     longest = float(np.max(dataset["route_front_time_days"].values, initial=0.0))
     step = float(_TICK_STEPS[np.searchsorted(_TICK_STEPS[:-1], longest / 8.0)])
     near = np.ptp(axes.get_xlim()) / 80.0  # closer ticks of the same time are one
+    widths = _widths(dataset)
     drawn: dict[tuple[int, int], list[complex]] = {}
     for route in np.flatnonzero(dataset["route_kind"].values == "earliest"):
         mode = int(dataset["mode"].values[dataset["route_mode"].values[route]])
@@ -205,7 +214,7 @@ def _draw_ticks(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer
                 x,
                 y,
                 marker=(2, 0, along),
-                markersize=9 + _WIDTHS[mode],
+                markersize=9.0 + widths[mode],
                 markeredgecolor=_COLOURS[mode],
                 markeredgewidth=1.4,
                 zorder=5,
@@ -241,9 +250,10 @@ def _draw_legend(figure: Figure, axes: Axes, dataset: xr.Dataset) -> None:
     """What the lines and marks mean, below the map, and the caution."""
     from matplotlib.lines import Line2D
 
+    widths = _widths(dataset)
     present = sorted({int(dataset["mode"].values[i]) for i in dataset["route_mode"].values})
     handles = [
-        Line2D([], [], color=_COLOURS[m], lw=_WIDTHS[m], label=_mode_name(m)) for m in present
+        Line2D([], [], color=_COLOURS[m], lw=widths[m], label=_mode_name(m)) for m in present
     ]
     if (dataset["leg_kind"].values == "attachment").any():
         handles.append(Line2D([], [], color="#3b3b3b", lw=1.2, ls=":", label="to the guide"))

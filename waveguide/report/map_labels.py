@@ -42,6 +42,12 @@ class LabelPlacer:
         right, top = self._pixels(x, y) + self._points(radius)
         self.taken.append((left, bottom, right, top))
 
+    def keep_texts_clear(self) -> None:
+        """Keep labels off the texts that are on the map already."""
+        for text in self.axes.texts:
+            extent = text.get_window_extent(self._renderer())
+            self.taken.append((extent.x0, extent.y0, extent.x1, extent.y1))
+
     def place(
         self, text: str, x: float, y: float, reach: tuple[float, ...], needed: bool, **style: Any
     ) -> bool:
@@ -65,7 +71,7 @@ class LabelPlacer:
             Whether it was written.
         """
         note = self._note(text, x, y, style)
-        extent = note.get_window_extent(self.axes.figure.canvas.get_renderer())  # type: ignore[attr-defined]
+        extent = note.get_window_extent(self._renderer())
         size = np.array([extent.width, extent.height])
         offers = self._offers(self._pixels(x, y), size, reach)
         cost, best, far = min(offers, key=lambda offer: offer[0])
@@ -121,7 +127,10 @@ class LabelPlacer:
             (self.lines > np.array(box[:2])).all(axis=1)
             & (self.lines < np.array(box[2:])).all(axis=1)
         )
-        return float(300.0 * outside + 100.0 * overlaps + min(on_line, 40))
+        return float(300.0 * outside + 100.0 * overlaps + min(2 * on_line, 80))
+
+    def _renderer(self) -> Any:
+        return self.axes.figure.canvas.get_renderer()  # type: ignore[attr-defined]
 
     def _pixels(self, x: float, y: float) -> Array:
         return np.asarray(self.axes.transData.transform((x, y)), float)

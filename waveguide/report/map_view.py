@@ -17,6 +17,9 @@ if TYPE_CHECKING:
 
     from waveguide.geodesy import Array
 
+Bounds = tuple[float, float, float, float]
+"""Left, right, bottom and top of a map, in map coordinates (m)."""
+
 LAND_COLOUR = "#dcd8cf"
 LINE_COLOUR = "#c4ccd2"
 
@@ -100,8 +103,8 @@ def choose_view(lon: Array, lat: Array) -> View:
     return View(middle, 0, "merc" if furthest <= 65.0 else "mill")
 
 
-def extent(view: View, x: Array, y: Array) -> tuple[float, float, float, float]:
-    """Bounds (x0, x1, y0, y1) with a margin, and not too slim for a figure.
+def extent(view: View, x: Array, y: Array) -> Bounds:
+    """Bounds with a margin, and not too slim for a figure.
 
     Parameters
     ----------
@@ -119,17 +122,16 @@ def extent(view: View, x: Array, y: Array) -> tuple[float, float, float, float]:
     return float(left), float(right), float(bottom), float(top)
 
 
-def draw_land(axes: Axes, view: View, bounds: tuple[float, float, float, float]) -> None:
+def draw_land(axes: Axes, view: View, bounds: Bounds) -> None:
     """Land, and lakes on it, under everything else."""
     from matplotlib.collections import PolyCollection
 
-    wide = bounds[1] - bounds[0] > 9e6
-    rings = shoreline("crude" if wide else "low")
-    for level_is_lake, colour in ((False, LAND_COLOUR), (True, "white")):
+    rings = _rings_shown(view, bounds)
+    for is_lake, colour in ((False, LAND_COLOUR), (True, "white")):
         outlines = [
             outline
             for ring in rings
-            if (ring.level == LAKE) == level_is_lake
+            if (ring.level == LAKE) == is_lake
             for outline in _outlines(ring, view, bounds)
         ]
         axes.add_collection(
@@ -138,23 +140,33 @@ def draw_land(axes: Axes, view: View, bounds: tuple[float, float, float, float])
         )
 
 
-def _outlines(ring: Ring, view: View, bounds: tuple[float, float, float, float]) -> list[Array]:
+def _rings_shown(view: View, bounds: Bounds) -> list[Ring]:
+    """The rings large enough to be seen, on the latitudes of the map."""
+    width = bounds[1] - bounds[0]
+    smallest = (width / 1e3 / 700.0) ** 2  # km²: two pixels by two
+    if view.pole:
+        south, north = sorted((20.0 * view.pole, 90.0 * view.pole))
+    else:
+        south, north = (_latitude(view, y) for y in bounds[2:])
+    return [
+        ring
+        for ring in shoreline("low" if width > 8e6 else "intermediate")
+        if ring.area >= smallest and ring.lat.max() >= south and ring.lat.min() <= north
+    ]
+
+
+def _outlines(ring: Ring, view: View, bounds: Bounds) -> list[Array]:
     """A ring on each turn of longitude on which the map shows some of it."""
-    turns = (0.0,) if view.pole else (-360.0, 0.0, 360.0)
+    left, right, bottom, top = bounds
     found = []
-    for turn in turns:
+    for turn in (0.0,) if view.pole else (-360.0, 0.0, 360.0):
         x, y = view.project(ring.lon - view.middle + turn, ring.lat)
-        if (
-            x.max() > bounds[0]
-            and x.min() < bounds[1]
-            and y.max() > bounds[2]
-            and y.min() < bounds[3]
-        ):
+        if x.max() > left and x.min() < right and y.max() > bottom and y.min() < top:
             found.append(np.column_stack([x, y]))
     return found
 
 
-def draw_graticule(axes: Axes, view: View, bounds: tuple[float, float, float, float]) -> None:
+def draw_graticule(axes: Axes, view: View, bounds: Bounds) -> None:
     """Meridians and parallels with their degrees."""
     if view.pole:
         _polar_graticule(axes, view, bounds)
@@ -194,7 +206,7 @@ def _degrees(value: float, sides: str) -> str:
     return f"{abs(value):g}°{sides[0] if value > 0.0 else sides[1]}"
 
 
-def _polar_graticule(axes: Axes, view: View, bounds: tuple[float, float, float, float]) -> None:
+def _polar_graticule(axes: Axes, view: View, bounds: Bounds) -> None:
     axes.set_xticks([])
     axes.set_yticks([])
     style: dict[str, Any] = {"color": LINE_COLOUR, "linewidth": 0.5, "zorder": 0.5}
@@ -212,7 +224,7 @@ def _polar_graticule(axes: Axes, view: View, bounds: tuple[float, float, float, 
 def _edge_label(
     axes: Axes,
     view: View,
-    bounds: tuple[float, float, float, float],
+    bounds: Bounds,
     east: Array,
     lat: Array,
     text: str,

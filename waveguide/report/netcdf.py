@@ -24,7 +24,8 @@ def write_netcdf(dataset: xr.Dataset, folder: Path) -> None:
         Arrivals that pass :func:`waveguide.schema.check`.
     folder : Path
     """
-    stored = dataset.reset_index("target").rename_vars(target="target_name")
+    stored = dataset.copy().reset_index("target").rename_vars(target="target_name")
+    stored["front_date"].attrs["units_metadata"] = "leap_seconds: none"  # section 4.4
     encoding = {str(name): _encoding(variable) for name, variable in stored.variables.items()}
     stored.to_netcdf(folder / "arrivals.nc", engine="netcdf4", encoding=encoding)
 
