@@ -198,14 +198,12 @@ def _draw_places(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlace
 
 def _draw_ticks(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer) -> None:
     """Marks at round travel times along the earliest routes, labelled where there is room."""
-    longest = float(np.max(dataset["route_front_time_days"].values, initial=0.0))
-    step = float(_TICK_STEPS[np.searchsorted(_TICK_STEPS[:-1], longest / 8.0)])
     near = np.ptp(axes.get_xlim()) / 80.0  # closer ticks of the same time are one
-    widths = _widths(dataset)
+    widths, steps = _widths(dataset), _tick_steps(dataset)
     drawn: dict[tuple[int, int], list[complex]] = {}
     for route in np.flatnonzero(dataset["route_kind"].values == "earliest"):
         mode = int(dataset["mode"].values[dataset["route_mode"].values[route]])
-        for number, x, y, along in _tick_places(dataset, int(route), view, step):
+        for number, x, y, along in _tick_places(dataset, int(route), view, steps[mode]):
             same = drawn.setdefault((mode, number), [])
             if any(abs(complex(x, y) - other) < near for other in same):
                 continue
@@ -220,7 +218,16 @@ def _draw_ticks(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer
                 zorder=5,
             )
             style: dict[str, Any] = {"fontsize": 7, "color": _COLOURS[mode], "zorder": 7.5}
-            labels.place(f"{number * step:g} d", x, y, (6.0, 10.0), False, **style)
+            labels.place(f"{number * steps[mode]:g} d", x, y, (6.0, 10.0), False, **style)
+
+
+def _tick_steps(dataset: xr.Dataset) -> dict[int, float]:
+    """Interval of the ticks of each mode (days): at most eight on its longest route."""
+    times = dataset["route_front_time_days"].values
+    modes = dataset["route_mode"].values
+    longest = [float(np.max(times[modes == i], initial=0.0)) for i in range(dataset.sizes["mode"])]
+    steps = _TICK_STEPS[np.searchsorted(_TICK_STEPS[:-1], np.array(longest) / 8.0)]
+    return dict(zip(dataset["mode"].values.tolist(), steps.tolist(), strict=True))
 
 
 def _tick_places(
