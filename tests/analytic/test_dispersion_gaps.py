@@ -7,7 +7,8 @@ import pytest
 from numpy.testing import assert_allclose
 
 from waveguide.errors import InputError
-from waveguide.propagation.gaps import facing_coast_share, passage, sill_share
+from waveguide.modes.vertical import sill_share
+from waveguide.propagation.gaps import facing_coast_share, passage
 
 F, C = 1e-4, 2.0
 R = C / F
@@ -28,7 +29,7 @@ def test_geostrophic_control_of_a_narrow_strait() -> None:
     # corrections are of the order of W/R and ωL/c
     omega, width, length = 0.01 * F, 0.01 * R, 2.0 * R
     out = passage(omega, width, length, -F, C)
-    control = 1.0 / (1.0 - 1j * omega * (length + width) / (F * width))
+    control = 1.0 / (1.0 - 1j * omega * (length + end_correction(width, R)) / (F * width))
     assert_allclose(out.through, control, atol=0.01)
     assert_allclose(out.across, 1.0 - control, atol=0.02)
     assert np.angle(out.through) > 0.5  # it lags
@@ -43,7 +44,7 @@ def test_whole_transport_passes_at_low_frequency() -> None:
 
 def test_wide_opening_is_entered() -> None:
     out = passage(0.1 * F, 8 * R, 3 * R, F, C)
-    assert_allclose(out.through, np.exp(1j * 0.1 * 11.0), atol=1e-3)
+    assert_allclose(out.through, np.exp(1j * 0.1 * 3.0), atol=1e-3)
     assert abs(out.across) < 1e-3
 
 
@@ -51,7 +52,7 @@ def test_front_share_is_the_mean_over_frequencies() -> None:
     # what first reaches the far coast is the response before anything returns, which is the
     # average of the periodic response over one period of 2ωL/c
     width, length = 0.4 * R, 20 * R
-    omega = np.pi * C / (length + width) * (np.arange(256) + 0.5) / 256
+    omega = np.pi * C / (length + end_correction(width, R)) * (np.arange(256) + 0.5) / 256
     across = passage(omega, width, length, F, C).across
     assert_allclose(across.mean(), facing_coast_share(width, R), atol=1e-6)
 

@@ -11,14 +11,12 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.ndimage import find_objects
 from scipy.sparse import coo_matrix, csr_matrix
 from scipy.sparse.csgraph import connected_components, dijkstra
 from scipy.spatial import cKDTree
 
 from waveguide.coast.effective import EffectiveCoast
 from waveguide.coast.raster import GlobalGrid, label_periodic
-from waveguide.constants import EARTH_RADIUS
 from waveguide.geodesy import arc, positions, unit_vectors
 
 Array = NDArray[np.float64]

@@ -127,6 +127,42 @@ def phase_speeds(
     return _extrapolated_speed(rough, _slowness(*fine, number, rigid_lid, start=rough))
 
 
+def surface_values(
+    n2: ArrayLike, depth: ArrayLike, bottom: ArrayLike, phase_speed: ArrayLike
+) -> Array:
+    """Surface pressure p(0) of modes normalised by ∫ p² dz = 1, of many columns at once.
+
+    Parameters
+    ----------
+    n2, depth, bottom : array_like
+        As for `phase_speeds`, shapes (ncolumn, ndepth), (ndepth,) and (ncolumn,).
+    phase_speed : array_like, shape (ncolumn, nmode)
+        Phase speeds from `phase_speeds` (m/s).
+
+    Returns
+    -------
+    ndarray, shape (ncolumn, nmode)
+        p(0) (m^-1/2), positive.
+
+    Raises
+    ------
+    InputError
+        As `phase_speeds`.
+    """
+    slowness = 1.0 / np.asarray(phase_speed, dtype=float)
+    columns, levels, floor = _checked(n2, depth, bottom, slowness.shape[1])
+    thickness, n = _cut(columns, levels, floor, 2 * LAYERS_PER_INTERVAL)
+    w, p, doubled = np.zeros_like(slowness), np.ones_like(slowness), np.zeros_like(slowness)
+    for j in range(thickness.shape[1] - 1, -1, -1):  # from the bottom up
+        d, k = thickness[:, j, None], n[:, j, None] * slowness
+        s, co = np.sin(k * d), np.cos(k * d)
+        # p² + k² W² is constant in the layer, as in `_squared_integral`
+        doubled += (p**2 + (k * w) ** 2) * d - p * w
+        w, p = w * co + p * s / k, p * co - w * k * s
+        doubled += p * w
+    return np.asarray(np.abs(p) / np.sqrt(0.5 * doubled))
+
+
 def vertical_modes(
     n2: ArrayLike,
     depth: ArrayLike,
@@ -176,6 +212,52 @@ def vertical_modes(
     z = np.append(0.0, np.cumsum(d))
     speed = _extrapolated_speed(rough, slowness)
     return VerticalModes(number, speed, z, structure[:, ::-1], displacement[:, ::-1])
+
+
+def sill_share(depth: ArrayLike, structure: ArrayLike, sill_depth: ArrayLike) -> Array:
+    """Share of a mode above a sill, ∫φ² dz over the sill by ∫φ² dz over the whole depth.
+
+    Parameters
+    ----------
+    depth : array_like, shape (nz,)
+        Depths (m), increasing from the surface to the bottom.
+    structure : array_like, shape (..., nz)
+        Pressure structure φ of each mode, linear between the depths.
+    sill_depth : array_like, shape S
+        Depth of the sill (m); beyond the bottom counts as no sill.
+
+    Returns
+    -------
+    ndarray, shape (...) + S
+        0 for a closed strait, 1 for one without sill.
+
+    Raises
+    ------
+    InputError
+        If the depths do not increase.
+    """
+    z, phi = np.asarray(depth, float), np.asarray(structure, float)
+    if z.ndim != 1 or np.any(np.diff(z) <= 0.0):
+        raise InputError(
+            f"depth: {z.size} values that do not increase everywhere; give depths positive down, "
+            "from the surface to the bottom, in increasing order."
+        )
+    sill = np.clip(np.asarray(sill_depth, float), z[0], z[-1])
+    cell = np.clip(np.searchsorted(z, sill, side="right") - 1, 0, z.size - 2)
+    step, upper, lower = np.diff(z), phi[..., :-1], phi[..., 1:]
+    whole = np.concatenate(
+        [np.zeros((*phi.shape[:-1], 1)), np.cumsum(_square(upper, lower) * step, axis=-1)], axis=-1
+    )
+    part = (sill - z[cell]) / step[cell]
+    at_sill = upper[..., cell] + part * (lower[..., cell] - upper[..., cell])
+    above = whole[..., cell] + _square(upper[..., cell], at_sill) * part * step[cell]
+    total = whole[..., -1].reshape(phi.shape[:-1] + (1,) * sill.ndim)
+    return np.asarray(above / total)
+
+
+def _square(first: Array, last: Array) -> Array:
+    """Mean square of a function that is linear from `first` to `last`."""
+    return np.asarray((first**2 + first * last + last**2) / 3.0)
 
 
 def _extrapolated_speed(coarse: Array, fine: Array) -> Array:

@@ -16,8 +16,14 @@ from numpy.typing import NDArray
 
 from waveguide.constants import BETA_EQUATOR, EARTH_RADIUS, deformation_radius
 from waveguide.geodesy import destination
-from waveguide.modes.vertical import barotropic_speed, phase_speeds, surface_values
-from waveguide.network.graph import Network
+from waveguide.modes.vertical import (
+    barotropic_speed,
+    phase_speeds,
+    sill_share,
+    surface_values,
+    vertical_modes,
+)
+from waveguide.network.graph import Network, StepKind
 from waveguide.ocean.bathymetry import Bathymetry
 from waveguide.ocean.stratification import Climatology
 
@@ -42,12 +48,15 @@ class Atlas:
         Long-wave phase speed (m/s), NaN where the mode does not exist.
     coastal_value : ndarray, shape (k, n)
         Modal pressure at the coast F(0,0) with ∫ F² dz = 1 over the coastal wall (m^-1/2).
+    gap_share : ndarray, shape (k, ngap)
+        Share of the mode that clears the sill of each gap, 0 to 1.
     """
 
     mode: Index
     depth: Array
     phase_speed: Array
     coastal_value: Array
+    gap_share: Array
 
     def row(self, mode: int) -> int:
         """Row of a mode, −1 if the atlas does not hold it."""
@@ -181,6 +190,8 @@ def barotropic_atlas(network: Network, depths: Bathymetry) -> Atlas:
         depth=depth,
         phase_speed=np.where(known, speed, np.nan)[None, :],
         coastal_value=np.where(known, 1.0 / np.sqrt(np.where(known, depth, 1.0)), np.nan)[None, :],
+        # F is uniform with depth, so the share is that of the water above the sill
+        gap_share=np.minimum(network.gap_sill / _at_gaps(network, depth), 1.0)[None, :],
     )
 
 
@@ -223,4 +234,29 @@ def flat_bottom_atlas(
             speed[:, nodes[usable]] = c.T
             value[:, nodes[usable]] = surface_values(*column, c).T
         report(min(start + 1000, known.size), known.size)
-    return Atlas(np.array(BAROCLINIC_MODES), depth, speed, value)
+    share = _gap_shares(network, climatology, n2, depth, known)
+    return Atlas(np.array(BAROCLINIC_MODES), depth, speed, value, share)
+
+
+def _at_gaps(network: Network, values: Array) -> Array:
+    """Values of the nodes that the gaps open at, shape (ngap,)."""
+    step = np.nonzero(network.gap >= 0)[0]
+    result = np.full(network.gap_width.size, np.nan)
+    result[network.gap[step]] = values[network.tail[step]]
+    return result
+
+
+def _gap_shares(
+    network: Network, climatology: Climatology, n2: Array, depth: Array, known: Index
+) -> Array:
+    """Share of each mode above the sill of each gap, 1 where there is no sill."""
+    count = len(BAROCLINIC_MODES)
+    share = np.ones((count, network.gap_width.size))
+    for step in np.nonzero((network.gap >= 0) & (network.kind == StepKind.STRAIT))[0]:
+        node, gap = network.tail[step], network.gap[step]
+        row = np.searchsorted(known, node)
+        if row >= known.size or known[row] != node or not np.isfinite(n2[row]).all():
+            continue
+        modes = vertical_modes(n2[row], climatology.depth, float(depth[node]), count)
+        share[:, gap] = sill_share(modes.depth, modes.structure[1:], network.gap_sill[gap])
+    return share

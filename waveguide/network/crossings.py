@@ -158,18 +158,34 @@ def facing_crossings(
     n = nodes.lat.size
     a, b = _candidate_pairs(nodes, radius[:n], nearest_equator)
     distance = arc(np.linalg.norm(nodes.vectors[a] - nodes.vectors[b], axis=1))
-    a, b, distance = _closest_approaches(nodes, a, b, distance)
-    clear = _open_water(coast, nodes.vectors[a], nodes.vectors[b])
-    a, b, distance = a[clear], b[clear], distance[clear]
-    tail, head = np.concatenate([a, b]), np.concatenate([b, a])
+    near = _closest_approaches(nodes, a, b, distance)
+    near = near[_open_water(coast, nodes.vectors[a[near]], nodes.vectors[b[near]])]
+    extent = np.tile(_facing_extent(nodes, a, b, near), 2)
+    tail, head = np.concatenate([a[near], b[near]]), np.concatenate([b[near], a[near]])
+    kind = _opening_or_facing(lines, nodes, tail, head)
     return Crossings(
         tail=tail,
         head=head,
-        kind=_opening_or_facing(lines, nodes, tail, head),
-        width=np.tile(distance, 2),
-        length=np.zeros(tail.size),
+        kind=kind,
+        width=np.tile(distance[near], 2),
+        length=np.where(kind == int(StepKind.FACING_COAST), extent, 0.0),
         sill=np.full(tail.size, np.inf),
     )
+
+
+def _facing_extent(nodes: _CoastNodes, a: Index, b: Index, near: Index) -> Array:
+    """Length over which two coasts face each other within reach about each approach (m)."""
+    extent = np.zeros(near.size)
+    for row, i in enumerate(near):
+        same = (nodes.line[a] == nodes.line[a[i]]) & (nodes.line[b] == nodes.line[b[i]])
+        off = nodes.along[a[same]] - nodes.along[a[i]]
+        turn = nodes.ring_length[a[i]]
+        off = np.unique((off + turn / 2.0) % turn - turn / 2.0)
+        # the run of neighbouring nodes about the approach
+        gaps = np.diff(off) > 3.0 * np.median(np.diff(off), axis=0) if off.size > 2 else []
+        run = np.split(off, np.nonzero(gaps)[0] + 1)
+        extent[row] = next(float(np.ptp(part)) for part in run if (part == 0.0).any())
+    return extent
 
 
 def _candidate_pairs(
@@ -191,8 +207,8 @@ def _candidate_pairs(
 
 def _closest_approaches(
     nodes: _CoastNodes, a: Index, b: Index, distance: Array
-) -> tuple[Index, Index, Array]:
-    """Pairs nearer than every other pair within two crossing widths along either coast."""
+) -> Index:
+    """Rows of the pairs nearer than every other pair within two crossing widths along either coast."""
     order = np.argsort(distance, kind="stable")
     kept: list[int] = []
     for i in order:
@@ -203,8 +219,7 @@ def _closest_approaches(
             if ((near_a < 2 * distance[i]) & (near_b < 2 * distance[i])).any():
                 continue
         kept.append(int(i))
-    chosen = np.sort(np.array(kept, dtype=np.int64))
-    return a[chosen], b[chosen], distance[chosen]
+    return np.sort(np.array(kept, dtype=np.int64))
 
 
 def _open_water(coast: EffectiveCoast, a: Array, b: Array) -> NDArray[np.bool_]:

@@ -65,8 +65,8 @@ class Network:
     passes : ndarray of int, shape (m,)
         Row of the gap whose mouth a coast step passes, otherwise −1.
     gap_width, gap_length, gap_sill : ndarray, shape (k,)
-        Width across, length of the passage, and sill depth (m); length is 0 and the sill
-        infinite for facing coasts and openings.
+        Width across, length of the passage (of the facing stretch for a facing coast, 0 for an
+        opening), and sill depth (m; infinite for facing coasts and openings).
     """
 
     lon: Array

@@ -39,6 +39,7 @@ _MEANING = {
     "depth": "depth of the adjoining deep water",
     "phase_speed": "long-wave phase speed",
     "coastal_value": "modal pressure at the coast, F(0,0)",
+    "gap_share": "share of the mode that clears the sill of a gap",
 }
 
 
@@ -68,6 +69,7 @@ def save_network(path: Path, network: Network, atlas: Atlas, attributes: dict[st
         _write(file, "depth", ("node",), atlas.depth)
         _write(file, "phase_speed", ("mode", "node"), atlas.phase_speed)
         _write(file, "coastal_value", ("mode", "node"), atlas.coastal_value)
+        _write(file, "gap_share", ("mode", "gap"), atlas.gap_share)
 
 
 def _write(file: object, name: str, dimensions: tuple[str, ...], values: NDArray[np.generic]
@@ -120,5 +122,6 @@ def load_network(path: Path) -> tuple[Network, Atlas]:
         depth=read["depth"].astype(float),
         phase_speed=read["phase_speed"].astype(float),
         coastal_value=read["coastal_value"].astype(float),
+        gap_share=read["gap_share"].astype(float),
     )
     return Network(**values), atlas

@@ -23,8 +23,18 @@ and |through|² + |across|² = 1. Limits:
 - W ≫ R: through → e^{iφ}: the wave turns in with its coast;
 - before anything can return from the far end: across = E, the front's share.
 
-The water that moves beyond the two mouths adds inertia of about half a width at each, so L is
-the length of the passage plus its width.
+The water that moves beyond the two mouths adds inertia, as if the passage were longer. Close
+to a mouth the flow is potential flow out of a slot into a half plane (conformal map): over a
+distance r it costs a length (W/π) ln(πer/2W). Further out the sub-inertial pressure obeys
+∇²p = p/R² and steps by fQ along the wall at a mouth of discharge Q; integrating the wall
+condition ∂p/∂x = −(iω/f) ∂p/∂y, with the step's ∂p/∂y = −fQ/R [½ + h(x/R)],
+h = ½ + (1/π)∫ K₁(t)/t dt, ends the logarithm at r = 2R exp(−γ−1), γ being Euler's constant.
+So both mouths together add
+
+    (2W/π) ln(π e^(−γ) R/W)   (nothing for W above 1.76 R),
+
+which is W itself, the usual estimate, for W = 0.37 R. The shallow-water integrations in
+tests/oracle confirm it.
 
 References
 ----------
@@ -110,13 +120,34 @@ def passage(
     _require_positive("length", extent)
     _require_positive("coriolis", f)
     speed = np.asarray(phase_speed, float)
-    direct = np.exp(-w * f / speed)
-    lag = np.exp(1j * np.asarray(omega, float) * (extent + w) / speed)
+    direct = facing_coast_share(w, speed / f)
+    extent = extent + end_correction(w, speed / f)
+    lag = np.exp(1j * np.asarray(omega, float) * extent / speed)
     ring = 1.0 - direct**2 * lag**2
     through = lag * (1.0 - direct**2) / ring
     across = direct * (1.0 - lag**2) / ring
     lost = 2.0 * share * (1.0 - share) * (1.0 - across.real)
     return Passage(*np.broadcast_arrays(share * through, share * across + 1.0 - share, lost))
+
+
+def end_correction(width: ArrayLike, radius: ArrayLike) -> Array:
+    """Length that the water moving beyond both mouths adds to a passage.
+
+    Parameters
+    ----------
+    width : array_like
+        Width W (m), > 0.
+    radius : array_like
+        Deformation radius R (m).
+
+    Returns
+    -------
+    ndarray
+        (2W/π) ln(π e^(−γ) R/W) (m), not below zero.
+    """
+    w = np.asarray(width, float)
+    ratio = np.pi * np.exp(-np.euler_gamma) * np.asarray(radius, float) / w
+    return np.asarray(2.0 / np.pi * w * np.log(np.maximum(ratio, 1.0)))
 
 
 def facing_coast_share(width: ArrayLike, radius: ArrayLike) -> Array:
@@ -136,52 +167,6 @@ def facing_coast_share(width: ArrayLike, radius: ArrayLike) -> Array:
     ndarray
     """
     return np.asarray(np.exp(-np.asarray(width, float) / np.asarray(radius, float)))
-
-
-def sill_share(depth: ArrayLike, structure: ArrayLike, sill_depth: ArrayLike) -> Array:
-    """Share of a mode above a sill, ∫φ² dz over the sill by ∫φ² dz over the whole depth.
-
-    Parameters
-    ----------
-    depth : array_like, shape (nz,)
-        Depths (m), increasing from the surface to the bottom.
-    structure : array_like, shape (..., nz)
-        Pressure structure φ of each mode, linear between the depths.
-    sill_depth : array_like, shape S
-        Depth of the sill (m); beyond the bottom counts as no sill.
-
-    Returns
-    -------
-    ndarray, shape (...) + S
-        0 for a closed strait, 1 for one without sill.
-
-    Raises
-    ------
-    InputError
-        If the depths do not increase.
-    """
-    z, phi = np.asarray(depth, float), np.asarray(structure, float)
-    if z.ndim != 1 or np.any(np.diff(z) <= 0.0):
-        raise InputError(
-            f"depth: {z.size} values that do not increase everywhere; give depths positive down, "
-            "from the surface to the bottom, in increasing order."
-        )
-    sill = np.clip(np.asarray(sill_depth, float), z[0], z[-1])
-    cell = np.clip(np.searchsorted(z, sill, side="right") - 1, 0, z.size - 2)
-    step, upper, lower = np.diff(z), phi[..., :-1], phi[..., 1:]
-    whole = np.concatenate(
-        [np.zeros((*phi.shape[:-1], 1)), np.cumsum(_square(upper, lower) * step, axis=-1)], axis=-1
-    )
-    part = (sill - z[cell]) / step[cell]
-    at_sill = upper[..., cell] + part * (lower[..., cell] - upper[..., cell])
-    above = whole[..., cell] + _square(upper[..., cell], at_sill) * part * step[cell]
-    total = whole[..., -1].reshape(phi.shape[:-1] + (1,) * sill.ndim)
-    return np.asarray(above / total)
-
-
-def _square(first: Array, last: Array) -> Array:
-    """Mean square of a function that is linear from `first` to `last`."""
-    return np.asarray((first**2 + first * last + last**2) / 3.0)
 
 
 def _require_positive(name: str, value: Array) -> None:

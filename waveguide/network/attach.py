@@ -1,0 +1,216 @@
+"""How a position off the guide is tied to it.
+
+A trapped wave reaches a position at an offshore distance d with the share e^(−d/R) of its coastal
+amplitude, and one at a distance y from the equator with e^(−y²/2L_e²). Shoreward of the guide,
+over the shelf, its sea level is taken as that of the guide. Positions beyond 3 R are refused.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from waveguide.constants import BETA_EQUATOR, deformation_radius
+from waveguide.geodesy import (
+    arc,
+    chord,
+    geodesic_length,
+    positions,
+    unit_vectors,
+    wrap_longitude,
+)
+from waveguide.network.graph import Network, StepKind
+from waveguide.ocean.bathymetry import Bathymetry
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+Box = tuple[float, float, float, float]
+
+FARTHEST_RADII = 3.0
+"""Positions farther off the guide than this many deformation radii are refused."""
+
+WIDEST_SHELF = 300e3
+"""Shoreward of the guide a position may lie this far on the shelf (m)."""
+
+MOST_LAND = 0.5
+"""A tie may lead over land for this share of its way: gauges stand on land cells of the grid."""
+
+
+@dataclass(frozen=True)
+class Ties:
+    """Nodes that a position (or a box) is tied to.
+
+    Attributes
+    ----------
+    node : ndarray of int, shape (k,)
+        Empty when the position is off the guide.
+    distance : ndarray, shape (k,)
+        Distance to the node (m); 0 within a box.
+    radii : ndarray, shape (k,)
+        The same in deformation radii.
+    factor : ndarray, shape (k,)
+        Share of the guide's amplitude, 0 to 1.
+    inshore : ndarray of bool, shape (k,)
+        Whether the position lies shoreward of the guide.
+    nearest : float
+        Distance to the nearest node that carries the mode, tied or not (m); infinite if none.
+    nearest_radii : float
+        The same in deformation radii.
+    """
+
+    node: Index
+    distance: Array
+    radii: Array
+    factor: Array
+    inshore: NDArray[np.bool_]
+    nearest: float
+    nearest_radii: float
+
+
+def point_box(lon: float, lat: float) -> Box:
+    """A position as a box without extent."""
+    return (lon, lat, lon, lat)
+
+
+def closest_in_box(box: Box, lon: Array, lat: Array) -> tuple[Array, Array]:
+    """The place in a box (west, south, east, north; degrees) closest to each position."""
+    west, south, east, north = box
+    half = ((east - west) % 360.0) / 2.0
+    middle = west + half
+    off = wrap_longitude(lon - middle)
+    return wrap_longitude(middle + np.clip(off, -half, half)), np.clip(lat, south, north)
+
+
+def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
+    """Tie a position or a box to the nodes of a network that carry a mode.
+
+    Of every stretch of guide within reach the node of closest approach is taken; of nodes inside
+    the box, all.
+
+    Parameters
+    ----------
+    network : Network
+    speed : ndarray, shape (n,)
+        Phase speed of the mode (m/s), NaN where it does not exist.
+    box : (west, south, east, north)
+        Degrees; a position is a box without extent.
+    depths : Bathymetry
+        Tells whether land lies between.
+
+    Returns
+    -------
+    Ties
+    """
+    node, off_lon, off_lat, distance = _within_reach(network, speed, box)
+    if not node.size:
+        return _none(network, speed, box)
+    inshore = _is_inshore(network, node, off_lon, off_lat) & (distance > 0.0)
+    local = _local_speed(speed, node)
+    radius = deformation_radius(local, network.lat[node])
+    radii = distance / radius
+    # The grid of nodes is coarse: what lies within one node spacing is on the guide.
+    offshore_loss = np.where(
+        network.equatorial[node],
+        BETA_EQUATOR * distance**2 / (2.0 * local),
+        np.where(inshore, 0.0, radii),
+    )
+    allowed = (radii <= FARTHEST_RADII) | (inshore & (distance <= WIDEST_SHELF))
+    keep = allowed & _closest_on_line(network, node, distance)
+    keep &= _mostly_water(network, node, off_lon, off_lat, distance, depths)
+    nearest = int(np.argmin(distance))
+    return Ties(
+        node[keep], distance[keep], radii[keep], np.exp(-offshore_loss[keep]), inshore[keep],
+        float(distance[nearest]), float(radii[nearest]),
+    )
+
+
+def _local_speed(speed: Array, node: Index) -> Array:
+    return np.asarray(speed[node])
+
+
+def _within_reach(
+    network: Network, speed: Array, box: Box
+) -> tuple[Index, Array, Array, Array]:
+    """Nodes near a box that carry the mode, the place in the box nearest each, the distance (m)."""
+    lon, lat = closest_in_box(box, network.lon, network.lat)
+    rough = arc(np.linalg.norm(
+        unit_vectors(lon, lat) - unit_vectors(network.lon, network.lat), axis=1
+    ))
+    carried = np.isfinite(speed)
+    radius = deformation_radius(np.where(carried, speed, 0.0), network.lat)
+    reach = np.maximum(FARTHEST_RADII * radius, WIDEST_SHELF) * 1.01
+    node = np.nonzero(carried & (rough <= reach))[0]
+    distance = geodesic_length(network.lon[node], network.lat[node], lon[node], lat[node])
+    return node, lon[node], lat[node], distance
+
+
+def _none(network: Network, speed: Array, box: Box) -> Ties:
+    """No ties, but how far away the guide is."""
+    carried = np.nonzero(np.isfinite(speed))[0]
+    nearest, radii = np.inf, np.inf
+    if carried.size:
+        lon, lat = closest_in_box(box, network.lon[carried], network.lat[carried])
+        away = geodesic_length(network.lon[carried], network.lat[carried], lon, lat)
+        at = int(np.argmin(away))
+        nearest = float(away[at])
+        radii = nearest / float(
+            deformation_radius(speed[carried[at]], network.lat[carried[at]])
+        )
+    empty = np.zeros(0)
+    return Ties(np.zeros(0, np.int64), empty, empty, empty, np.zeros(0, bool), nearest, radii)
+
+
+def _is_inshore(network: Network, node: Index, lon: Array, lat: Array) -> NDArray[np.bool_]:
+    """Whether places lie on the landward side of the coast at their nodes."""
+    here = unit_vectors(network.lon[node], network.lat[node])
+    azimuth = np.radians(np.nan_to_num(network.offshore[node]))
+    lam, phi = np.radians(network.lon[node]), np.radians(network.lat[node])
+    east = np.stack([-np.sin(lam), np.cos(lam), np.zeros_like(lam)], axis=1)
+    north = np.cross(here, east)
+    seaward = np.sin(azimuth)[:, None] * east + np.cos(azimuth)[:, None] * north
+    towards = unit_vectors(lon, lat) - here
+    return np.asarray(((seaward * towards).sum(axis=1) < 0.0) & ~network.equatorial[node])
+
+
+def _closest_on_line(network: Network, node: Index, distance: Array) -> NDArray[np.bool_]:
+    """Nodes no farther than both neighbours on their line, or within the box itself."""
+    away = np.full(network.size, np.inf)
+    away[node] = distance
+    along = (network.kind == StepKind.COAST) | (network.kind == StepKind.EQUATOR)
+    tail, head = network.tail[along], network.head[along]
+    best_neighbour = np.full(network.size, np.inf)
+    np.minimum.at(best_neighbour, tail, away[head])
+    np.minimum.at(best_neighbour, head, away[tail])
+    return np.asarray((distance <= best_neighbour[node]) | (distance == 0.0))
+
+
+def _mostly_water(
+    network: Network, node: Index, lon: Array, lat: Array, distance: Array, depths: Bathymetry
+) -> NDArray[np.bool_]:
+    """Whether the way between node and place is not mainly over land."""
+    share = np.linspace(0.0, 1.0, 41)[:, None, None]
+    way = (1.0 - share) * unit_vectors(lon, lat) + share * unit_vectors(
+        network.lon[node], network.lat[node]
+    )
+    land = (depths.sample(*positions(way)) <= 0.0).mean(axis=0)
+    short = distance <= 1.5 * _spacing(network)
+    return np.asarray((land <= MOST_LAND) | short)
+
+
+def _spacing(network: Network) -> float:
+    """Typical distance between nodes (m)."""
+    return float(np.median(network.length[network.kind == StepKind.COAST]))
+
+
+def distance_to_water(lon: float, lat: float, depths: Bathymetry, reach: float) -> float:
+    """Distance from a position to the nearest sea of the bathymetry (m), infinite beyond reach."""
+    half = np.degrees(chord(reach))
+    stretch = 1.0 / max(np.cos(np.radians(lat)), 0.05)
+    offset = np.linspace(-half, half, 61)
+    x, y = np.meshgrid(lon + offset * stretch, np.clip(lat + offset, -90.0, 90.0))
+    wet = depths.sample(x, y) > 0.0
+    if not wet.any():
+        return float("inf")
+    return float(geodesic_length(lon, lat, x[wet], y[wet]).min())
