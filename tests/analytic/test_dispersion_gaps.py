@@ -8,7 +8,7 @@ from numpy.testing import assert_allclose
 
 from waveguide.errors import InputError
 from waveguide.modes.vertical import sill_share
-from waveguide.propagation.gaps import facing_coast_share, passage
+from waveguide.propagation.gaps import end_correction, facing_coast_share, passage
 
 F, C = 1e-4, 2.0
 R = C / F
