@@ -1,1 +1,27 @@
-"""Arrival times and amplitudes of sea-level signals along coasts and the equator."""
+"""Arrival times and amplitudes of sea-level signals along coasts and the equator.
+
+>>> import waveguide
+>>> scenario = waveguide.read_scenario("peru_burst")
+>>> arrivals = waveguide.arrivals(scenario)  # an xarray.Dataset
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from waveguide.pipeline import arrivals
+    from waveguide.scenario import read_scenario
+
+__all__ = ["arrivals", "read_scenario"]
+
+_HOME = {"arrivals": "waveguide.pipeline", "read_scenario": "waveguide.scenario"}
+
+
+def __getattr__(name: str) -> Any:
+    """Import a public name when it is first used, so that importing the package stays light."""
+    if name not in _HOME:
+        raise AttributeError(f"module 'waveguide' has no attribute {name!r}")
+    from importlib import import_module
+
+    return getattr(import_module(_HOME[name]), name)

@@ -34,6 +34,10 @@ FARTHEST_RADII = 3.0
 WIDEST_SHELF = 300e3
 """Shoreward of the guide a position may lie this far on the shelf (m)."""
 
+FAINTEST_TIE = 0.3
+"""Of several stretches of guide near a position those with less than this share of the amplitude
+of the best are left out: the signal there is that of the nearer guide."""
+
 MOST_LAND = 0.5
 """A tie may lead over land for this share of its way: gauges stand on land cells of the grid."""
 
@@ -107,27 +111,24 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
     if not node.size:
         return _none(network, speed, box)
     inshore = _is_inshore(network, node, off_lon, off_lat) & (distance > 0.0)
-    local = _local_speed(speed, node)
+    local = speed[node]
     radius = deformation_radius(local, network.lat[node])
     radii = distance / radius
-    # The grid of nodes is coarse: what lies within one node spacing is on the guide.
     offshore_loss = np.where(
         network.equatorial[node],
         BETA_EQUATOR * distance**2 / (2.0 * local),
         np.where(inshore, 0.0, radii),
     )
-    allowed = (radii <= FARTHEST_RADII) | (inshore & (distance <= WIDEST_SHELF))
-    keep = allowed & _closest_on_line(network, node, distance)
+    keep = np.where(inshore, distance <= WIDEST_SHELF, radii <= FARTHEST_RADII)
+    keep &= _closest_on_line(network, node, distance)
     keep &= _mostly_water(network, node, off_lon, off_lat, distance, depths)
+    factor = np.exp(-offshore_loss)
+    keep &= factor >= FAINTEST_TIE * np.max(factor[keep], initial=0.0)
     nearest = int(np.argmin(distance))
     return Ties(
-        node[keep], distance[keep], radii[keep], np.exp(-offshore_loss[keep]), inshore[keep],
+        node[keep], distance[keep], radii[keep], factor[keep], inshore[keep],
         float(distance[nearest]), float(radii[nearest]),
     )
-
-
-def _local_speed(speed: Array, node: Index) -> Array:
-    return np.asarray(speed[node])
 
 
 def _within_reach(

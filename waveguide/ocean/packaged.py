@@ -95,3 +95,15 @@ def checked_file(name: str, folder: Path, manifest: Path) -> Path:
     if hashlib.sha256(content).hexdigest() != entry["sha256"]:
         raise DataError(f"data file {path}: altered, its SHA-256 is not the manifest's; {WAY_OUT}")
     return path
+
+
+def used_files() -> dict[str, str]:
+    """SHA-256 of every data file of the manifest, by name.
+
+    Returns
+    -------
+    dict of str
+    """
+    _, manifest = locations()
+    built = tomllib.loads(manifest.read_text("utf-8")).get("built", {})
+    return {name: entry["sha256"] for name, entry in built.items() if name.endswith(".nc")}

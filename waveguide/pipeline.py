@@ -1,0 +1,200 @@
+"""From a scenario to its arrivals: the only module that knows every stage."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from waveguide.constants import SECONDS_PER_DAY
+from waveguide.errors import InputError
+from waveguide.network.packaged import family_of, packaged_network
+from waveguide.ocean.bathymetry import packaged_bathymetry
+from waveguide.ocean.packaged import used_files
+from waveguide.propagation.arrivals import REACHED, Arrival, mode_arrivals
+from waveguide.propagation.modes import packaged_mode, uniform_mode
+from waveguide.report.attributes import arrivals_attributes
+from waveguide.report.dataset import arrivals_dataset
+from waveguide.scenario import Scenario
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+    from waveguide.network.attach import Box
+    from waveguide.network.graph import Network
+    from waveguide.propagation.losses import ModeAtNodes
+
+Progress = Callable[[str], None]
+
+
+def arrivals(scenario: Scenario, progress: Progress | None = None) -> xr.Dataset:
+    """When, by which route and how strongly a signal reaches each target.
+
+    Parameters
+    ----------
+    scenario : Scenario
+    progress : callable, optional
+        Told the name of each stage as it begins.
+
+    Returns
+    -------
+    xarray.Dataset
+        Arrivals, as declared in :data:`waveguide.schema.ARRIVALS`.
+
+    Raises
+    ------
+    InputError
+        If a position is far inland, the user's own files do not cover a route, or no target is
+        reached in any mode.
+    """
+    say = progress or (lambda stage: None)
+    say("reading depths")
+    check_positions(scenario)
+    answers: dict[int, list[Arrival]] = {}
+    for mode in scenario.waves.modes:
+        say(f"phase speeds of mode {mode}")
+        network, carried = _mode(scenario, mode, say)
+        say(f"routes of mode {mode}")
+        answers[mode] = _answers(scenario, network, carried)
+    _require_an_answer(scenario, answers)
+    return arrivals_dataset(scenario, answers, arrivals_attributes(scenario, used_files()))
+
+
+def source_box(scenario: Scenario) -> Box:
+    """The place of the event as a box (west, south, east, north; degrees)."""
+    event = scenario.event
+    return event.box if event.box is not None else (*event.centre, *event.centre)
+
+
+def _answers(scenario: Scenario, network: Network, mode: ModeAtNodes) -> list[Arrival]:
+    """Arrivals of one mode at every target."""
+    return mode_arrivals(
+        network, mode, packaged_bathymetry(), source_box(scenario), scenario.event.centre,
+        [target.position for target in scenario.targets],
+        2.0 * np.pi / (scenario.waves.period_days * SECONDS_PER_DAY),
+    )
+
+
+def _mode(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAtNodes]:
+    """The network of a mode and what its nodes know of it in the scenario's ocean."""
+    network, atlas = packaged_network(family_of(mode))
+    ocean = scenario.ocean
+    if ocean.phase_speed_m_s is not None:
+        return network, uniform_mode(network, mode, ocean.phase_speed_m_s)
+    packaged = packaged_mode(atlas, mode)
+    if ocean.source == "packaged":
+        return network, packaged
+    from waveguide.own_ocean import own_mode
+
+    own = own_mode(ocean, mode, say)
+    _require_coverage(scenario, network, packaged, own)
+    return network, own
+
+
+def _require_coverage(
+    scenario: Scenario, network: Network, packaged: ModeAtNodes, own: ModeAtNodes
+) -> None:
+    """Refuse own files that leave a part of a route without a speed."""
+    problems = []
+    for target, answer in zip(
+        scenario.targets, _answers(scenario, network, packaged), strict=True
+    ):
+        if answer.status != REACHED:
+            continue
+        steps = answer.routes[0].steps
+        nodes = np.unique(np.concatenate(
+            [network.tail[steps], network.head[steps], answer.target.node]
+        ))
+        bare = nodes[~np.isfinite(own.speed[nodes])]
+        if bare.size:
+            problems.append(
+                f"ocean: the files given do not cover the route of mode {own.number} to "
+                f"{target.name!r}: {bare.size} of its {nodes.size} nodes have no phase speed, "
+                f"between {_extent(network, bare)}; give files that cover this part, or leave the "
+                "key out to use the packaged data"
+            )
+    if problems:
+        raise InputError(problems)
+
+
+def _extent(network: Network, nodes: np.ndarray[tuple[int], np.dtype[np.int64]]) -> str:
+    """Where nodes lie, in words."""
+    south, north = network.lat[nodes].min(), network.lat[nodes].max()
+    lon = np.sort(network.lon[nodes] % 360.0)
+    gap = np.diff(np.append(lon, lon[0] + 360.0))
+    east, west = lon[np.argmax(gap)], lon[(np.argmax(gap) + 1) % lon.size]
+    west, east = ((value + 180.0) % 360.0 - 180.0 for value in (west, east))
+    return f"longitudes {west:.1f} and {east:.1f}, latitudes {south:.1f} and {north:.1f}"
+
+
+FAR_INLAND = 50e3
+"""Positions farther from the sea than this are refused (m)."""
+
+
+def check_positions(scenario: Scenario) -> None:
+    """Refuse positions far inland.
+
+    Parameters
+    ----------
+    scenario : Scenario
+
+    Raises
+    ------
+    InputError
+        Naming every such position, and the swapped one where that is at sea.
+    """
+    places = [(f"targets: {t.name!r}", t.position) for t in scenario.targets]
+    if scenario.event.position is not None:
+        places.append(("event.position", scenario.event.position))
+    problems = [problem for name, place in places if (problem := _inland(name, *place))]
+    if problems:
+        raise InputError(problems)
+
+
+def _inland(name: str, lon: float, lat: float) -> str:
+    """What is wrong with a position, or nothing."""
+    from waveguide.network.attach import distance_to_water
+
+    depths = packaged_bathymetry()
+    away = distance_to_water(lon, lat, depths, 4.0 * FAR_INLAND)
+    if away <= FAR_INLAND:
+        return ""
+    far = f"{away / 1e3:.0f} km" if np.isfinite(away) else f"over {4 * FAR_INLAND / 1e3:.0f} km"
+    swapped = ""
+    if abs(lon) <= 90.0 and distance_to_water(lat, lon, depths, FAR_INLAND) < FAR_INLAND:
+        swapped = f" Are they swapped? [{lat:g}, {lon:g}] is at sea."
+    return (
+        f"{name}: [{lon:g}, {lat:g}] lies {far} from the sea; positions are [longitude, latitude] "
+        f"in degrees, at sea or on a coast, at most {FAR_INLAND / 1e3:.0f} km inland.{swapped}"
+    )
+
+
+def _require_an_answer(scenario: Scenario, answers: dict[int, list[Arrival]]) -> None:
+    """Refuse a scenario none of whose targets is reached, with the reasons."""
+    if any(a.status == REACHED for rows in answers.values() for a in rows):
+        return
+    problems = [
+        f"{target.name!r}, mode {mode}: {_reason(answer)}"
+        for mode, rows in answers.items()
+        for target, answer in zip(scenario.targets, rows, strict=True)
+    ]
+    raise InputError(["no target is reached in any mode:", *problems])
+
+
+def _reason(answer: Arrival) -> str:
+    """Why there is no arrival, with the distances that decide it."""
+    for what, ties in (("source", answer.source), ("target", answer.target)):
+        if answer.status == f"{what} off the guide":
+            return (
+                f"{answer.status}, {ties.nearest / 1e3:.0f} km or {ties.nearest_radii:.1f} R from "
+                "it where at most 3 R are followed (or land lies between); move it towards the "
+                "coast or the equator"
+            )
+    if answer.status == "no route":
+        return (
+            "no route: signals do not travel that way. They keep the coast on the right in the "
+            "northern hemisphere, on the left in the southern, and go eastward on the equator; "
+            "see whether source and target should be exchanged"
+        )
+    return answer.status

@@ -1,0 +1,196 @@
+"""Arrivals as one xarray Dataset, the form in which they are saved, printed and drawn."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from waveguide.constants import SECONDS_PER_DAY
+from waveguide.propagation.arrivals import REACHED, Arrival
+from waveguide.propagation.legs import Leg
+from waveguide.propagation.routes import Route
+from waveguide.schema import ARRIVALS, assemble, check
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+    from waveguide.scenario import Scenario
+
+
+def arrivals_dataset(
+    scenario: Scenario, answers: Mapping[int, list[Arrival]], attributes: Mapping[str, Any]
+) -> xr.Dataset:
+    """Put arrivals into a Dataset that follows the schema.
+
+    Parameters
+    ----------
+    scenario : Scenario
+    answers : mapping of mode to list of Arrival
+        One arrival for each target of the scenario.
+    attributes : mapping
+        Global attributes.
+
+    Returns
+    -------
+    xarray.Dataset
+        See :data:`waveguide.schema.ARRIVALS`.
+    """
+    modes = list(answers)
+    values: dict[str, Any] = {name: [] for name in ARRIVALS}
+    values["target"] = [target.name for target in scenario.targets]
+    values["mode"] = modes
+    values["target_longitude"] = [target.position[0] for target in scenario.targets]
+    values["target_latitude"] = [target.position[1] for target in scenario.targets]
+    rows = {
+        name: [] for name, variable in ARRIVALS.items() if variable.dims == ("target", "mode")
+    }
+    for target in range(len(scenario.targets)):
+        for column, mode in enumerate(modes):
+            arrival = answers[mode][target]
+            for name, value in _row(scenario, arrival).items():
+                rows[name].append(value)
+            for rank, route in enumerate(arrival.routes):
+                _add_route(values, target, column, arrival, rank, route)
+    shape = (len(scenario.targets), len(modes))
+    values.update({name: np.array(row).reshape(shape) for name, row in rows.items()})
+    dataset = assemble(values, attributes)
+    check(dataset)
+    return dataset
+
+
+def _row(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
+    """The variables of one target and mode."""
+    nan = float("nan")
+    row: dict[str, Any] = {
+        "status": arrival.status,
+        "front_time_days": nan,
+        "front_date": np.datetime64("NaT", "ns"),
+        "amplitude_ratio": nan,
+        "amplitude_m": nan,
+        "path_length_km": nan,
+        "mean_speed_m_s": nan,
+        "source_distance_km": arrival.source.nearest / 1e3,
+        "source_distance_radii": arrival.source.nearest_radii,
+        "source_factor": nan,
+        "target_distance_km": arrival.target.nearest / 1e3,
+        "target_distance_radii": arrival.target.nearest_radii,
+        "target_factor": nan,
+        "caution": "; ".join(arrival.cautions),
+    }
+    for name in ("source", "target"):
+        for unit in ("km", "radii"):
+            key = f"{name}_distance_{unit}"
+            row[key] = row[key] if np.isfinite(row[key]) else nan
+    if arrival.status == REACHED:
+        row.update(_reached(scenario, arrival))
+    return row
+
+
+def _reached(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
+    """What a row has where the target is reached."""
+    route, source, target = arrival.routes[0], arrival.source, arrival.target
+    length = sum(float(leg.distance[-1]) for leg in arrival.legs[0] if leg.kind != "attachment")
+    start = np.datetime64(scenario.event.start.replace(tzinfo=None), "ns")
+    height = scenario.event.amplitude_m
+    return {
+        "front_time_days": route.time / SECONDS_PER_DAY,
+        "front_date": start + np.timedelta64(round(route.time * 1e9), "ns"),
+        "amplitude_ratio": route.amplitude,
+        "amplitude_m": float("nan") if height is None else route.amplitude * height,
+        "path_length_km": length / 1e3,
+        "mean_speed_m_s": length / route.time if route.time > 0.0 else float("nan"),
+        "source_distance_km": source.distance[route.start] / 1e3,
+        "source_distance_radii": source.radii[route.start],
+        "source_factor": source.factor[route.start],
+        "target_distance_km": target.distance[route.end] / 1e3,
+        "target_distance_radii": target.radii[route.end],
+        "target_factor": target.factor[route.end],
+    }
+
+
+def _add_route(
+    values: dict[str, Any], target: int, column: int, arrival: Arrival, rank: int, route: Route
+) -> None:
+    """Append one route with its legs and vertices."""
+    legs = arrival.legs[rank]
+    index = len(values["route_target"])
+    guided = sum(float(leg.distance[-1]) for leg in legs if leg.kind != "attachment")
+    _append(values, {
+        "route_target": target,
+        "route_mode": column,
+        "route_kind": _route_kind(arrival.routes, rank),
+        "route_via": _via(legs),
+        "route_front_time_days": route.time / SECONDS_PER_DAY,
+        "route_amplitude_ratio": route.amplitude,
+        "route_length_km": guided / 1e3,
+    })
+    time = distance = 0.0
+    for leg in legs:
+        _add_leg(values, index, leg, time, distance)
+        time += float(leg.time[-1])
+        if leg.kind != "attachment":
+            distance += float(leg.distance[-1])
+
+
+def _add_leg(
+    values: dict[str, Any], route: int, leg: Leg, time: float, distance: float
+) -> None:
+    """Append one leg and its vertices; `time` (s) and `distance` (m) are those at its start."""
+    index = len(values["leg_route"])
+    duration, length = float(leg.time[-1]), float(leg.distance[-1])
+    _append(values, {
+        "leg_route": route,
+        "leg_kind": leg.kind,
+        "leg_from_longitude": leg.lon[0],
+        "leg_from_latitude": leg.lat[0],
+        "leg_to_longitude": leg.lon[-1],
+        "leg_to_latitude": leg.lat[-1],
+        "leg_length_km": length / 1e3,
+        "leg_time_days": duration / SECONDS_PER_DAY,
+        "leg_phase_speed_m_s": length / duration if duration > 0.0 else float("nan"),
+        "leg_amplitude_factor": leg.amplitude,
+    })
+    along = 0.0 if leg.kind == "attachment" else leg.distance
+    for name, vertex in (
+        ("vertex_leg", np.full(leg.lon.size, index)),
+        ("vertex_longitude", leg.lon),
+        ("vertex_latitude", leg.lat),
+        ("vertex_distance_km", (distance + along + np.zeros(leg.lon.size)) / 1e3),
+        ("vertex_time_days", (time + leg.time) / SECONDS_PER_DAY),
+    ):
+        values[name].extend(vertex.tolist())
+
+
+def _append(values: dict[str, Any], row: Mapping[str, Any]) -> None:
+    for name, value in row.items():
+        values[name].append(value)
+
+
+def _route_kind(routes: list[Route], rank: int) -> str:
+    """Earliest, strongest or alternative; one that is both is called the earliest."""
+    if rank == 0:
+        return "earliest"
+    strongest = max(route.amplitude for route in routes)
+    return "strongest" if routes[rank].amplitude == strongest else "alternative"
+
+
+def _via(legs: list[Leg]) -> str:
+    """What tells a route from others: its gaps by position, else the kinds of guide."""
+    gaps = [
+        f"{leg.kind} at {_place(leg)}"
+        for leg in legs
+        if leg.kind in ("strait", "facing coast", "opening")
+    ]
+    if gaps:
+        return ", ".join(gaps)
+    kinds = dict.fromkeys(leg.kind for leg in legs if leg.kind != "attachment")
+    return " and ".join(kinds)
+
+
+def _place(leg: Leg) -> str:
+    lon, lat = float(leg.lon[0]), float(leg.lat[0])
+    return (
+        f"{abs(lat):.1f}°{'N' if lat >= 0 else 'S'} {abs(lon):.1f}°{'E' if lon >= 0 else 'W'}"
+    )
