@@ -40,7 +40,7 @@ def coriolis(lat: ArrayLike) -> NDArray[np.float64]:
     ndarray
         f (1/s), same shape as `lat`, negative in the southern hemisphere.
     """
-    return 2.0 * ROTATION_RATE * np.sin(np.radians(np.asarray(lat, dtype=float)))
+    return np.asarray(2.0 * ROTATION_RATE * np.sin(np.radians(np.asarray(lat, dtype=float))))
 
 
 def beta(lat: ArrayLike) -> NDArray[np.float64]:
@@ -56,7 +56,7 @@ def beta(lat: ArrayLike) -> NDArray[np.float64]:
     ndarray
         β (1/(m s)), same shape as `lat`.
     """
-    return BETA_EQUATOR * np.cos(np.radians(np.asarray(lat, dtype=float)))
+    return np.asarray(BETA_EQUATOR * np.cos(np.radians(np.asarray(lat, dtype=float))))
 
 
 def deformation_radius(phase_speed: ArrayLike, lat: ArrayLike) -> NDArray[np.float64]:

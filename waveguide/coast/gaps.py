@@ -29,19 +29,24 @@ class Strait:
 
     Attributes
     ----------
-    mouths : tuple of (lon, lat)
-        Middle of either mouth, degrees.
+    lon, lat : ndarray, shape (k,)
+        Middle of the passage from mouth to mouth, degrees.
     length : float
         Length of the passage between the mouths (m).
     width : float
         Width at its narrowest (m), as the grid resolves it.
+    inertia_length : float
+        Length (m) that a channel of the narrowest width would need to have the same inertia,
+        W ∫ ds/W(s): where the passage widens it counts for less.
     sill_depth : float
         Greatest depth that the whole passage offers (m).
     """
 
-    mouths: tuple[tuple[float, float], tuple[float, float]]
+    lon: Array
+    lat: Array
     length: float
     width: float
+    inertia_length: float
     sill_depth: float
 
 
@@ -172,16 +177,15 @@ def _path(before: NDArray[np.int32], last: int) -> Index:
 def _passage(patch: _Patch, path: Index, start: Index, end: Index) -> Strait:
     """Width, length and sill of the passage along a path of cells."""
     along = patch.vectors[path]
-    length = float(arc(np.linalg.norm(np.diff(along, axis=0), axis=1)).sum())
+    lon, lat = positions(along)
+    step = arc(np.linalg.norm(np.diff(along, axis=0), axis=1))
+    width = 2.0 * patch.clearance[path]
+    inertia = width.min() * (step * 0.5 * (1.0 / width[1:] + 1.0 / width[:-1])).sum()
     return Strait(
-        mouths=(_middle(along[0]), _middle(along[-1])),
-        length=length,
-        width=2.0 * float(patch.clearance[path].min()),
+        lon=lon,
+        lat=lat,
+        length=float(step.sum()),
+        width=float(width.min()),
+        inertia_length=float(inertia),
         sill_depth=float(patch.depth[path].min()),
     )
-
-
-def _middle(vector: Array) -> tuple[float, float]:
-    """Position of a unit vector as plain floats."""
-    lon, lat = positions(vector)
-    return float(lon), float(lat)

@@ -124,12 +124,16 @@ def closed_ocean(grid: GlobalGrid, ocean: Mask, radius: Array) -> Mask:
     return ocean & within(grid, open_water, ocean, radius)
 
 
-def label_periodic(mask: Mask) -> tuple[NDArray[np.int64], int]:
-    """Label 4-connected components of a mask whose columns wrap and whose pole rows are one cell.
+def label_periodic(mask: Mask, diagonal: bool = False) -> tuple[NDArray[np.int64], int]:
+    """Label connected components of a mask whose columns wrap and whose pole rows are one cell.
 
     Parameters
     ----------
     mask : ndarray of bool, shape (ny, nx)
+    diagonal : bool
+        Whether cells that meet at a corner only are connected. A traced line passes between
+        land cells that do (see `waveguide.coast.trace.chain_rings`), so water is connected
+        that way and land is not.
 
     Returns
     -------
@@ -137,14 +141,15 @@ def label_periodic(mask: Mask) -> tuple[NDArray[np.int64], int]:
         0 outside the mask, then 1 … count.
     count : int
     """
-    labels, count = label(mask)
-    seam = mask[:, 0] & mask[:, -1]
-    links = [np.stack([labels[seam, 0], labels[seam, -1]])]
+    labels, count = label(mask, np.ones((3, 3)) if diagonal else None)
+    first, last = labels[:, 0], labels[:, -1]
+    links = [np.stack([first, last])]
+    if diagonal:
+        links += [np.stack([first[1:], last[:-1]]), np.stack([first[:-1], last[1:]])]
     for row in (labels[0], labels[-1]):
-        present = np.unique(row[row > 0])
-        if present.size > 1:
-            links.append(np.stack([np.full(present.size - 1, present[0]), present[1:]]))
+        links.append(np.stack([row, np.full(row.size, row.max())]))
     pairs = np.concatenate(links, axis=1)
+    pairs = pairs[:, (pairs > 0).all(axis=0)]
     graph = coo_matrix((np.ones(pairs.shape[1]), pairs), shape=(count + 1, count + 1))
     _, merged = connected_components(graph, directed=False)
     _, compact = np.unique(merged, return_inverse=True)
@@ -154,9 +159,23 @@ def label_periodic(mask: Mask) -> tuple[NDArray[np.int64], int]:
 
 
 def component_areas(grid: GlobalGrid, labels: NDArray[np.int64], count: int) -> Array:
-    """Area of every labelled component (m²), shape (count + 1,), entry 0 the unlabelled rest."""
+    """Area of every labelled component.
+
+    Parameters
+    ----------
+    grid : GlobalGrid
+    labels : ndarray of int, shape (ny, nx)
+        0 … count.
+    count : int
+
+    Returns
+    -------
+    ndarray, shape (count + 1,)
+        Area (m²); entry 0 is the unlabelled rest.
+    """
     cell = grid.spacing**2 * np.cos(np.radians(grid.lat)) * (
         (grid.lon[1] - grid.lon[0]) / (grid.lat[1] - grid.lat[0])
     )
     weights = np.broadcast_to(cell[:, None], grid.shape)
-    return np.bincount(labels.ravel(), weights=weights.ravel(), minlength=count + 1)
+    area = np.bincount(labels.ravel(), weights=weights.ravel(), minlength=count + 1)
+    return np.asarray(area, dtype=float)

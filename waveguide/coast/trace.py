@@ -13,11 +13,13 @@ from numpy.typing import NDArray
 from scipy.ndimage import gaussian_filter1d
 
 from waveguide.coast.raster import GlobalGrid, Mask
-from waveguide.constants import EARTH_RADIUS
 from waveguide.geodesy import arc, positions, unit_vectors
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
+
+SPACING_ROUNDS = 6
+"""Rounds in which nodes are moved to equal distances; each leaves a tenth of the inequality."""
 
 
 def boundary_pieces(ocean: Mask) -> tuple[Index, Index]:
@@ -74,7 +76,7 @@ def chain_rings(start: Index, end: Index, columns: int) -> list[Index]:
     for piece in np.nonzero(last - first == 2)[0]:
         options = (first[piece], first[piece] + 1)
         following[piece] = max(
-            options, key=lambda option: _right_turn(start, end, piece, option, columns)
+            options, key=lambda option: _right_turn(start, end, int(piece), int(option), columns)
         )
     return _cycles(following, start)
 
@@ -120,16 +122,11 @@ def corner_positions(grid: GlobalGrid, corners: Index) -> tuple[Array, Array]:
 
 def ring_length(vectors: Array) -> float:
     """Length (m) of a closed line of unit vectors, shape (n, 3)."""
-    return float(arc(np.linalg.norm(vectors - np.roll(vectors, -1, axis=0), axis=1)).sum())
+    return float(_closed_steps(vectors).sum())
 
 
-def _resample_closed(vectors: Array, parameter: Array, count: int) -> Array:
-    """Points at equal steps of a parameter that grows along a closed line.
-
-    `parameter` has one more entry than `vectors`: its last is the whole turn.
-    """
-    closed = np.concatenate([vectors, vectors[:1]])
-    wanted = np.arange(count) * (parameter[-1] / count)
+def _on_line(closed: Array, parameter: Array, wanted: Array) -> Array:
+    """Unit vectors at values of a parameter that grows along a line, shape (wanted.size, 3)."""
     points = np.stack([np.interp(wanted, parameter, closed[:, k]) for k in range(3)], axis=1)
     return np.asarray(points / np.linalg.norm(points, axis=1, keepdims=True))
 
@@ -149,21 +146,48 @@ def smooth_ring(vectors: Array, width: Array) -> Array:
     ndarray, shape (m, 3)
         The smoothed line, four points to a width.
     """
-    step = arc(np.linalg.norm(vectors - np.roll(vectors, -1, axis=0), axis=1))
     mean_width = 0.5 * (width + np.roll(width, -1))
-    warped = np.concatenate([[0.0], np.cumsum(step / mean_width)])
+    warped = np.concatenate([[0.0], np.cumsum(_closed_steps(vectors) / mean_width)])
     count = max(int(np.ceil(4.0 * warped[-1])), 8)
-    even = _resample_closed(vectors, warped, count)
+    closed = np.concatenate([vectors, vectors[:1]])
+    even = _on_line(closed, warped, np.arange(count) * (warped[-1] / count))
     sigma = count / warped[-1]
     averaged = gaussian_filter1d(even, sigma, axis=0, mode="wrap")
     return np.asarray(averaged / np.linalg.norm(averaged, axis=1, keepdims=True))
 
 
+def _closed_steps(vectors: Array) -> Array:
+    """Distance (m) from each point of a closed line to the next, shape (n,)."""
+    return arc(np.linalg.norm(vectors - np.roll(vectors, -1, axis=0), axis=1))
+
+
 def space_evenly(vectors: Array, spacing: float) -> Array:
-    """Nodes at equal distance along a closed line, as close to `spacing` (m) as fits the turn."""
-    step = arc(np.linalg.norm(vectors - np.roll(vectors, -1, axis=0), axis=1))
-    along = np.concatenate([[0.0], np.cumsum(step)])
-    return _resample_closed(vectors, along, max(round(along[-1] / spacing), 4))
+    """Nodes equally far from one another, as close to a wanted distance as fits the turn.
+
+    Equal steps along the line are unequal steps from node to node where it bends between them,
+    so the places are moved along the line until the straight steps agree.
+
+    Parameters
+    ----------
+    vectors : ndarray, shape (n, 3)
+        Unit vectors of a closed line, closer together than the spacing.
+    spacing : float
+        Wanted distance between nodes (m).
+
+    Returns
+    -------
+    ndarray, shape (m, 3)
+        At least four nodes.
+    """
+    along = np.concatenate([[0.0], np.cumsum(_closed_steps(vectors))])
+    closed = np.concatenate([vectors, vectors[:1]])
+    count = max(round(along[-1] / spacing), 4)
+    place = np.linspace(0.0, along[-1], count + 1)
+    for _ in range(SPACING_ROUNDS):
+        nodes = _on_line(closed, along, place[:-1])
+        straight = np.concatenate([[0.0], np.cumsum(_closed_steps(nodes))])
+        place = np.interp(np.linspace(0.0, straight[-1], count + 1), straight, place)
+    return _on_line(closed, along, place[:-1])
 
 
 def smoothed_positions(
@@ -188,7 +212,3 @@ def smoothed_positions(
     width = np.interp(lat, *width_by_latitude)
     return positions(space_evenly(smooth_ring(unit_vectors(lon, lat), width), spacing))
 
-
-def disc_perimeter(radius: float) -> float:
-    """Perimeter (m) of a small circle of a radius (m) on the mean earth."""
-    return float(2.0 * np.pi * EARTH_RADIUS * np.sin(min(radius / EARTH_RADIUS, np.pi / 2)))

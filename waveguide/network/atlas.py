@@ -107,7 +107,7 @@ def adjoining_depth(network: Network, depths: Bathymetry, radius: Array) -> Arra
         on the equator (m); NaN where none is known.
     """
     result = np.full(network.size, np.nan)
-    coast = np.nonzero(~network.equatorial)[0]
+    coast = np.nonzero(np.isfinite(network.offshore))[0]
     fractions = np.linspace(0.0, 1.0, 25)[1:]
     reach = np.maximum(2.0 * radius[coast], 60e3)
     lon, lat = destination(
@@ -153,7 +153,7 @@ def barotropic_depth(network: Network, depths: Bathymetry) -> Array:
     """
     result = np.full(network.size, np.nan)
     speed = 200.0  # √(gh) over 4000 m; sets the width of the weight only
-    coast = np.nonzero(~network.equatorial)[0]
+    coast = np.nonzero(np.isfinite(network.offshore))[0]
     distance = np.linspace(0.0, 2000e3, 81)[1:]
     radius = deformation_radius(speed, network.lat[coast])
     weight = np.exp(-2.0 * distance[None, :] / radius[:, None])
@@ -182,7 +182,7 @@ def barotropic_atlas(network: Network, depths: Bathymetry) -> Atlas:
     Atlas
         One mode, number 0.
     """
-    depth = barotropic_depth(network, depths)
+    depth = _through_straits(network, barotropic_depth(network, depths))
     speed = barotropic_speed(np.nan_to_num(depth))
     known = np.isfinite(depth) & (depth > 0.0)
     return Atlas(
@@ -235,7 +235,34 @@ def flat_bottom_atlas(
             value[:, nodes[usable]] = surface_values(*column, c).T
         report(min(start + 1000, known.size), known.size)
     share = _gap_shares(network, climatology, n2, depth, known)
-    return Atlas(np.array(BAROCLINIC_MODES), depth, speed, value, share)
+    return Atlas(
+        np.array(BAROCLINIC_MODES),
+        _through_straits(network, depth),
+        np.stack([_through_straits(network, row) for row in speed]),
+        np.stack([_through_straits(network, row) for row in value]),
+        share,
+    )
+
+
+def _through_straits(network: Network, values: Array) -> Array:
+    """Values with those of nodes within straits set to the mean of the strait's two ends.
+
+    The passage formula takes one speed for a strait, that of the coasts it joins.
+    """
+    result = values.copy()
+    inside = np.nonzero(network.in_strait)[0]
+    if not inside.size:
+        return result
+    strait = network.kind == StepKind.STRAIT
+    within = network.in_strait
+    total, count = (np.zeros(int(network.line.max()) + 1) for _ in range(2))
+    for node, other in ((network.tail, network.head), (network.head, network.tail)):
+        ends = strait & within[node] & ~within[other]
+        np.add.at(total, network.line[node[ends]], values[other[ends]])
+        np.add.at(count, network.line[node[ends]], 1.0)
+    line = network.line[inside]
+    result[inside] = total[line] / count[line]
+    return result
 
 
 def _at_gaps(network: Network, values: Array) -> Array:

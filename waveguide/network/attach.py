@@ -172,14 +172,14 @@ def _is_inshore(network: Network, node: Index, lon: Array, lat: Array) -> NDArra
     north = np.cross(here, east)
     seaward = np.sin(azimuth)[:, None] * east + np.cos(azimuth)[:, None] * north
     towards = unit_vectors(lon, lat) - here
-    return np.asarray(((seaward * towards).sum(axis=1) < 0.0) & ~network.equatorial[node])
+    return np.asarray(((seaward * towards).sum(axis=1) < 0.0) & np.isfinite(network.offshore[node]))
 
 
 def _closest_on_line(network: Network, node: Index, distance: Array) -> NDArray[np.bool_]:
     """Nodes no farther than both neighbours on their line, or within the box itself."""
     away = np.full(network.size, np.inf)
     away[node] = distance
-    along = (network.kind == StepKind.COAST) | (network.kind == StepKind.EQUATOR)
+    along = np.isin(network.kind, (StepKind.COAST, StepKind.EQUATOR, StepKind.STRAIT))
     tail, head = network.tail[along], network.head[along]
     best_neighbour = np.full(network.size, np.inf)
     np.minimum.at(best_neighbour, tail, away[head])

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +12,7 @@ from waveguide.coast.effective import CoastRule, EffectiveCoast, effective_coast
 from waveguide.coast.gaps import straits
 from waveguide.coast.raster import GlobalGrid, Mask
 from waveguide.constants import BETA_EQUATOR, EARTH_RADIUS, deformation_radius
+from waveguide.geodesy import geodesic_length
 from waveguide.network.crossings import Crossings, facing_crossings, strait_crossings
 from waveguide.network.graph import Network, StepKind
 from waveguide.network.lines import Lines, build_lines
@@ -104,7 +106,7 @@ def build_network(
     equatorial_radius = float(np.sqrt(np.interp(0.0, rule.lat, phase_speed) / BETA_EQUATOR))
     lines = build_lines(coast, rule.spacing)
     report("straits")
-    through = strait_crossings(lines, straits(coast, depth), 2.0 * rule.spacing)
+    through = strait_crossings(lines, straits(coast, depth), 2.0 * rule.spacing, rule.spacing)
     report("facing coasts and openings")
     speed = np.interp(lines.lat, rule.lat, phase_speed)
     radius = deformation_radius(speed, lines.lat)
@@ -115,33 +117,74 @@ def build_network(
 
 def _assemble(lines: Lines, *crossings: Crossings) -> Network:
     """Join steps along lines with the crossings between them."""
-    def joined(name: str) -> NDArray[np.generic]:
-        return np.concatenate([getattr(crossing, name) for crossing in crossings])
-
-    tail, head = joined("tail"), joined("head")
-    width, length = joined("width"), joined("length")
-    along_count, gap_count = lines.tail.size, tail.size
     equatorial = lines.equatorial[lines.tail] | lines.equatorial[lines.head]
     along_kind = np.where(equatorial, int(StepKind.EQUATOR), int(StepKind.COAST))
+    gap_tail = np.concatenate([crossing.tail for crossing in crossings])
+    ways = _ways(lines, crossings)
+    lon = np.concatenate([lines.lon, ways.lon])
+    lat = np.concatenate([lines.lat, ways.lat])
+    added = ways.lon.size
+    width = np.concatenate([crossing.width for crossing in crossings])
     return Network(
-        lon=lines.lon,
-        lat=lines.lat,
-        line=lines.line,
-        equatorial=lines.equatorial,
-        offshore=lines.offshore,
-        basin=lines.basin,
-        tail=np.concatenate([lines.tail, tail]).astype(np.int64),
-        head=np.concatenate([lines.head, head]).astype(np.int64),
-        kind=np.concatenate([along_kind, joined("kind")]).astype(np.int64),
-        length=np.concatenate([lines.length, np.maximum(width, length)]).astype(float),
-        gap=np.concatenate([np.full(along_count, -1), np.arange(gap_count)]).astype(np.int64),
+        lon=lon,
+        lat=lat,
+        line=np.concatenate([lines.line, ways.line]),
+        equatorial=np.concatenate([lines.equatorial, np.zeros(added, dtype=bool)]),
+        offshore=np.concatenate([lines.offshore, np.full(added, np.nan)]),
+        basin=np.concatenate([lines.basin, np.zeros(added, dtype=np.int64)]),
+        tail=np.concatenate([lines.tail, ways.tail]),
+        head=np.concatenate([lines.head, ways.head]),
+        kind=np.concatenate([along_kind, ways.kind]),
+        length=np.concatenate([
+            lines.length,
+            geodesic_length(lon[ways.tail], lat[ways.tail], lon[ways.head], lat[ways.head]),
+        ]),
+        gap=np.concatenate([np.full(lines.tail.size, -1), ways.gap]),
         passes=np.concatenate(
-            [_passed_gaps(lines.tail, along_kind, tail), np.full(gap_count, -1)]
-        ).astype(np.int64),
-        gap_width=np.asarray(width, float),
-        gap_length=np.asarray(length, float),
-        gap_sill=np.asarray(joined("sill"), float),
+            [_passed_gaps(lines.tail, along_kind, gap_tail), np.full(ways.tail.size, -1)]
+        ),
+        gap_width=width,
+        gap_length=np.concatenate([crossing.length for crossing in crossings]),
+        gap_sill=np.concatenate([crossing.sill for crossing in crossings]),
     )
+
+
+@dataclass(frozen=True)
+class _Ways:
+    """Nodes within straits, and the steps of all crossings; fields as in `Network`."""
+
+    lon: Array
+    lat: Array
+    line: Index
+    tail: Index
+    head: Index
+    kind: Index
+    gap: Index
+
+
+def _ways(lines: Lines, crossings: tuple[Crossings, ...]) -> _Ways:
+    """Lay every crossing out as steps; both directions of a strait share its nodes."""
+    lon, lat, line, tail, head, kind, gap = [], [], [], [], [], [], []
+    first, number, row = lines.lon.size, int(lines.line.max()) + 1, 0
+    for crossing in crossings:
+        half = crossing.tail.size // 2
+        for there in range(half):
+            way_lon, way_lat = crossing.way[there]
+            inner = np.arange(first, first + way_lon.size)
+            lon.append(way_lon)
+            lat.append(way_lat)
+            line.append(np.full(way_lon.size, number))
+            number += 1 if way_lon.size else 0
+            first += way_lon.size
+            for at, nodes in ((there, inner), (there + half, inner[::-1])):
+                chain = np.concatenate([[crossing.tail[at]], nodes, [crossing.head[at]]])
+                tail.append(chain[:-1])
+                head.append(chain[1:])
+                kind.append(np.full(nodes.size + 1, crossing.kind[at]))
+                gap.append(np.where(np.arange(nodes.size + 1) == 0, row + at, -1))
+        row += crossing.tail.size
+    whole = [np.concatenate(part).astype(np.int64) for part in (line, tail, head, kind, gap)]
+    return _Ways(np.concatenate(lon), np.concatenate(lat), *whole)
 
 
 def _passed_gaps(step_tail: Index, kind: Index, gap_tail: Index) -> Index:

@@ -35,6 +35,9 @@ class Crossings:
     tail, head, kind : ndarray of int, shape (k,)
     width, length, sill : ndarray, shape (k,)
         m; see :class:`waveguide.network.graph.Network`.
+    way : list of (lon, lat)
+        Places between the two nodes, degrees; without any for a facing coast or an opening.
+        The second half of the rows are the first half in the other direction.
     """
 
     tail: Index
@@ -43,6 +46,7 @@ class Crossings:
     width: Array
     length: Array
     sill: Array
+    way: list[tuple[Array, Array]]
 
 
 @dataclass(frozen=True)
@@ -77,7 +81,9 @@ def _coast_nodes(lines: Lines) -> _CoastNodes:
     return _CoastNodes(vectors, lines.lat[:n], line, along, ring_length)
 
 
-def strait_crossings(lines: Lines, found: list[Strait], reach: float) -> Crossings:
+def strait_crossings(
+    lines: Lines, found: list[Strait], reach: float, spacing: float
+) -> Crossings:
     """Straits that lead somewhere the coast does not soon lead by itself.
 
     Of the many pairs of mouths of one gap only the cheapest tree is kept (narrow and long is
@@ -89,6 +95,8 @@ def strait_crossings(lines: Lines, found: list[Strait], reach: float) -> Crossin
     found : list of Strait
     reach : float
         A mouth farther than this from any node borders no followed coast (m).
+    spacing : float
+        Distance between the places along the way through (m).
 
     Returns
     -------
@@ -97,23 +105,35 @@ def strait_crossings(lines: Lines, found: list[Strait], reach: float) -> Crossin
     """
     nodes = _coast_nodes(lines)
     tree = cKDTree(nodes.vectors)
-    ends = np.array([strait.mouths for strait in found], dtype=float).reshape(-1, 2, 2)
-    distance, node = tree.query(unit_vectors(ends[..., 0], ends[..., 1]))
-    size = np.array([(s.width, s.length, s.sill_depth) for s in found]).reshape(-1, 3)
+    ends = np.array([(s.lon[[0, -1]], s.lat[[0, -1]]) for s in found]).reshape(-1, 2, 2)
+    distance, node = tree.query(unit_vectors(ends[:, 0], ends[:, 1]))
+    size = np.array(
+        [(s.width, s.length, s.sill_depth, s.inertia_length) for s in found]
+    ).reshape(-1, 4)
     near = (arc(distance) <= reach).all(axis=1)
     far_apart = nodes.along_separation(node[:, 0], node[:, 1]) > DETOUR * size[:, 1]
     keep = near & far_apart & (node[:, 0] != node[:, 1])
-    node, size = node[keep], size[keep]
-    chosen = _cheapest_tree(node, size[:, 1] / size[:, 0], nodes.vectors.shape[0])
-    node, size = node[chosen], size[chosen]
+    rows, node, size = np.nonzero(keep)[0], node[keep], size[keep]
+    chosen = _cheapest_tree(node, size[:, 3] / size[:, 0], nodes.vectors.shape[0])
+    rows, node, size = rows[chosen], node[chosen], size[chosen]
+    there = [_thinned(found[row], spacing) for row in rows]
     return Crossings(
         tail=np.concatenate([node[:, 0], node[:, 1]]).astype(np.int64),
         head=np.concatenate([node[:, 1], node[:, 0]]).astype(np.int64),
         kind=np.full(2 * len(node), int(StepKind.STRAIT)),
         width=np.tile(size[:, 0], 2),
-        length=np.tile(size[:, 1], 2),
+        length=np.tile(size[:, 3], 2),
         sill=np.tile(size[:, 2], 2),
+        way=there + [(lon[::-1], lat[::-1]) for lon, lat in there],
     )
+
+
+def _thinned(strait: Strait, spacing: float) -> tuple[Array, Array]:
+    """Places along the middle of a strait about `spacing` (m) apart, its ends left out."""
+    count = max(round(strait.length / spacing), 2)
+    at = np.linspace(0, strait.lon.size - 1, count + 1).round().astype(int)[1:-1]
+    at = np.unique(at[(at > 0) & (at < strait.lon.size - 1)])
+    return strait.lon[at], strait.lat[at]
 
 
 def _cheapest_tree(pairs: Index, cost: Array, n: int) -> Index:
@@ -170,6 +190,7 @@ def facing_crossings(
         width=np.tile(distance[near], 2),
         length=np.where(kind == int(StepKind.FACING_COAST), extent, 0.0),
         sill=np.full(tail.size, np.inf),
+        way=[(np.zeros(0), np.zeros(0))] * tail.size,
     )
 
 

@@ -46,12 +46,13 @@ class Network:
     lon, lat : ndarray, shape (n,)
         Nodes, degrees.
     line : ndarray of int, shape (n,)
-        The coast ring or equatorial stretch a node belongs to; nodes of a line are consecutive
+        The coast ring, equatorial stretch or strait a node belongs to; nodes of a line are consecutive
         and in the order of travel in the northern hemisphere (eastward on the equator).
     equatorial : ndarray of bool, shape (n,)
         Whether the node lies on an equatorial stretch. Junctions belong to their coast.
     offshore : ndarray, shape (n,)
-        Azimuth of the seaward normal, degrees clockwise from north; NaN on the equator.
+        Azimuth of the seaward normal, degrees clockwise from north; NaN on the equator and
+        in straits.
     basin : ndarray of int, shape (n,)
         Connected body of water the node borders.
     tail, head : ndarray of int, shape (m,)
@@ -61,12 +62,13 @@ class Network:
     length : ndarray, shape (m,)
         WGS84 length (m).
     gap : ndarray of int, shape (m,)
-        For gap steps the row in the gap table; otherwise −1.
+        For the step that enters a gap the row in the gap table; otherwise −1.
     passes : ndarray of int, shape (m,)
         Row of the gap whose mouth a coast step passes, otherwise −1.
     gap_width, gap_length, gap_sill : ndarray, shape (k,)
-        Width across, length of the passage (of the facing stretch for a facing coast, 0 for an
-        opening), and sill depth (m; infinite for facing coasts and openings).
+        Width across; inertia length of a strait (`waveguide.coast.gaps.Strait`), length of the
+        stretch that faces a facing coast, 0 for an opening; sill depth (infinite for facing
+        coasts and openings). All in m.
     """
 
     lon: Array
@@ -89,6 +91,11 @@ class Network:
     def size(self) -> int:
         """Number of nodes."""
         return int(self.lon.size)
+
+    @property
+    def in_strait(self) -> NDArray[np.bool_]:
+        """Whether a node lies within a strait, on no coast and no equator; shape (n,)."""
+        return np.isnan(self.offshore) & ~self.equatorial
 
     @property
     def step_lat(self) -> Array:

@@ -79,11 +79,12 @@ def _simultaneous(network: Network, mode: ModeAtNodes, omega: float, route: Rout
 
 
 def _unresolved(network: Network, route: Route) -> str:
-    steps = route.steps[network.kind[route.steps] == StepKind.STRAIT]
-    narrow = network.gap_width[network.gap[steps]] < RESOLVED_STRAIT
+    gap = network.gap[route.steps]
+    gap = gap[(gap >= 0) & (network.kind[route.steps] == StepKind.STRAIT)]
+    narrow = network.gap_width[gap] < RESOLVED_STRAIT
     if not narrow.any():
         return ""
-    width = network.gap_width[network.gap[steps]][narrow].min() / 1e3
+    width = network.gap_width[gap][narrow].min() / 1e3
     return f"a strait {width:.0f} km wide on the route is not resolved by the 0.1° bathymetry"
 
 

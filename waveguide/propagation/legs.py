@@ -90,9 +90,8 @@ def _runs(network: Network, steps: Index) -> list[tuple[int, int]]:
     kind = network.kind[steps]
     inner = np.where(network.equatorial[network.head[steps]], network.head[steps],
                      network.tail[steps])
-    line = network.line[inner]
-    gap = np.isin(kind, [int(k) for k in GAP_KINDS])
-    new = (kind[1:] != kind[:-1]) | gap[1:] | ((line[1:] != line[:-1]) & (kind[1:] == kind[:-1]))
+    line = np.where(np.isin(kind, [int(k) for k in GAP_KINDS]), -1, network.line[inner])
+    new = (kind[1:] != kind[:-1]) | (network.gap[steps[1:]] >= 0) | (line[1:] != line[:-1])
     bounds = np.concatenate([[0], np.nonzero(new)[0] + 1, [steps.size]])
     return [(int(a), int(b)) for a, b in zip(bounds[:-1], bounds[1:], strict=True)]
 

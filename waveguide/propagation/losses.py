@@ -234,7 +234,7 @@ def _wall_shape(network: Network, speed: Array, matching: float, omega: float) -
     """
     shape = np.ones(network.size)
     distance = np.abs(coriolis(network.lat)) / np.sqrt(BETA_EQUATOR * speed)
-    near = np.nonzero(~network.equatorial & (distance < matching))[0]
+    near = np.nonzero(np.isfinite(network.offshore) & (distance < matching))[0]
     if not near.size:
         return shape
     typical = float(np.median(speed[near]))

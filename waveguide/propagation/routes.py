@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.network.attach import Ties
-from waveguide.network.graph import GAP_KINDS
+from waveguide.network.graph import Network
 from waveguide.network.search import Origin, Reach, Searcher
 from waveguide.propagation.losses import StepPhysics
 
@@ -22,7 +22,7 @@ PATIENCE_DAYS = (0.0, 1.0, 5.0, 25.0, 125.0, 1e6)
 The first finds the earliest route, the last the strongest.
 """
 
-FAINTEST_SHARE = 0.1
+FAINTEST_SHARE = 1.0 / 3.0
 """The headline route carries at least this share of the amplitude of the strongest one."""
 
 FAINTEST_ALTERNATIVE = 0.02
@@ -96,21 +96,19 @@ class RouteFinder:
         faintest = FAINTEST_ALTERNATIVE * strongest.amplitude
         others = [
             route
-            for route in sorted(found, key=lambda route: route.time)
+            for route in found
             if route is not headline
             and route.amplitude >= faintest
             and route.time <= LATEST_ALTERNATIVE * max(headline.time, SECONDS_PER_DAY)
         ]
-        others = sorted(
-            sorted(others, key=lambda route: -route.amplitude)[:MOST_ALTERNATIVES],
-            key=lambda route: route.time,
-        )
-        return [headline, *others]
+        by_amplitude = sorted(others, key=lambda route: -route.amplitude)
+        told = _told_apart(self._searcher.network, [headline, *by_amplitude])
+        return [headline, *sorted(told[1 : MOST_ALTERNATIVES + 1], key=lambda route: route.time)]
 
     def _detours(self, target: Ties, headline: Route) -> list[Route]:
         """Routes that do without one of the gaps the headline route crosses."""
         network = self._searcher.network
-        gaps = [int(s) for s in headline.steps if network.kind[s] in GAP_KINDS]
+        gaps = [int(s) for s in headline.steps if network.gap[s] >= 0]
         found = [self._best(target, PATIENCE_DAYS[2], step) for step in gaps[:4]]
         return [route for route in found if route is not None]
 
@@ -160,11 +158,14 @@ def _headline(routes: list[Route]) -> Route:
 
 def _distinct(routes: list[Route]) -> list[Route]:
     """Routes without repetitions, in order."""
-    seen: set[bytes] = set()
-    result = []
+    unique = {(route.steps.tobytes(), route.end): route for route in reversed(routes)}
+    return list(unique.values())[::-1]
+
+
+def _told_apart(network: Network, routes: list[Route]) -> list[Route]:
+    """Routes that differ in the gaps they enter or in how they end, the first of each kind."""
+    kinds: dict[tuple[bytes, int], Route] = {}
     for route in routes:
-        key = route.steps.tobytes() + bytes([route.end % 256])
-        if key not in seen:
-            seen.add(key)
-            result.append(route)
-    return result
+        gaps = route.steps[network.gap[route.steps] >= 0]
+        kinds.setdefault((network.tail[gaps].tobytes(), route.end), route)
+    return list(kinds.values())
