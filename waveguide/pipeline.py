@@ -13,7 +13,7 @@ from waveguide.network.packaged import family_of, packaged_network
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import used_files
 from waveguide.propagation.arrivals import REACHED, Arrival, mode_arrivals
-from waveguide.propagation.modes import packaged_mode, uniform_mode
+from waveguide.propagation.modes import atlas_mode, uniform_mode
 from waveguide.report.attributes import arrivals_attributes
 from waveguide.report.dataset import arrivals_dataset
 from waveguide.scenario import Scenario
@@ -82,12 +82,15 @@ def _mode(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAt
     ocean = scenario.ocean
     if ocean.phase_speed_m_s is not None:
         return network, uniform_mode(network, mode, ocean.phase_speed_m_s)
-    packaged = packaged_mode(atlas, mode)
+    packaged = atlas_mode(atlas, mode)
     if ocean.source == "packaged":
         return network, packaged
-    from waveguide.own_ocean import own_mode
+    from waveguide.network.own import own_atlas
 
-    own = own_mode(ocean, mode, say)
+    say(f"own depths and stratification at the nodes of mode {mode}")
+    own = atlas_mode(
+        own_atlas(family_of(mode), ocean.bathymetry, ocean.climatology, ocean.temperature), mode
+    )
     _require_coverage(scenario, network, packaged, own)
     return network, own
 

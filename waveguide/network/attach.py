@@ -122,6 +122,7 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
     keep = np.where(inshore, distance <= WIDEST_SHELF, radii <= FARTHEST_RADII)
     keep &= _closest_on_line(network, node, distance)
     keep &= _mostly_water(network, node, off_lon, off_lat, distance, depths)
+    keep &= _not_round_a_corner(network, node, distance)
     factor = np.exp(-offshore_loss)
     keep &= factor >= FAINTEST_TIE * np.max(factor[keep], initial=0.0)
     nearest = int(np.argmin(distance))
@@ -144,7 +145,29 @@ def _within_reach(
     reach = np.maximum(FARTHEST_RADII * radius, WIDEST_SHELF) * 1.01
     node = np.nonzero(carried & (rough <= reach))[0]
     distance = geodesic_length(network.lon[node], network.lat[node], lon[node], lat[node])
-    return node, lon[node], lat[node], distance
+    nearer = _distance_to_steps(network, node, unit_vectors(lon[node], lat[node]))
+    return node, lon[node], lat[node], np.minimum(distance, nearer)
+
+
+def _distance_to_steps(network: Network, node: Index, place: Array) -> Array:
+    """Distance (m) from a place to the line through each node and its neighbours.
+
+    Nodes lie some 20 km apart, which may be more than R: what counts is the distance to the line.
+    """
+    along = np.isin(network.kind, (StepKind.COAST, StepKind.EQUATOR, StepKind.STRAIT))
+    row = np.full(network.size, -1)
+    row[node] = np.arange(node.size)
+    here = unit_vectors(network.lon[node], network.lat[node])
+    result = np.full(node.size, np.inf)
+    for start, end in ((network.tail, network.head), (network.head, network.tail)):
+        at = row[start[along]]
+        at, other = at[at >= 0], end[along][at >= 0]
+        step = unit_vectors(network.lon[other], network.lat[other]) - here[at]
+        off = place[at] - here[at]
+        share = np.clip((off * step).sum(axis=1) / (step**2).sum(axis=1), 0.0, 1.0)
+        away = arc(np.linalg.norm(off - share[:, None] * step, axis=1))
+        np.minimum.at(result, at, away)
+    return result
 
 
 def _none(network: Network, speed: Array, box: Box) -> Ties:
@@ -185,6 +208,19 @@ def _closest_on_line(network: Network, node: Index, distance: Array) -> NDArray[
     np.minimum.at(best_neighbour, tail, away[head])
     np.minimum.at(best_neighbour, head, away[tail])
     return np.asarray((distance <= best_neighbour[node]) | (distance == 0.0))
+
+
+def _not_round_a_corner(network: Network, node: Index, distance: Array) -> NDArray[np.bool_]:
+    """Leave out other stretches of the nearest line that are more than twice as far.
+
+    A place off one side of a cape belongs to that side, not also to the other.
+    """
+    nearest = int(np.argmin(distance))
+    same = network.line[node] == network.line[node[nearest]]
+    beside = distance <= 2.0 * (distance[nearest] + _spacing(network))
+    # A strait is narrower than R: only what lies in it, nearer than to any coast, is tied to it.
+    within = network.in_strait[node] & ~network.in_strait[node[nearest]]
+    return np.asarray((~same | beside) & ~within)
 
 
 def _mostly_water(

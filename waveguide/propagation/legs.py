@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -93,7 +94,7 @@ def _runs(network: Network, steps: Index) -> list[tuple[int, int]]:
     line = np.where(np.isin(kind, [int(k) for k in GAP_KINDS]), -1, network.line[inner])
     new = (kind[1:] != kind[:-1]) | (network.gap[steps[1:]] >= 0) | (line[1:] != line[:-1])
     bounds = np.concatenate([[0], np.nonzero(new)[0] + 1, [steps.size]])
-    return [(int(a), int(b)) for a, b in zip(bounds[:-1], bounds[1:], strict=True)]
+    return [(int(a), int(b)) for a, b in pairwise(bounds)]
 
 
 def _leg(network: Network, physics: StepPhysics, steps: Index) -> Leg:

@@ -9,7 +9,7 @@ from waveguide.network.graph import Network
 from waveguide.propagation.losses import ModeAtNodes
 
 
-def packaged_mode(atlas: Atlas, mode: int) -> ModeAtNodes:
+def atlas_mode(atlas: Atlas, mode: int) -> ModeAtNodes:
     """A mode of an atlas.
 
     Parameters

@@ -43,7 +43,7 @@ def arrivals_dataset(
     values["mode"] = modes
     values["target_longitude"] = [target.position[0] for target in scenario.targets]
     values["target_latitude"] = [target.position[1] for target in scenario.targets]
-    rows = {
+    rows: dict[str, list[Any]] = {
         name: [] for name, variable in ARRIVALS.items() if variable.dims == ("target", "mode")
     }
     for target in range(len(scenario.targets)):

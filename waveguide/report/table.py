@@ -65,7 +65,7 @@ def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
     """The table itself: a heading of two lines and one line for each target and mode."""
     show: list[tuple[str, str, Callable[[int, int], str]]] = [
         ("Mode", "", lambda t, m: str(int(dataset["mode"].values[m]))),
-        ("Front", "(days)", _column(dataset, "front_time_days", ".1f")),
+        ("Front", "(days)", _column(dataset, "front_time_days", ".2f")),
         ("Front", "(UTC)", _date(dataset)),
         ("Speed", "(m/s)", _column(dataset, "mean_speed_m_s", ".2f")),
         ("Path", "(km)", _column(dataset, "path_length_km", ".0f")),
@@ -120,7 +120,7 @@ def _route(dataset: xr.Dataset, route: int) -> str:
     time = float(dataset["route_front_time_days"].values[route])
     ratio = float(dataset["route_amplitude_ratio"].values[route])
     head = f"{kind} via {via}" if via else kind
-    return f"{head}: {_legs(dataset, route)} ({time:.1f} days, amplitude ratio {ratio:.3g})"
+    return f"{head}: {_legs(dataset, route)} ({time:.2f} days, amplitude ratio {ratio:.3g})"
 
 
 def _legs(dataset: xr.Dataset, route: int) -> str:
