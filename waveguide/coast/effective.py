@@ -69,7 +69,7 @@ class EffectiveCoast:
     water : ndarray of bool, shape (ny, nx)
         What the lines enclose as ocean: gaps closed, small islands drowned, small basins filled.
     basin : ndarray of int, shape (ny, nx)
-        Connected body of `water` a cell belongs to, 0 on land.
+        Connected body of `water` a cell belongs to (corners connect), 0 on land.
     """
 
     rings: tuple[tuple[Array, Array], ...]
@@ -90,14 +90,21 @@ def _extreme_by_label(
 
 
 def _without_small(
-    grid: GlobalGrid, mask: Mask, solid: Mask, size: Array
+    grid: GlobalGrid, mask: Mask, solid: Mask, size: Array, diagonal: bool
 ) -> Mask:
     """Drop components of a mask whose solid area is below the square of a size by row."""
-    labels, count = label_periodic(mask)
+    labels, count = label_periodic(mask, diagonal)
     area = component_areas(grid, np.where(solid, labels, 0), count)
     keep = area >= _extreme_by_label(grid, labels, count, size) ** 2
     keep[0] = False
     return np.asarray(keep[labels])
+
+
+def _with_whole_poles(ocean: Mask) -> Mask:
+    """The mask with either pole row, whose cells meet at a point, ocean only if all of it is."""
+    whole = ocean.copy()
+    whole[[0, -1]] = ocean[[0, -1]].all(axis=1, keepdims=True)
+    return whole
 
 
 def effective_coast(
@@ -123,14 +130,15 @@ def effective_coast(
     """
 
     def by_row(values: Array) -> Array:
-        return np.interp(grid.lat, rule.lat, values)
+        return np.asarray(np.interp(grid.lat, rule.lat, values))
 
-    passable = ~land & (depth > by_row(rule.sill_depth)[:, None])
-    passable = _without_small(grid, passable, passable, by_row(rule.basin_size))
+    deep = ~land & (depth > by_row(rule.sill_depth)[:, None])
+    passable = _without_small(grid, deep, deep, by_row(rule.basin_size), diagonal=True)
     reached = closed_ocean(grid, passable, by_row(rule.scale) / 2.0)
-    walls = _without_small(grid, ~reached, ~passable, by_row(rule.island_size))
-    water = _without_small(grid, ~walls, ~walls, by_row(rule.basin_size))
-    basin, _ = label_periodic(water)
+    walls = _without_small(grid, ~reached, ~passable, by_row(rule.island_size), diagonal=False)
+    open_water = _without_small(grid, ~walls, ~walls, by_row(rule.basin_size), diagonal=True)
+    water = _with_whole_poles(open_water)
+    basin, _ = label_periodic(water, diagonal=True)
     smoothing = (rule.lat, rule.smoothing)
     rings = tuple(
         smoothed_positions(grid, corners, smoothing, rule.spacing)
@@ -140,14 +148,34 @@ def effective_coast(
 
 
 def is_water(coast: EffectiveCoast, lon: Array, lat: Array) -> Mask:
-    """Whether positions (degrees) fall in cells of the effective ocean."""
+    """Whether positions fall in cells of the effective ocean.
+
+    Parameters
+    ----------
+    coast : EffectiveCoast
+    lon, lat : ndarray of one shape, degrees
+
+    Returns
+    -------
+    ndarray of bool, same shape
+    """
     return np.asarray(coast.water[cell_indices(coast.grid, lon, lat)])
 
 
 def cell_indices(
     grid: GlobalGrid, lon: Array, lat: Array
 ) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
-    """Row and column of the cells that hold positions (degrees)."""
+    """Row and column of the cells that hold positions.
+
+    Parameters
+    ----------
+    grid : GlobalGrid
+    lon, lat : ndarray of one shape, degrees
+
+    Returns
+    -------
+    row, column : ndarray of int, same shape
+    """
     dx, dy = grid.lon[1] - grid.lon[0], grid.lat[1] - grid.lat[0]
     column = np.rint((np.asarray(lon) - grid.lon[0]) / dx).astype(np.int64) % grid.lon.size
     row = np.clip(np.rint((np.asarray(lat) - grid.lat[0]) / dy), 0, grid.lat.size - 1)
@@ -172,4 +200,5 @@ def offshore_azimuths(lon: Array, lat: Array) -> Array:
     left = np.cross(here, along)
     east = np.stack([-np.sin(np.radians(lon)), np.cos(np.radians(lon)), np.zeros_like(lon)], 1)
     north = np.cross(here, east)
-    return np.degrees(np.arctan2((left * east).sum(1), (left * north).sum(1))) % 360.0
+    azimuth = np.arctan2((left * east).sum(axis=1), (left * north).sum(axis=1))
+    return np.asarray(np.degrees(azimuth) % 360.0)

@@ -8,6 +8,7 @@ followed; one with two or more mouths is a strait between them.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -52,13 +53,18 @@ class Strait:
 
 @dataclass(frozen=True)
 class _Patch:
-    """Cells of one gap as a graph: unit vectors, clearance to walls (m), depth (m), neighbours."""
+    """One gap and the effective ocean before its mouths, as a graph of cells.
+
+    `links` are pairs of neighbours of which at least one is in the gap, `shores` pairs of
+    neighbours in the ocean; clearance to walls and depth in m.
+    """
 
     vectors: Array
     clearance: Array
     depth: Array
+    ocean: NDArray[np.bool_]
     links: tuple[Index, Index]
-    mouth: NDArray[np.bool_]
+    shores: tuple[Index, Index]
 
 
 _NEIGHBOURS = ((0, 1), (1, 0), (1, 1), (1, -1))
@@ -80,7 +86,7 @@ def straits(coast: EffectiveCoast, depth: Array) -> list[Strait]:
     """
     grid = coast.grid
     gap = coast.passable & ~coast.water
-    labels, count = label_periodic(gap)
+    labels, count = label_periodic(gap, diagonal=True)
     walls = cKDTree(grid.vectors(~coast.passable & _near(gap)))
     found: list[Strait] = []
     for patch in _patches(coast, depth, labels, count, walls):
@@ -100,26 +106,52 @@ def _near(mask: NDArray[np.bool_]) -> NDArray[np.bool_]:
 def _patches(
     coast: EffectiveCoast, depth: Array, labels: Index, count: int, walls: cKDTree
 ) -> list[_Patch]:
-    """The gaps that touch the effective ocean, each as a graph of its cells."""
+    """The gaps that open on the effective ocean, each as a graph of its cells."""
     order = np.argsort(labels, axis=None, kind="stable")
     first = np.searchsorted(labels.ravel()[order], np.arange(1, count + 2))
-    beside_water = _near(coast.water).ravel()
     patches = []
-    for cells in (order[a:b] for a, b in zip(first[:-1], first[1:], strict=True)):
-        mouth = beside_water[cells]
-        if mouth.sum() < 2:
-            continue
-        patches.append(_patch(coast.grid, depth, cells, mouth, walls))
+    for cells in (order[a:b] for a, b in pairwise(first)):
+        before = _before(coast, cells)
+        if before.size > 1:
+            patches.append(_patch(coast.grid, depth, cells, before, walls))
     return patches
 
 
+def _before(coast: EffectiveCoast, cells: Index) -> Index:
+    """Ocean cells beside the cells of a gap (flat indices, ascending)."""
+    ny, nx = coast.grid.shape
+    rows, columns = (cells // nx)[:, None], (cells % nx)[:, None]
+    down, right = np.array([(y, x) for y in (-1, 0, 1) for x in (-1, 0, 1)]).T
+    beside = np.unique(np.clip(rows + down, 0, ny - 1) * nx + (columns + right) % nx)
+    return np.asarray(beside[coast.water.ravel()[beside]])
+
+
 def _patch(
-    grid: GlobalGrid, depth: Array, cells: Index, mouth: NDArray[np.bool_], walls: cKDTree
+    grid: GlobalGrid, depth: Array, gap: Index, before: Index, walls: cKDTree
 ) -> _Patch:
-    """Graph of the cells of one gap (flat indices, ascending)."""
+    """Graph of a gap and the ocean before it (flat indices, ascending)."""
+    cells = np.union1d(gap, before)
+    rows, columns = cells // grid.lon.size, cells % grid.lon.size
+    ocean = np.isin(cells, before)
+    vectors = unit_vectors(grid.lon[columns], grid.lat[rows])
+    tail, head = _neighbours(grid, cells)
+    shore = ocean[tail] & ocean[head]
+    # Walls are cell centres, so the free water starts half a cell nearer.
+    clearance = arc(walls.query(vectors)[0]) - 0.5 * grid.spacing
+    return _Patch(
+        vectors=vectors,
+        clearance=np.maximum(clearance, 0.25 * grid.spacing),
+        depth=depth.ravel()[cells].astype(float),
+        ocean=ocean,
+        links=(tail[~shore], head[~shore]),
+        shores=(tail[shore], head[shore]),
+    )
+
+
+def _neighbours(grid: GlobalGrid, cells: Index) -> tuple[Index, Index]:
+    """Pairs of neighbours (eight to a cell, longitudes wrap) among flat indices, ascending."""
     ny, nx = grid.shape
     rows, columns = cells // nx, cells % nx
-    vectors = unit_vectors(grid.lon[columns], grid.lat[rows])
     tails, heads = [], []
     for down, right in _NEIGHBOURS:
         target = (rows + down) * nx + (columns + right) % nx
@@ -127,21 +159,19 @@ def _patch(
         hit = (cells[place] == target) & (rows + down < ny)
         tails.append(np.nonzero(hit)[0])
         heads.append(place[hit])
-    # Walls are cell centres, so the free water starts half a cell nearer.
-    clearance = arc(walls.query(vectors)[0]) - 0.5 * grid.spacing
-    links = (np.concatenate(tails), np.concatenate(heads))
-    return _Patch(vectors, np.maximum(clearance, 0.25 * grid.spacing),
-                  depth.ravel()[cells].astype(float), links, mouth)
+    return np.concatenate(tails), np.concatenate(heads)
 
 
 def _mouths(patch: _Patch) -> list[Index]:
-    """Groups of mouth cells that touch one another."""
-    tail, head = patch.links
-    both = patch.mouth[tail] & patch.mouth[head]
-    n = patch.mouth.size
-    graph = coo_matrix((np.ones(both.sum()), (tail[both], head[both])), shape=(n, n))
+    """Groups of ocean cells before a gap that touch one another: each is before one mouth.
+
+    Grouped by the gap's own cells, both mouths of a gap one cell long would be one.
+    """
+    tail, head = patch.shores
+    n = patch.ocean.size
+    graph = coo_matrix((np.ones(tail.size), (tail, head)), shape=(n, n))
     _, group = connected_components(graph, directed=False)
-    return [np.nonzero(patch.mouth & (group == g))[0] for g in np.unique(group[patch.mouth])]
+    return [np.nonzero(patch.ocean & (group == g))[0] for g in np.unique(group[patch.ocean])]
 
 
 def _passages(patch: _Patch) -> list[Strait]:
@@ -154,15 +184,17 @@ def _passages(patch: _Patch) -> list[Strait]:
     # Narrow water is dear, so the path keeps to the middle and prefers the wider of two ways.
     cost = step * (np.max(patch.clearance) / np.minimum(patch.clearance[tail],
                                                         patch.clearance[head])) ** 2
-    n = patch.mouth.size
+    n = patch.ocean.size
     graph = csr_matrix((cost, (tail, head)), shape=(n, n))
     passages = []
     for a, start in enumerate(mouths):
         reach, before, _ = dijkstra(graph, directed=False, indices=start, min_only=True,
                                     return_predecessors=True)
         for end in mouths[a + 1:]:
-            last = int(end[np.argmin(reach[end])])
-            passages.append(_passage(patch, _path(before, last), mouths[a], end))
+            path = _path(before, int(end[np.argmin(reach[end])]))
+            # What leads past a third mouth is two passages.
+            if not patch.ocean[path[1:-1]].any():
+                passages.append(_passage(patch, path))
     return passages
 
 
@@ -174,18 +206,19 @@ def _path(before: NDArray[np.int32], last: int) -> Index:
     return np.array(path[::-1])
 
 
-def _passage(patch: _Patch, path: Index, start: Index, end: Index) -> Strait:
-    """Width, length and sill of the passage along a path of cells."""
-    along = patch.vectors[path]
+def _passage(patch: _Patch, path: Index) -> Strait:
+    """Width, length and sill of the passage along a path of cells, whose ends are ocean."""
+    along, inside = patch.vectors[path], path[1:-1]
     lon, lat = positions(along)
     step = arc(np.linalg.norm(np.diff(along, axis=0), axis=1))
     width = 2.0 * patch.clearance[path]
-    inertia = width.min() * (step * 0.5 * (1.0 / width[1:] + 1.0 / width[:-1])).sum()
+    narrowest = float(width[1:-1].min())
+    inertia = narrowest * (step * 0.5 * (1.0 / width[1:] + 1.0 / width[:-1])).sum()
     return Strait(
         lon=lon,
         lat=lat,
         length=float(step.sum()),
-        width=float(width.min()),
+        width=narrowest,
         inertia_length=float(inertia),
-        sill_depth=float(patch.depth[path].min()),
+        sill_depth=float(patch.depth[inside].min()),
     )

@@ -18,9 +18,6 @@ from waveguide.geodesy import arc, positions, unit_vectors
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
-SPACING_ROUNDS = 6
-"""Rounds in which nodes are moved to equal distances; each leaves a tenth of the inequality."""
-
 
 def boundary_pieces(ocean: Mask) -> tuple[Index, Index]:
     """Directed sides between ocean and land, land on the right.
@@ -28,14 +25,15 @@ def boundary_pieces(ocean: Mask) -> tuple[Index, Index]:
     Parameters
     ----------
     ocean : ndarray of bool, shape (ny, nx)
-        Rows run northward, columns eastward and wrap.
+        Rows run northward, columns eastward and wrap. The first and the last row, at the poles,
+        must be all ocean or all land, or the sides there would not close.
 
     Returns
     -------
     start, end : ndarray of int, shape (n,)
         Corners as row × nx + column; corner (j, i) is the south-west corner of cell (j, i).
     """
-    ny, nx = ocean.shape
+    nx = ocean.shape[1]
     west = np.roll(ocean, 1, axis=1)
     j, i = np.nonzero(ocean != west)  # the side west of cell (j, i)
     land_east = ~ocean[j, i]
@@ -112,7 +110,18 @@ def _cycles(following: Index, start: Index) -> list[Index]:
 
 
 def corner_positions(grid: GlobalGrid, corners: Index) -> tuple[Array, Array]:
-    """Longitude and latitude (degrees) of grid corners."""
+    """Positions of grid corners.
+
+    Parameters
+    ----------
+    grid : GlobalGrid
+    corners : ndarray of int, shape (n,)
+        As from `boundary_pieces`.
+
+    Returns
+    -------
+    lon, lat : ndarray, shape (n,), degrees
+    """
     nx = grid.lon.size
     dx, dy = grid.lon[1] - grid.lon[0], grid.lat[1] - grid.lat[0]
     lon = grid.lon[0] + (corners % nx - 0.5) * dx
@@ -120,13 +129,17 @@ def corner_positions(grid: GlobalGrid, corners: Index) -> tuple[Array, Array]:
     return lon, lat
 
 
-def ring_length(vectors: Array) -> float:
-    """Length (m) of a closed line of unit vectors, shape (n, 3)."""
-    return float(_closed_steps(vectors).sum())
+def _closed_steps(vectors: Array) -> Array:
+    """Distance (m) from each point of a closed line to the next, shape (n,)."""
+    return arc(np.linalg.norm(vectors - np.roll(vectors, -1, axis=0), axis=1))
 
 
-def _on_line(closed: Array, parameter: Array, wanted: Array) -> Array:
-    """Unit vectors at values of a parameter that grows along a line, shape (wanted.size, 3)."""
+def _on_line(vectors: Array, parameter: Array, wanted: Array) -> Array:
+    """Places on a closed line at values of a parameter that grows along it.
+
+    The parameter has one more entry than `vectors`: its last is that of the first point again.
+    """
+    closed = np.concatenate([vectors, vectors[:1]])
     points = np.stack([np.interp(wanted, parameter, closed[:, k]) for k in range(3)], axis=1)
     return np.asarray(points / np.linalg.norm(points, axis=1, keepdims=True))
 
@@ -149,28 +162,21 @@ def smooth_ring(vectors: Array, width: Array) -> Array:
     mean_width = 0.5 * (width + np.roll(width, -1))
     warped = np.concatenate([[0.0], np.cumsum(_closed_steps(vectors) / mean_width)])
     count = max(int(np.ceil(4.0 * warped[-1])), 8)
-    closed = np.concatenate([vectors, vectors[:1]])
-    even = _on_line(closed, warped, np.arange(count) * (warped[-1] / count))
+    even = _on_line(vectors, warped, np.arange(count) * (warped[-1] / count))
     sigma = count / warped[-1]
     averaged = gaussian_filter1d(even, sigma, axis=0, mode="wrap")
     return np.asarray(averaged / np.linalg.norm(averaged, axis=1, keepdims=True))
 
 
-def _closed_steps(vectors: Array) -> Array:
-    """Distance (m) from each point of a closed line to the next, shape (n,)."""
-    return arc(np.linalg.norm(vectors - np.roll(vectors, -1, axis=0), axis=1))
-
-
 def space_evenly(vectors: Array, spacing: float) -> Array:
-    """Nodes equally far from one another, as close to a wanted distance as fits the turn.
+    """Nodes at equal distances along a closed line, as close to a wanted one as fits the turn.
 
-    Equal steps along the line are unequal steps from node to node where it bends between them,
-    so the places are moved along the line until the straight steps agree.
+    Where the line bends between two nodes the straight way from one to the next is shorter.
 
     Parameters
     ----------
     vectors : ndarray, shape (n, 3)
-        Unit vectors of a closed line, closer together than the spacing.
+        Unit vectors, closer together than the spacing.
     spacing : float
         Wanted distance between nodes (m).
 
@@ -180,14 +186,8 @@ def space_evenly(vectors: Array, spacing: float) -> Array:
         At least four nodes.
     """
     along = np.concatenate([[0.0], np.cumsum(_closed_steps(vectors))])
-    closed = np.concatenate([vectors, vectors[:1]])
     count = max(round(along[-1] / spacing), 4)
-    place = np.linspace(0.0, along[-1], count + 1)
-    for _ in range(SPACING_ROUNDS):
-        nodes = _on_line(closed, along, place[:-1])
-        straight = np.concatenate([[0.0], np.cumsum(_closed_steps(nodes))])
-        place = np.interp(np.linspace(0.0, straight[-1], count + 1), straight, place)
-    return _on_line(closed, along, place[:-1])
+    return _on_line(vectors, along, np.arange(count) * (along[-1] / count))
 
 
 def smoothed_positions(
