@@ -1,0 +1,198 @@
+"""The coast within reach of the equator, where the wave is not yet trapped by the coast alone.
+
+Within the matching distance of a junction (see :mod:`waveguide.propagation.equator`) sea level
+follows the wall solution W(ŷ, ω): its modulus shapes the coast between the equator and the
+matching latitude, and its phase is the lag along it. A western wall is the eastern one read
+backwards (reciprocity: the product of both transfer functions is the ratio of f), so between two
+latitudes the lag is the same, arg W(ŷ_far) − arg W(ŷ_near), and the modulus is ŷ/|W|.
+
+The wall of that solution is meridional. A real coast between two latitudes is longer; what is in
+excess of its extent in latitude adds the lag of a wave that runs along it with speed c.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from waveguide.constants import BETA_EQUATOR, coriolis
+from waveguide.network.graph import Network
+from waveguide.propagation.equator import eastern_wall, scaled_frequency
+from waveguide.propagation.losses import HIGHEST_SCALED_FREQUENCY, ModeAtNodes, poleward_nodes
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+_CELLS = 40
+_NEAREST = 0.05  # ŷ that stands for the equator on a western wall, where sea level → 0
+
+
+@dataclass(frozen=True)
+class WallTable:
+    """The eastern wall solution between the equator and the matching latitude.
+
+    Attributes
+    ----------
+    matching : float
+        Matching distance ŷ.
+    amplitude : ndarray, shape (g, nω)
+        |W(ŷ)|/|W(matching)| at g equidistant ŷ from 0 to `matching`.
+    lag : ndarray, shape (g, nω)
+        arg W(ŷ) − arg W(0) (rad).
+    """
+
+    matching: float
+    amplitude: Array
+    lag: Array
+
+
+def wall_table(omega: Array, speed: float, matching: float) -> WallTable:
+    """Tabulate the eastern wall solution.
+
+    Parameters
+    ----------
+    omega : ndarray, shape (nω,)
+        Angular frequency (rad/s).
+    speed : float
+        Phase speed (m/s) typical of the walls.
+    matching : float
+        Matching distance in L_e.
+
+    Returns
+    -------
+    WallTable
+        Where ω̂ exceeds the range of the wall solution its modulus is that of the highest ω̂ and
+        its lag grows with ω.
+    """
+    frequency = scaled_frequency(omega, speed)
+    inside = np.minimum(frequency, HIGHEST_SCALED_FREQUENCY)
+    wall = eastern_wall(inside, np.linspace(0.0, matching, _CELLS + 1)).T
+    lag = np.unwrap(np.angle(wall), axis=0)
+    beyond = np.maximum(frequency / HIGHEST_SCALED_FREQUENCY, 1.0)
+    return WallTable(matching, np.abs(wall / wall[-1]), (lag - lag[0]) * beyond)
+
+
+def scaled_distance(network: Network, mode: ModeAtNodes, nodes: Index) -> Array:
+    """Distance of nodes from the equator, ŷ = |f|/√(βc).
+
+    Parameters
+    ----------
+    network : Network
+    mode : ModeAtNodes
+    nodes : ndarray of int, shape (k,)
+
+    Returns
+    -------
+    ndarray, shape (k,)
+    """
+    c = _known_speed(mode)[nodes]
+    return np.asarray(np.abs(coriolis(network.lat[nodes])) / np.sqrt(BETA_EQUATOR * c))
+
+
+def network_wall_table(network: Network, mode: ModeAtNodes, omega: Array) -> WallTable:
+    """Wall table for the median speed of the coast nodes within the matching distance.
+
+    Parameters
+    ----------
+    network : Network
+    mode : ModeAtNodes
+    omega : ndarray, shape (nω,)
+        Angular frequency (rad/s).
+
+    Returns
+    -------
+    WallTable
+    """
+    nodes = np.arange(network.size)
+    near = np.isfinite(network.offshore)
+    near &= scaled_distance(network, mode, nodes) < mode.matching
+    speed = float(np.median(_known_speed(mode)[near])) if near.any() else 1.0
+    return wall_table(omega, speed, mode.matching)
+
+
+def potential(network: Network, mode: ModeAtNodes, nodes: Index, table: WallTable) -> Array:
+    """Sea level of a wave of unit energy flux at nodes, P (see `waveguide.propagation.losses`).
+
+    Parameters
+    ----------
+    network : Network
+    mode : ModeAtNodes
+    nodes : ndarray of int, shape (k,)
+    table : WallTable
+
+    Returns
+    -------
+    ndarray, shape (k, nω)
+        P (m^-1/2 s^-1/2).
+    """
+    c = _known_speed(mode)[nodes]
+    f = floored_coriolis(network.lat[nodes], c, mode.matching)
+    flux = np.where(
+        network.equatorial[nodes], (BETA_EQUATOR * c / np.pi) ** 0.25, np.sqrt(2.0 * f)
+    )
+    return (mode.coastal_value[nodes] * flux)[:, None] * _shape(network, mode, nodes, table)
+
+
+def floored_coriolis(lat: Array, speed: Array, matching: float) -> Array:
+    """|f|, but no less than at the matching distance from the equator.
+
+    Parameters
+    ----------
+    lat : ndarray
+        Degrees.
+    speed : ndarray
+        Phase speed (m/s), broadcasts.
+    matching : float
+        Matching distance in L_e.
+
+    Returns
+    -------
+    ndarray
+        |f| (1/s).
+    """
+    return np.maximum(np.abs(coriolis(lat)), matching * np.sqrt(BETA_EQUATOR * speed))
+
+
+def wall_lag(table: WallTable, first: Array, last: Array) -> Array:
+    """Lag of the wall solution between two distances from the equator.
+
+    Parameters
+    ----------
+    table : WallTable
+    first, last : ndarray, shape (k,)
+        ŷ, from 0 to the matching distance, in either order.
+
+    Returns
+    -------
+    ndarray, shape (k, nω)
+        Radians.
+    """
+    near, far = np.minimum(first, last), np.maximum(first, last)
+    return _at(table.lag, far / table.matching) - _at(table.lag, near / table.matching)
+
+
+def _known_speed(mode: ModeAtNodes) -> Array:
+    """Phase speed, 1 m/s where the mode does not exist, so that arrays stay finite."""
+    return np.where(np.isfinite(mode.speed), mode.speed, 1.0)
+
+
+def _shape(network: Network, mode: ModeAtNodes, nodes: Index, table: WallTable) -> Array:
+    """Sea level along the wall of a junction over that at the matching distance."""
+    distance = scaled_distance(network, mode, nodes)
+    shape = np.ones((nodes.size, table.amplitude.shape[1]))
+    near = np.nonzero(np.isfinite(network.offshore[nodes]) & (distance < table.matching))[0]
+    eastern = _at(table.amplitude, distance[near] / table.matching)
+    western = (np.maximum(distance[near], _NEAREST) / table.matching)[:, None] / eastern
+    eastward = poleward_nodes(network)[nodes[near]]
+    shape[near] = np.where(eastward[:, None], eastern, western)
+    return shape
+
+
+def _at(values: Array, position: Array) -> Array:
+    """Linear interpolation between the rows of a table; position 0 to 1."""
+    exact = np.clip(position, 0.0, 1.0) * _CELLS
+    row = np.minimum(exact.astype(np.int64), _CELLS - 1)
+    weight = (exact - row)[:, None]
+    return np.asarray((1.0 - weight) * values[row] + weight * values[row + 1])

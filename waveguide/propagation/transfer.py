@@ -1,0 +1,271 @@
+"""The transfer function of a whole route, and what each of its legs takes.
+
+Convention exp(−iωt): η(target) = G(ω) η(source), and arg G > 0 is a delay. Along a route
+
+    G = (source factor) (target factor) · P_end/P_start · exp Σ(−n + iφ)
+
+with the lag φ and the nepers n of every step (:mod:`waveguide.propagation.step_response`) and the
+potentials P that turn energy flux into sea level. |G| at one frequency is the amplitude that
+`waveguide.propagation.routes` gives a route, and arg G → ω × front time where ω is high.
+
+Routes share most of their steps, so every step is computed once and legs are sums over steps.
+
+Energy is that of the mode's flux, a², with 1 at the start of the first leg. A leg that takes N
+nepers leaves exp(−2N) of what it is given; what it takes is dealt out to the fates in proportion
+to their nepers, as if they acted side by side along the leg. So the shares sum to one on every
+leg and on the whole route. The factors of source and target, which only say how far off the guide
+they are, are not part of it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.sparse import csr_array
+
+from waveguide.network.graph import Network
+from waveguide.propagation.arrivals import Arrival
+from waveguide.propagation.losses import ModeAtNodes
+from waveguide.propagation.near_equator import network_wall_table, potential
+from waveguide.propagation.step_response import (
+    FATES,
+    STILL,
+    Conditions,
+    step_response,
+    step_speeds,
+)
+
+Array = NDArray[np.float64]
+ComplexArray = NDArray[np.complex128]
+Index = NDArray[np.int64]
+
+_FREQUENCIES_AT_ONCE = 64  # keeps the arrays of one block in cache
+
+
+@dataclass(frozen=True)
+class Path:
+    """A route as a transfer function needs it.
+
+    Attributes
+    ----------
+    steps : ndarray of int, shape (k,)
+        In order of travel.
+    leg_ends : ndarray of int, shape (legs,)
+        Number of steps up to the end of each leg along the guide; the last is k.
+    start : int
+        Node where the path begins.
+    end : int
+        Position in the target's ties of the node where it ends.
+    source_factor, target_factor : float
+        Shares of amplitude at the attachments.
+    """
+
+    steps: Index
+    leg_ends: Index
+    start: int
+    end: int
+    source_factor: float
+    target_factor: float
+
+
+@dataclass(frozen=True)
+class RouteTransfer:
+    """Transfer function of a route.
+
+    Attributes
+    ----------
+    omega : ndarray, shape (nω,)
+        Angular frequency (rad/s).
+    response : ndarray of complex, shape (nω,)
+        G: sea level at the target over sea level at the source.
+    leg_response : ndarray of complex, shape (legs, nω)
+        The same at the end of every leg along the guide, without the target's factor.
+    leg_nepers : ndarray, shape (5, legs, nω)
+        Nepers that every leg takes, by fate in the order of `FATES`.
+    front_time : float
+        ∫ ds/(c + U), the time of the earliest energy (s).
+    """
+
+    omega: Array
+    response: ComplexArray
+    leg_response: ComplexArray
+    leg_nepers: Array
+    front_time: float
+
+
+class LegBudget(NamedTuple):
+    """Where the energy of the source goes, as shares of it.
+
+    Attributes
+    ----------
+    arrives : ndarray, shape (legs,)
+        At the end of every leg.
+    taken : ndarray, shape (legs, 5)
+        On every leg, by fate in the order of `FATES`. The last of `arrives` and all of `taken`
+        sum to one.
+    """
+
+    arrives: Array
+    taken: Array
+
+
+def paths_of_arrival(arrival: Arrival) -> list[Path]:
+    """The routes of an arrival, in its order.
+
+    Parameters
+    ----------
+    arrival : Arrival
+
+    Returns
+    -------
+    list of Path
+        Legs are those of the arrival without the attachments.
+    """
+    paths = []
+    for route, legs in zip(arrival.routes, arrival.legs, strict=True):
+        lengths = [leg.lon.size - 1 for leg in legs if leg.kind != "attachment"]
+        paths.append(Path(
+            route.steps,
+            np.cumsum(lengths, dtype=np.int64),
+            int(arrival.source.node[route.start]),
+            route.end,
+            float(arrival.source.factor[route.start]),
+            float(arrival.target.factor[route.end]),
+        ))
+    return paths
+
+
+def independent_paths(paths: Sequence[Path]) -> list[int]:
+    """Which paths to one target may be added up.
+
+    A signal at a target is the sum over the different ways through the network, and the factors
+    at straits, facing coasts and junctions make the sum right: what crosses a strait and what
+    jumps its mouth are parts of one wave. A path within another one is no other way. It is the
+    same wave, let in further on by a source that is tied to many nodes or let out earlier by a
+    target tied to several; of such a pair the one with the larger attachment factors is kept, and
+    if they are alike the one given first.
+
+    Parameters
+    ----------
+    paths : sequence of Path
+
+    Returns
+    -------
+    list of int
+        Positions in `paths`, rising.
+    """
+    factor = [path.source_factor * path.target_factor for path in paths]
+    kept: list[int] = []
+    for one in sorted(range(len(paths)), key=lambda i: -factor[i]):
+        if not any(_same_way(paths[one], paths[other]) for other in kept):
+            kept.append(one)
+    return sorted(kept)
+
+
+def _same_way(one: Path, other: Path) -> bool:
+    """Whether the steps of one path are a run within the other's."""
+    short, long = sorted((one.steps, other.steps), key=lambda steps: int(steps.size))
+    if not short.size:
+        return True
+    first = np.nonzero(long == short[0])[0]
+    return any(np.array_equal(long[i : i + short.size], short) for i in first)
+
+
+def route_transfers(
+    network: Network, mode: ModeAtNodes, paths: Sequence[Path], omega: Array,
+    conditions: Conditions = STILL,
+) -> list[RouteTransfer]:
+    """Transfer functions of many routes of one mode.
+
+    Parameters
+    ----------
+    network : Network
+    mode : ModeAtNodes
+    paths : sequence of Path
+    omega : ndarray, shape (nω,)
+        Angular frequency ≥ 0 (rad/s).
+    conditions : Conditions
+
+    Returns
+    -------
+    list of RouteTransfer
+        One for each path.
+    """
+    if not paths:
+        return []
+    nodes = np.concatenate([_leg_nodes(network, path) for path in paths])
+    blocks = np.array_split(omega, max(1, -(-omega.size // _FREQUENCIES_AT_ONCE)))
+    parts = [_leg_sums(network, mode, paths, nodes, block, conditions) for block in blocks]
+    lag, nepers, at_nodes = (np.concatenate(part, axis=-1) for part in zip(*parts, strict=True))
+    transfers, leg = [], 0
+    for row, path in enumerate(paths):
+        legs = slice(leg, leg + path.leg_ends.size)
+        here = at_nodes[leg + row : legs.stop + row + 1]  # a path has one node more than legs
+        leg = legs.stop
+        front = _front_time(network, mode, path, conditions)
+        transfers.append(_assembled(path, omega, lag[legs], nepers[:, legs], here, front))
+    return transfers
+
+
+def leg_budget(transfer: RouteTransfer, weight: Array) -> LegBudget:
+    """Where the energy goes, leg by leg.
+
+    Parameters
+    ----------
+    transfer : RouteTransfer
+    weight : ndarray, shape (nω,)
+        Weight of the frequencies, such as the energy spectrum |S|² of the source.
+
+    Returns
+    -------
+    LegBudget
+    """
+    share = weight / weight.sum()
+    total = transfer.leg_nepers.sum(axis=0)
+    after = np.exp(-2.0 * np.cumsum(total, axis=0))
+    before = np.concatenate([np.ones((1, share.size)), after])[:-1]
+    with np.errstate(invalid="ignore"):
+        parts = np.where(total > 0.0, transfer.leg_nepers / total, 0.0)
+    return LegBudget(after @ share, ((before - after) * parts @ share).T)
+
+
+def _leg_nodes(network: Network, path: Path) -> Index:
+    """Start of a path and the ends of its legs."""
+    return np.concatenate([[path.start], network.head[path.steps[path.leg_ends - 1]]])
+
+
+def _leg_sums(
+    network: Network, mode: ModeAtNodes, paths: Sequence[Path], nodes: Index, omega: Array,
+    conditions: Conditions,
+) -> tuple[Array, Array, Array]:
+    """Lag and nepers of every leg of every path, and the potential at `nodes`."""
+    steps, column = np.unique(np.concatenate([path.steps for path in paths]), return_inverse=True)
+    table = network_wall_table(network, mode, omega)
+    response = step_response(network, mode, steps, omega, table, conditions)
+    sizes = np.concatenate([np.diff(path.leg_ends, prepend=0) for path in paths])
+    bounds = np.concatenate([[0], np.cumsum(sizes)])
+    legs = csr_array((np.ones(column.size), column, bounds), shape=(sizes.size, steps.size))
+    nepers = np.stack([legs @ response.nepers[fate] for fate in range(len(FATES))])
+    return legs @ response.lag, nepers, potential(network, mode, nodes, table)
+
+
+def _assembled(
+    path: Path, omega: Array, lag: Array, nepers: Array, at_nodes: Array, front: float
+) -> RouteTransfer:
+    """A transfer function from the sums over its legs."""
+    exponent = np.cumsum(1j * lag - nepers.sum(axis=0), axis=0)
+    exponent = np.concatenate([np.zeros((1, omega.size)), exponent])
+    response = path.source_factor * at_nodes / at_nodes[0] * np.exp(exponent)
+    return RouteTransfer(omega, path.target_factor * response[-1], response[1:], nepers, front)
+
+
+def _front_time(
+    network: Network, mode: ModeAtNodes, path: Path, conditions: Conditions
+) -> float:
+    """Travel time of the front (s)."""
+    speed = step_speeds(network, mode, path.steps, conditions)[1]
+    return float((network.length[path.steps] / speed).sum())
