@@ -108,7 +108,7 @@ def _with_whole_poles(ocean: Mask) -> Mask:
 
 
 def effective_coast(
-    grid: GlobalGrid, depth: Array, land: Mask, rule: CoastRule
+    grid: GlobalGrid, depth: NDArray[np.floating], land: Mask, rule: CoastRule
 ) -> EffectiveCoast:
     """Trace the coast that a family of modes follows.
 

@@ -70,7 +70,7 @@ class _Patch:
 _NEIGHBOURS = ((0, 1), (1, 0), (1, 1), (1, -1))
 
 
-def straits(coast: EffectiveCoast, depth: Array) -> list[Strait]:
+def straits(coast: EffectiveCoast, depth: NDArray[np.floating]) -> list[Strait]:
     """All passages through gaps of an effective coast.
 
     Parameters
@@ -104,7 +104,7 @@ def _near(mask: NDArray[np.bool_]) -> NDArray[np.bool_]:
 
 
 def _patches(
-    coast: EffectiveCoast, depth: Array, labels: Index, count: int, walls: cKDTree
+    coast: EffectiveCoast, depth: NDArray[np.floating], labels: Index, count: int, walls: cKDTree
 ) -> list[_Patch]:
     """The gaps that open on the effective ocean, each as a graph of its cells."""
     order = np.argsort(labels, axis=None, kind="stable")
@@ -127,7 +127,7 @@ def _before(coast: EffectiveCoast, cells: Index) -> Index:
 
 
 def _patch(
-    grid: GlobalGrid, depth: Array, gap: Index, before: Index, walls: cKDTree
+    grid: GlobalGrid, depth: NDArray[np.floating], gap: Index, before: Index, walls: cKDTree
 ) -> _Patch:
     """Graph of a gap and the ocean before it (flat indices, ascending)."""
     cells = np.union1d(gap, before)

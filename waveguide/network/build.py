@@ -75,7 +75,7 @@ def barotropic_rule(lat: Array) -> CoastRule:
 
 def build_network(
     grid: GlobalGrid,
-    depth: Array,
+    depth: NDArray[np.floating],
     land: Mask,
     rule: CoastRule,
     phase_speed: Array,
@@ -119,8 +119,11 @@ def _assemble(lines: Lines, *crossings: Crossings) -> Network:
     """Join steps along lines with the crossings between them."""
     equatorial = lines.equatorial[lines.tail] | lines.equatorial[lines.head]
     along_kind = np.where(equatorial, int(StepKind.EQUATOR), int(StepKind.COAST))
-    gap_tail = np.concatenate([crossing.tail for crossing in crossings])
-    ways = _ways(lines, crossings)
+    passing = _passing_steps(lines, along_kind, [crossing.tail for crossing in crossings])
+    ways = _ways(lines, crossings, passing)
+    passes = np.full(lines.tail.size + ways.tail.size, -1)
+    known = np.concatenate(passing)
+    passes[known[known >= 0]] = np.nonzero(known >= 0)[0]
     lon = np.concatenate([lines.lon, ways.lon])
     lat = np.concatenate([lines.lat, ways.lat])
     added = ways.lon.size
@@ -140,9 +143,7 @@ def _assemble(lines: Lines, *crossings: Crossings) -> Network:
             geodesic_length(lon[ways.tail], lat[ways.tail], lon[ways.head], lat[ways.head]),
         ]),
         gap=np.concatenate([np.full(lines.tail.size, -1), ways.gap]),
-        passes=np.concatenate(
-            [_passed_gaps(lines.tail, along_kind, gap_tail), np.full(ways.tail.size, -1)]
-        ),
+        passes=passes,
         gap_width=width,
         gap_length=np.concatenate([crossing.length for crossing in crossings]),
         gap_sill=np.concatenate([crossing.sill for crossing in crossings]),
@@ -162,12 +163,18 @@ class _Ways:
     gap: Index
 
 
-def _ways(lines: Lines, crossings: tuple[Crossings, ...]) -> _Ways:
-    """Lay every crossing out as steps; both directions of a strait share its nodes."""
+def _ways(lines: Lines, crossings: tuple[Crossings, ...], passing: list[Index]) -> _Ways:
+    """Lay every crossing out as steps; both directions of a strait share its nodes.
+
+    What comes out of a gap goes on along the coast beyond its mouth, so it lands past the step
+    that passes the mouth and not before it.
+    """
     lon, lat, line, tail, head, kind, gap = [], [], [], [], [], [], []
     first, number, row = lines.lon.size, int(lines.line.max()) + 1, 0
-    for crossing in crossings:
+    for crossing, passed in zip(crossings, passing, strict=True):
         half = crossing.tail.size // 2
+        beyond = np.where(passed >= 0, lines.head[passed], crossing.tail)
+        landing = np.roll(beyond, half)
         for there in range(half):
             way_lon, way_lat = crossing.way[there]
             inner = np.arange(first, first + way_lon.size)
@@ -177,7 +184,7 @@ def _ways(lines: Lines, crossings: tuple[Crossings, ...]) -> _Ways:
             number += 1 if way_lon.size else 0
             first += way_lon.size
             for at, nodes in ((there, inner), (there + half, inner[::-1])):
-                chain = np.concatenate([[crossing.tail[at]], nodes, [crossing.head[at]]])
+                chain = np.concatenate([[crossing.tail[at]], nodes, [landing[at]]])
                 tail.append(chain[:-1])
                 head.append(chain[1:])
                 kind.append(np.full(nodes.size + 1, crossing.kind[at]))
@@ -187,8 +194,31 @@ def _ways(lines: Lines, crossings: tuple[Crossings, ...]) -> _Ways:
     return _Ways(np.concatenate(lon), np.concatenate(lat), *whole)
 
 
-def _passed_gaps(step_tail: Index, kind: Index, gap_tail: Index) -> Index:
-    """The gap whose mouth each coast step passes: the one that opens at its tail."""
-    opens = np.full(int(max(step_tail.max(), gap_tail.max(initial=0))) + 1, -1)
-    opens[gap_tail] = np.arange(gap_tail.size)
-    return np.where(kind == int(StepKind.COAST), opens[step_tail], -1)
+def _passing_steps(lines: Lines, kind: Index, gap_tails: list[Index]) -> list[Index]:
+    """The coast step that passes the mouth of each gap, −1 where the coast ends at the equator.
+
+    It is the step that leaves the node the gap opens at; where several open at one node, the
+    next ones are passed on the steps that follow.
+    """
+    coast = np.nonzero(kind == int(StepKind.COAST))[0]
+    leaving = np.full(lines.lon.size, -1)
+    leaving[lines.tail[coast]] = coast
+    free = np.ones(lines.tail.size, dtype=bool)
+    passing = []
+    for tails in gap_tails:
+        steps = np.full(tails.size, -1)
+        for row, tail in enumerate(tails):
+            steps[row] = _first_free(leaving, lines.head, int(tail), free)
+            free[steps[row]] &= steps[row] < 0
+        passing.append(steps)
+    return passing
+
+
+def _first_free(leaving: Index, head: Index, start: int, free: NDArray[np.bool_]) -> int:
+    """First free coast step on the way from a node, −1 if there is none."""
+    step = int(leaving[start])
+    while step >= 0 and not free[step]:
+        step = int(leaving[head[step]])
+        if step == leaving[start]:
+            return -1
+    return step

@@ -6,8 +6,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.sparse import coo_matrix
-from scipy.sparse.csgraph import minimum_spanning_tree
 from scipy.spatial import cKDTree
 
 from waveguide.coast.effective import EffectiveCoast, is_water
@@ -59,10 +57,18 @@ class _CoastNodes:
     along: Array
     ring_length: Array
 
+    def distance(self, a: Index, b: Index) -> Array:
+        """Distance between nodes (m)."""
+        return arc(np.linalg.norm(self.vectors[a] - self.vectors[b], axis=-1))
+
+    def along_from(self, a: Index, b: Index) -> Array:
+        """Way round the coast from node a to nodes b of its ring, −½ to ½ of the ring (m)."""
+        half = self.ring_length[a] / 2.0
+        return np.asarray((self.along[b] - self.along[a] + half) % (2.0 * half) - half)
+
     def along_separation(self, a: Index, b: Index) -> Array:
         """Shorter way round the coast between nodes (m), infinite between different rings."""
-        apart = np.abs(self.along[a] - self.along[b])
-        apart = np.minimum(apart, self.ring_length[a] - apart)
+        apart = np.abs(self.along_from(a, b))
         return np.where(self.line[a] == self.line[b], apart, np.inf)
 
 
@@ -86,8 +92,9 @@ def strait_crossings(
 ) -> Crossings:
     """Straits that lead somewhere the coast does not soon lead by itself.
 
-    Of the many pairs of mouths of one gap only the cheapest tree is kept (narrow and long is
-    dear), and of that only pairs whose ends lie far apart along the coast or on different rings.
+    Only ways whose ends lie far apart along the coast or on different rings are kept, and of
+    the many that a gap with many mouths offers, for each mouth the cheapest (narrow and long is
+    dear) to each ring: from there the coast itself leads to the others.
 
     Parameters
     ----------
@@ -104,26 +111,23 @@ def strait_crossings(
         Each strait in both directions.
     """
     nodes = _coast_nodes(lines)
-    tree = cKDTree(nodes.vectors)
     ends = np.array([(s.lon[[0, -1]], s.lat[[0, -1]]) for s in found]).reshape(-1, 2, 2)
-    distance, node = tree.query(unit_vectors(ends[:, 0], ends[:, 1]))
-    size = np.array(
-        [(s.width, s.length, s.sill_depth, s.inertia_length) for s in found]
-    ).reshape(-1, 4)
+    distance, node = cKDTree(nodes.vectors).query(unit_vectors(ends[:, 0], ends[:, 1]))
+    length = np.array([strait.length for strait in found])
     near = (arc(distance) <= reach).all(axis=1)
-    far_apart = nodes.along_separation(node[:, 0], node[:, 1]) > DETOUR * size[:, 1]
-    keep = near & far_apart & (node[:, 0] != node[:, 1])
-    rows, node, size = np.nonzero(keep)[0], node[keep], size[keep]
-    chosen = _cheapest_tree(node, size[:, 3] / size[:, 0], nodes.vectors.shape[0])
-    rows, node, size = rows[chosen], node[chosen], size[chosen]
-    there = [_thinned(found[row], spacing) for row in rows]
+    far_apart = nodes.along_separation(node[:, 0], node[:, 1]) > DETOUR * length
+    rows = np.nonzero(near & far_apart & (node[:, 0] != node[:, 1]))[0]
+    cost = np.array([found[row].inertia_length / found[row].width for row in rows])
+    rows = rows[_cheapest_ways(node[rows], nodes.line[node[rows]], cost)]
+    chosen, node = [found[row] for row in rows], node[rows]
+    there = [_thinned(strait, spacing) for strait in chosen]
     return Crossings(
         tail=np.concatenate([node[:, 0], node[:, 1]]).astype(np.int64),
         head=np.concatenate([node[:, 1], node[:, 0]]).astype(np.int64),
-        kind=np.full(2 * len(node), int(StepKind.STRAIT)),
-        width=np.tile(size[:, 0], 2),
-        length=np.tile(size[:, 3], 2),
-        sill=np.tile(size[:, 2], 2),
+        kind=np.full(2 * rows.size, int(StepKind.STRAIT)),
+        width=np.tile([strait.width for strait in chosen], 2),
+        length=np.tile([strait.inertia_length for strait in chosen], 2),
+        sill=np.tile([strait.sill_depth for strait in chosen], 2),
         way=there + [(lon[::-1], lat[::-1]) for lon, lat in there],
     )
 
@@ -136,19 +140,15 @@ def _thinned(strait: Strait, spacing: float) -> tuple[Array, Array]:
     return strait.lon[at], strait.lat[at]
 
 
-def _cheapest_tree(pairs: Index, cost: Array, n: int) -> Index:
-    """Rows of the pairs that form a minimum spanning forest."""
-    if not len(pairs):
-        return np.zeros(0, dtype=np.int64)
+def _cheapest_ways(pairs: Index, rings: Index, cost: Array) -> Index:
+    """Rows of pairs of nodes that are the cheapest from one of the two to the other's ring."""
     order = np.argsort(cost, kind="stable")
-    low, high = pairs.min(axis=1)[order], pairs.max(axis=1)[order]
-    _, first = np.unique(low * n + high, return_index=True)
-    unique = order[first]
-    rank = np.empty(len(pairs))
-    rank[order] = np.arange(1, len(pairs) + 1)
-    graph = coo_matrix((rank[unique], (pairs[unique, 0], pairs[unique, 1])), shape=(n, n))
-    forest = minimum_spanning_tree(graph.tocsr())
-    return np.sort(order[forest.data.astype(np.int64) - 1])
+    kept = np.zeros(len(pairs), dtype=bool)
+    for here, there in ((0, 1), (1, 0)):
+        ways = np.stack([pairs[order, here], rings[order, there]], axis=1)
+        _, first = np.unique(ways, axis=0, return_index=True)
+        kept[order[first]] = True
+    return np.nonzero(kept)[0]
 
 
 def facing_crossings(
@@ -158,8 +158,8 @@ def facing_crossings(
 
     Candidates are pairs of nodes closer than `FACING_REACH` deformation radii, far apart along
     the coast, with open water between. Of each run of such pairs only the closest approach is
-    kept. Where the crossing runs along the direction of travel it is the mouth of a wide opening;
-    where it runs across it, the far shore is a facing coast.
+    kept. Where the coast leads from one end to the other by itself the crossing is the mouth of
+    a wide opening; everywhere else the far shore is a facing coast.
 
     Parameters
     ----------
@@ -175,37 +175,41 @@ def facing_crossings(
     Crossings
     """
     nodes = _coast_nodes(lines)
-    n = nodes.lat.size
-    a, b = _candidate_pairs(nodes, radius[:n], nearest_equator)
-    distance = arc(np.linalg.norm(nodes.vectors[a] - nodes.vectors[b], axis=1))
+    a, b = _candidate_pairs(nodes, radius[: nodes.lat.size], nearest_equator)
+    clear = _open_water(coast, nodes.vectors[a], nodes.vectors[b])
+    a, b = a[clear], b[clear]
+    distance = nodes.distance(a, b)
     near = _closest_approaches(nodes, a, b, distance)
-    near = near[_open_water(coast, nodes.vectors[a[near]], nodes.vectors[b[near]])]
     extent = np.tile(_facing_extent(nodes, a, b, near), 2)
     tail, head = np.concatenate([a[near], b[near]]), np.concatenate([b[near], a[near]])
-    kind = _opening_or_facing(lines, nodes, tail, head)
+    opening = _leads_on(nodes, tail, head)
     return Crossings(
         tail=tail,
         head=head,
-        kind=kind,
+        kind=np.where(opening, int(StepKind.OPENING), int(StepKind.FACING_COAST)),
         width=np.tile(distance[near], 2),
-        length=np.where(kind == int(StepKind.FACING_COAST), extent, 0.0),
+        length=np.where(opening, 0.0, extent),
         sill=np.full(tail.size, np.inf),
         way=[(np.zeros(0), np.zeros(0))] * tail.size,
     )
 
 
 def _facing_extent(nodes: _CoastNodes, a: Index, b: Index, near: Index) -> Array:
-    """Length over which two coasts face each other within reach about each approach (m)."""
+    """Length over which two coasts face each other about each approach (m).
+
+    Every pair within reach is counted to the nearest approach between the same two rings; of
+    the two stretches the shorter is taken.
+    """
+    apart = np.stack([
+        nodes.along_separation(a, a[i]) + nodes.along_separation(b, b[i]) for i in near
+    ]) if near.size else np.zeros((0, a.size))
+    nearest = np.argmin(apart, axis=0) if near.size else np.zeros(0, dtype=np.int64)
     extent = np.zeros(near.size)
     for row, i in enumerate(near):
-        same = (nodes.line[a] == nodes.line[a[i]]) & (nodes.line[b] == nodes.line[b[i]])
-        off = nodes.along[a[same]] - nodes.along[a[i]]
-        turn = nodes.ring_length[a[i]]
-        off = np.unique((off + turn / 2.0) % turn - turn / 2.0)
-        # the run of neighbouring nodes about the approach
-        gaps = np.diff(off) > 3.0 * np.median(np.diff(off), axis=0) if off.size > 2 else []
-        run = np.split(off, np.nonzero(gaps)[0] + 1)
-        extent[row] = next(float(np.ptp(part)) for part in run if (part == 0.0).any())
+        own = (nearest == row) & np.isfinite(apart[row])
+        extent[row] = min(
+            np.ptp(nodes.along_from(side[i], side[own])) for side in (a, b)
+        )
     return extent
 
 
@@ -215,49 +219,60 @@ def _candidate_pairs(
     """Pairs (a < b) within reach of each other and far apart along the coast."""
     tree = cKDTree(nodes.vectors)
     reach = chord(FACING_REACH * radius)
-    hits = tree.query_ball_point(nodes.vectors, reach, workers=-1, return_sorted=True)
+    hits = tree.query_ball_point(nodes.vectors, reach, return_sorted=True)
     counts = np.array([len(hit) for hit in hits])
     a = np.repeat(np.arange(counts.size), counts)
     b = np.fromiter((j for hit in hits for j in hit), dtype=np.int64, count=int(counts.sum()))
-    distance = arc(np.linalg.norm(nodes.vectors[a] - nodes.vectors[b], axis=1))
+    distance = nodes.distance(a, b)
+    close = distance <= FACING_REACH * np.minimum(radius[a], radius[b])
     away = np.minimum(np.abs(nodes.lat[a]), np.abs(nodes.lat[b])) > nearest_equator
     far = nodes.along_separation(a, b) > DETOUR * distance
-    keep = (a < b) & away & far & (nodes.lat[a] * nodes.lat[b] > 0.0)
+    keep = (a < b) & close & away & far & (nodes.lat[a] * nodes.lat[b] > 0.0)
     return a[keep], b[keep]
 
 
-def _closest_approaches(
-    nodes: _CoastNodes, a: Index, b: Index, distance: Array
-) -> Index:
-    """Rows of the pairs nearer than every other pair within two crossing widths along either coast."""
-    order = np.argsort(distance, kind="stable")
+def _closest_approaches(nodes: _CoastNodes, a: Index, b: Index, distance: Array) -> Index:
+    """Rows of pairs nearer than every other pair within two widths along either coast."""
     kept: list[int] = []
-    for i in order:
-        if kept:
-            k = np.array(kept)
-            near_a = nodes.along_separation(a[k], np.full(k.size, a[i]))
-            near_b = nodes.along_separation(b[k], np.full(k.size, b[i]))
-            if ((near_a < 2 * distance[i]) & (near_b < 2 * distance[i])).any():
-                continue
-        kept.append(int(i))
+    for i in np.argsort(distance, kind="stable"):
+        k = np.array(kept, dtype=np.int64)
+        beside = [
+            (nodes.along_separation(a[k], here) < 2.0 * distance[i])
+            & (nodes.along_separation(b[k], there) < 2.0 * distance[i])
+            for here, there in ((a[i], b[i]), (b[i], a[i]))
+        ]
+        if not np.any(beside):
+            kept.append(int(i))
     return np.sort(np.array(kept, dtype=np.int64))
 
 
 def _open_water(coast: EffectiveCoast, a: Array, b: Array) -> NDArray[np.bool_]:
-    """Whether the straight way between positions stays in the effective ocean."""
-    shares = np.linspace(0.15, 0.85, 8)[:, None, None]
+    """Whether the straight way between positions stays in the effective ocean.
+
+    The ends, which lie on the shore, are left out.
+    """
+    longest = float(arc(np.linalg.norm(a - b, axis=1)).max(initial=0.0))
+    count = max(round(longest / (3.0 * coast.grid.spacing)), 8)
+    shares = np.linspace(0.15, 0.85, count)[:, None, None]
     lon, lat = positions((1.0 - shares) * a + shares * b)
     return np.asarray(is_water(coast, lon, lat).all(axis=0))
 
 
-def _opening_or_facing(lines: Lines, nodes: _CoastNodes, tail: Index, head: Index) -> Index:
-    """Kind of crossing from the angle between it and the direction of travel."""
-    onward = np.zeros(nodes.lat.size, dtype=np.int64)
-    coast = ~lines.equatorial[lines.tail] & ~lines.equatorial[lines.head]
-    onward[lines.tail[coast]] = lines.head[coast]
-    travel = nodes.vectors[onward[tail]] - nodes.vectors[tail]
-    across = nodes.vectors[head] - nodes.vectors[tail]
-    cosine = (travel * across).sum(1) / (
-        np.linalg.norm(travel, axis=1) * np.linalg.norm(across, axis=1)
-    )
-    return np.where(cosine > 0.5, int(StepKind.OPENING), int(StepKind.FACING_COAST))
+def _leads_on(nodes: _CoastNodes, tail: Index, head: Index) -> NDArray[np.bool_]:
+    """Whether a signal that follows the coast from `tail` soon comes by `head`.
+
+    Soon: before the equator, and before it is half-way round the ring.
+    """
+    found = np.zeros(tail.size, dtype=bool)
+    for row, (here, there) in enumerate(zip(tail, head, strict=True)):
+        if nodes.line[here] != nodes.line[there]:
+            continue
+        turn = nodes.ring_length[here]
+        ring = nodes.line == nodes.line[here]
+        junctions = np.nonzero(ring & (nodes.lat == 0.0))[0]
+        # Rings are stored in the order of travel of the northern hemisphere.
+        sign = 1.0 if nodes.lat[here] > 0.0 else -1.0
+        onward = (sign * (nodes.along[there] - nodes.along[here])) % turn
+        to_equator = (sign * (nodes.along[junctions] - nodes.along[here])) % turn
+        found[row] = onward < min(turn / 2.0, to_equator.min(initial=np.inf))
+    return found

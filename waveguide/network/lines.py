@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,7 +13,7 @@ from waveguide.coast.effective import (
     offshore_azimuths,
 )
 from waveguide.constants import EARTH_RADIUS
-from waveguide.geodesy import destination, geodesic_length
+from waveguide.geodesy import destination, geodesic_length, wrap_longitude
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -57,8 +57,8 @@ def with_equator_nodes(lon: Array, lat: Array) -> tuple[Array, Array]:
     following = np.roll(lat, -1)
     at = np.nonzero(np.sign(lat) != np.sign(following))[0]
     share = lat[at] / (lat[at] - following[at])
-    east = (np.roll(lon, -1)[at] - lon[at] + 180.0) % 360.0 - 180.0
-    crossing = (lon[at] + share * east + 180.0) % 360.0 - 180.0
+    east = wrap_longitude(np.roll(lon, -1)[at] - lon[at])
+    crossing = wrap_longitude(lon[at] + share * east)
     return np.insert(lon, at + 1, crossing), np.insert(lat, at + 1, 0.0)
 
 
@@ -83,10 +83,23 @@ def coast_steps(lat: Array, first: int) -> tuple[Index, Index]:
 
 
 def equator_nodes(west: float, east: float, spacing: float) -> Array:
-    """Longitudes of the nodes strictly between two ends of an equatorial stretch (degrees)."""
+    """Longitudes of the nodes strictly between two ends of an equatorial stretch.
+
+    Parameters
+    ----------
+    west, east : float
+        Ends, degrees.
+    spacing : float
+        Wanted distance between nodes (m).
+
+    Returns
+    -------
+    ndarray, shape (n,)
+        Degrees; at least one, which marks the stretch as equatorial.
+    """
     span = (east - west) % 360.0
-    count = max(round(np.radians(span) * EARTH_RADIUS / spacing), 1)
-    return (west + span * np.arange(1, count) / count + 180.0) % 360.0 - 180.0
+    count = max(round(np.radians(span) * EARTH_RADIUS / spacing), 2)
+    return wrap_longitude(west + span * np.arange(1, count) / count)
 
 
 def _coast_lines(coast: EffectiveCoast) -> list[tuple[Array, Array]]:
@@ -130,52 +143,64 @@ def build_lines(coast: EffectiveCoast, spacing: float) -> Lines:
     -------
     Lines
     """
-    lon, lat, line, offshore, tails, heads, crossings = [], [], [], [], [], [], []
-    first = 0
-    for number, (ring_lon, ring_lat) in enumerate(_coast_lines(coast)):
-        tail, head = coast_steps(ring_lat, first)
-        lon.append(ring_lon)
-        lat.append(ring_lat)
-        line.append(np.full(ring_lon.size, number))
-        offshore.append(offshore_azimuths(ring_lon, ring_lat))
-        crossing = np.nonzero(ring_lat == 0.0)[0]
-        crossings.append(
-            np.stack([crossing + first, np.roll(ring_lat, -1)[crossing] > 0.0])
-        )
-        tails.append(tail)
-        heads.append(head)
-        first += ring_lon.size
-    junction, northward = np.concatenate(crossings, axis=1)
+    shores = _along_coasts(coast)
+    parts = [shores]
+    first, number = shores.lon.size, int(shores.line[-1]) + 1
+    for start, end in _stretches(shores.lon, shores.eastern, shores.western):
+        parts.append(_along_equator(shores, start, end, spacing, first, number))
+        first, number = first + parts[-1].lon.size, number + 1
+    joined = {
+        field.name: np.concatenate([getattr(part, field.name) for part in parts])
+        for field in fields(Lines)
+    }
+    return Lines(**joined)
+
+
+def _along_coasts(coast: EffectiveCoast) -> Lines:
+    """Nodes and steps along every ring."""
+    rings = _coast_lines(coast)
+    sizes = np.array([ring_lon.size for ring_lon, _ in rings])
+    firsts = np.cumsum(sizes) - sizes
+    lon, lat = (np.concatenate(part) for part in zip(*rings, strict=True))
+    offshore = np.concatenate([offshore_azimuths(*ring) for ring in rings])
+    steps = [coast_steps(ring_lat, int(first))
+             for (_, ring_lat), first in zip(rings, firsts, strict=True)]
+    tail, head = (np.concatenate(part) for part in zip(*steps, strict=True))
     # Land is on the right of the stored order: heading north it lies to the east.
-    eastern, western = junction[northward == 1], junction[northward == 0]
-    coast_lon = np.concatenate(lon)
-    coast_offshore = np.concatenate(offshore)
-    basin = [_basins(coast, coast_lon, np.concatenate(lat), coast_offshore)]
-    coast_count, number = first, len(lon)
-    for start, end in _stretches(coast_lon, eastern, western):
-        middle = equator_nodes(coast_lon[start], coast_lon[end], spacing)
-        chain = np.concatenate([[start], first + np.arange(middle.size), [end]])
-        lon.append(middle)
-        lat.append(np.zeros(middle.size))
-        line.append(np.full(middle.size, number))
-        offshore.append(np.full(middle.size, np.nan))
-        basin.append(np.full(middle.size, basin[0][start]))
-        tails.append(chain[:-1])
-        heads.append(chain[1:])
-        first += middle.size
-        number += 1
-    all_lon, all_lat = np.concatenate(lon), np.concatenate(lat)
-    tail, head = np.concatenate(tails), np.concatenate(heads)
+    northward = np.concatenate([np.roll(ring_lat, -1) > 0.0 for _, ring_lat in rings])
     return Lines(
-        lon=all_lon,
-        lat=all_lat,
-        line=np.concatenate(line).astype(np.int64),
-        equatorial=np.arange(all_lon.size) >= coast_count,
-        offshore=np.concatenate(offshore),
-        basin=np.concatenate(basin),
+        lon=lon,
+        lat=lat,
+        line=np.repeat(np.arange(sizes.size), sizes),
+        equatorial=np.zeros(lon.size, dtype=bool),
+        offshore=offshore,
+        basin=_basins(coast, lon, lat, offshore),
         tail=tail,
         head=head,
-        length=geodesic_length(all_lon[tail], all_lat[tail], all_lon[head], all_lat[head]),
-        eastern=eastern,
-        western=western,
+        length=geodesic_length(lon[tail], lat[tail], lon[head], lat[head]),
+        eastern=np.nonzero((lat == 0.0) & northward)[0],
+        western=np.nonzero((lat == 0.0) & ~northward)[0],
+    )
+
+
+def _along_equator(
+    shores: Lines, start: int, end: int, spacing: float, first: int, number: int
+) -> Lines:
+    """Nodes and steps from a western to an eastern boundary, the first node numbered `first`."""
+    lon = equator_nodes(shores.lon[start], shores.lon[end], spacing)
+    chain = np.concatenate([[start], first + np.arange(lon.size), [end]])
+    along = np.concatenate([shores.lon[[start]], lon, shores.lon[[end]]])
+    none = np.zeros(0, dtype=np.int64)
+    return Lines(
+        lon=lon,
+        lat=np.zeros(lon.size),
+        line=np.full(lon.size, number),
+        equatorial=np.ones(lon.size, dtype=bool),
+        offshore=np.full(lon.size, np.nan),
+        basin=np.full(lon.size, shores.basin[start]),
+        tail=chain[:-1],
+        head=chain[1:],
+        length=geodesic_length(along[:-1], 0.0, along[1:], 0.0),
+        eastern=none,
+        western=none,
     )
