@@ -33,8 +33,8 @@ the meridian as it leaves the equator (eastward at an eastern boundary). Two thi
   move with the angle; there κ ∝ ω̂² joins κ(0.4) to the uniform wall of ω̂ → 0.
 
 Against shallow-water integrations along straight coasts leaning up to 60° the amplitude on
-the favoured coast is then within 8 %; phases (not corrected for asymmetry) are late by up to
-8° for ω̂ ≤ 0.3 and by up to 45° at ω̂ = 1 and 60°.
+the favoured coast is then within 9 %; phases, which are not corrected for the asymmetry, are
+late there by up to 22° for ω̂ ≤ 0.3 and up to 45° at ω̂ = 1, both at 60°.
 
 References
 ----------
