@@ -29,6 +29,7 @@ exact for the flux of a layer in place of dominated by its least stratified part
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -275,23 +276,26 @@ def _beyond(mesh: Mesh, offshore: OffshoreModes) -> Entries:
     return first + row, first + column, block[row, column]
 
 
-def boundary_product(depth: Array, values: Array) -> Array:
-    """B times nodal values along the boundary line.
+def boundary_product(depth: Array) -> Callable[[Array], Array]:
+    """B as a function of nodal values along the boundary line.
 
     Parameters
     ----------
     depth : ndarray, shape (n,)
         Depth of the boundary nodes (m), from the surface down the wall and along the bottom.
-    values : ndarray, shape (n,)
-        p there.
 
     Returns
     -------
-    ndarray, shape (n,)
-        ∫ q_i p dh for the piecewise linear q_i of every node.
+    callable
+        Takes p at the nodes and returns ∫ q_i p dh for the piecewise linear q_i of every node.
     """
-    dh = np.diff(depth) / 6.0
-    result = np.zeros_like(values)
-    result[:-1] += dh * (2.0 * values[:-1] + values[1:])
-    result[1:] += dh * (values[:-1] + 2.0 * values[1:])
-    return result
+    side = np.diff(depth) / 6.0
+    middle = 2.0 * (np.append(side, 0.0) + np.append(0.0, side))
+
+    def product(values: Array) -> Array:
+        result: Array = middle * values
+        result[:-1] += side * values[1:]
+        result[1:] += side * values[:-1]
+        return result
+
+    return product

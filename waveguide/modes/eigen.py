@@ -27,10 +27,10 @@ _RESIDUAL = 3e-5
 _EXHAUSTED = 1e-9
 """A new direction smaller than this, relative to the first eigenvalue, is rounding."""
 
-_FIRST_CHECK, _CHECK_EVERY = 12, 4
+_FIRST_CHECK, _CHECK_EVERY, _MOST_STEPS = 11, 3, 300
 
 
-class _Condensed:
+class _Solver:
     """K⁻¹ applied to loads on the boundary nodes.
 
     K's smallest eigenvalue, near the uniform vector 1, is of the size of f²/g where its entries
@@ -57,17 +57,12 @@ class _Condensed:
         values: Array = lapack.dpbtrs(self.factor, load, lower=1, overwrite_b=1)[0][:, 0]
         return values
 
-    def everywhere(self, load: Array) -> Array:
+    def __call__(self, load: Array) -> Array:
         """Values at all nodes."""
         full = np.zeros((self.row_sum.size, 1))
         full[self.boundary, 0] = load
         values = self._solve(full)
         values += (load.sum() - self.row_sum @ values) / self.total * self.ground
-        return values
-
-    def __call__(self, load: Array) -> Array:
-        """Values at the boundary nodes."""
-        values: Array = self.everywhere(load)[self.boundary]
         return values
 
 
@@ -96,41 +91,44 @@ def largest_modes(
         1/λ, largest first.
     modes : ndarray, shape (count, nnode)
         p with pᵀBp = 1, positive at the first node.
-    extremes : ndarray, shape (k,)
-        All Ritz values, of which the most negative ones are accurate too.
+    ritz : ndarray, shape (k,)
+        All Ritz values, descending; the most negative ones are accurate too.
     """
-    solve = _Condensed(stiffness, boundary)
-    ritz, vectors = _lanczos(solve, product, boundary.size, count)
-    wanted = np.argsort(-ritz)[:count]
-    inverse = ritz[wanted]
+    ritz, modes = _lanczos(_Solver(stiffness, boundary), boundary, product, count)
+    inverse = ritz[:count]
     if inverse.size < count or inverse[-1] <= 0.0:
         raise InputError(
             f"count asks for {count} modes but the section holds {int(np.sum(ritz > 0.0))} at this "
             "resolution: ask for fewer"
         )
-    modes = np.array([solve.everywhere(product(v)) for v in vectors[wanted]])
     modes /= np.where(modes[:, :1] < 0.0, -1.0, 1.0) * inverse[:, None] ** 1.5
     return inverse, modes, ritz
 
 
 def _lanczos(
-    solve: Callable[[Array], Array], product: Callable[[Array], Array], size: int, count: int
+    solve: Callable[[Array], Array],
+    boundary: Indices,
+    product: Callable[[Array], Array],
+    count: int,
 ) -> tuple[Array, Array]:
-    """Ritz values and K-orthonormal Ritz vectors (boundary values), one per row.
+    """Ritz values, descending, and K⁻¹B times the first `count` K-orthonormal Ritz vectors.
 
     Kept on the boundary: v, and k = K v. The new direction w = K⁻¹ B v has K w = B v, so
     (v_i, w)_K = v_i · B v.
     """
-    most = min(size, 300)
+    size = boundary.size
+    most = min(size, _MOST_STEPS)
     v, k = np.empty((most, size)), np.empty((most, size))
+    everywhere: list[Array] = []
     projected = np.zeros((most, most))
-    load = product(1.0 + 0.5 * np.cos(2.4 * np.arange(size)))  # contains every mode
-    step, weight = solve(load), load
+    weight = product(1.0 + 0.5 * np.cos(2.4 * np.arange(size)))  # contains every mode
+    step = solve(weight)[boundary]
     for j in range(most):
         norm = np.sqrt(step @ weight)
         v[j], k[j] = step / norm, weight / norm
         weight = product(v[j])
-        step = solve(weight)
+        everywhere.append(solve(weight))
+        step = everywhere[-1][boundary]
         row = v[: j + 1] @ weight
         step, weight = step - row @ v[: j + 1], weight - row @ k[: j + 1]
         again = v[: j + 1] @ weight  # orthogonalise twice: once loses accuracy
@@ -138,10 +136,10 @@ def _lanczos(
         projected[j, : j + 1] = row + again
         left = float(np.sqrt(np.maximum(step @ weight, 0.0)))
         if _due(j, most) or left <= _EXHAUSTED * abs(projected[0, 0]):
-            values, s = np.linalg.eigh(projected[: j + 1, : j + 1])
-            if left * np.max(np.abs(s[-1, -count:] / values[-count:])) < _RESIDUAL:
+            ritz, s = np.linalg.eigh(projected[: j + 1, : j + 1])
+            if left * np.max(np.abs(s[-1, -count:] / ritz[-count:])) < _RESIDUAL:
                 break
-    return values, s.T @ v[: j + 1]
+    return ritz[::-1], s[:, : -count - 1 : -1].T @ np.array(everywhere)
 
 
 def _due(j: int, most: int) -> bool:

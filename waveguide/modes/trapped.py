@@ -46,9 +46,9 @@ Array = NDArray[np.float64]
 TOLERANCE = 0.005
 """Default relative error of phase speeds."""
 
-_FIRST_INTERVALS = 4
+_FIRST_INTERVALS = 3
 _MORE_INTERVALS = 1.5
-_FIRST_DEPTH_ERROR = 4.0
+_FIRST_DEPTH_ERROR = 3.0
 """Intervals per mode, their growth from one solution to the next, and the first relative error of
 depth in units of the tolerance (halved each time)."""
 
@@ -112,22 +112,19 @@ def trapped_modes(
     _check_numbers(f, count, tolerance)
     gravity = GRAVITY * (_RIGID if rigid_lid else 1.0)
     intervals, depth_error = float(_FIRST_INTERVALS * (count + 1)), _FIRST_DEPTH_ERROR * tolerance
-    result: _Extrapolated | None = None
-    error = np.full(count + 1, np.inf)
+    speed = np.full(count + 1, np.inf)
     for _ in range(_MOST_SOLUTIONS):
         plan = plan_mesh(x, h, profile, f, round(intervals), depth_error)
         coarse, fine = (
             _solve(build_mesh(plan, refinement), profile, f, gravity, count + 1)
             for refinement in (1, 2)
         )
-        better = _extrapolated(coarse, fine)
-        if result is not None:
-            error = np.abs(result.phase_speed / better.phase_speed - 1.0)
-        result = better
+        last, speed = speed, _limit(coarse.phase_speed, fine.phase_speed)
+        error = np.abs(last / speed - 1.0)
         if np.all(error[rigid_lid:] <= tolerance):
             break
         intervals, depth_error = intervals * _MORE_INTERVALS, 0.5 * depth_error
-    return _mode_set(better, error, profile, f, slice(int(rigid_lid), None))
+    return _mode_set(coarse, fine, error, slice(int(rigid_lid), None))
 
 
 def _check_numbers(f: float, count: int, tolerance: float) -> None:
@@ -150,80 +147,61 @@ class _Solution:
     """Modes on one mesh."""
 
     mesh: Mesh
-    phase_speed: Array
+    profile: Profile
+    f: float
+    beyond: OffshoreModes
+    eigenvalue: Array
     values: Array
-    bottom_friction: Array
-    trapping_scale: Array
     reverse_speed: float
 
-
-@dataclass(frozen=True)
-class _Extrapolated:
-    """Numbers from two meshes, structures from the finer one."""
-
-    fine: _Solution
-    phase_speed: Array
-    coastal_value: Array
-    bottom_friction: Array
+    @property
+    def phase_speed(self) -> Array:
+        return abs(self.f) / self.eigenvalue
 
 
 def _solve(mesh: Mesh, profile: Profile, f: float, gravity: float, count: int) -> _Solution:
     rotation = Rotation(f * f, 0.0, gravity)
     beyond = offshore_modes(mesh, profile, rotation)
-    boundary, depth = mesh.boundary, mesh.boundary_depth
+    depth = mesh.boundary_depth
     inverse, values, ritz = largest_modes(
         stiffness(mesh, profile, rotation, beyond),
-        boundary,
-        lambda p: boundary_product(depth, p),
+        mesh.boundary,
+        boundary_product(depth),
         count,
     )
-    reverse = -ritz.min() * abs(f) if np.any(np.diff(depth) < 0.0) else 0.0
-    return _Solution(
-        mesh,
-        inverse * abs(f),
-        values,
-        _friction(mesh, profile, f, values, 1.0 / inverse, beyond),
-        _trapping_scales(mesh, values, beyond),
-        max(float(reverse), 0.0),
-    )
+    rises = bool(np.any(np.diff(depth) < 0.0))
+    reverse = max(-float(ritz.min()) * abs(f), 0.0) if rises else 0.0
+    return _Solution(mesh, profile, f, beyond, 1.0 / inverse, values, reverse)
 
 
-def _extrapolated(coarse: _Solution, fine: _Solution) -> _Extrapolated:
-    """Errors are of second order and the fine mesh has half the spacing (Richardson)."""
-
-    def limit(a: Array, b: Array) -> Array:
-        return (4.0 * b - a) / 3.0
-
-    return _Extrapolated(
-        fine,
-        limit(coarse.phase_speed, fine.phase_speed),
-        limit(coarse.values[:, 0], fine.values[:, 0]),
-        limit(coarse.bottom_friction, fine.bottom_friction),
-    )
+def _limit(coarse: Array, fine: Array) -> Array:
+    """Richardson: errors are of second order and the fine mesh has half the spacing."""
+    return (4.0 * fine - coarse) / 3.0
 
 
-def _friction(
-    mesh: Mesh, profile: Profile, f: float, values: Array, eigenvalue: Array, beyond: OffshoreModes
-) -> Array:
+def _friction(solution: _Solution) -> Array:
     """Decay per metre and unit drag r (s/m²), one per mode; see the module's text."""
+    mesh, values, beyond = solution.mesh, solution.values, solution.beyond
     h = mesh.level[mesh.bottom]
-    dx, slope = np.diff(mesh.offshore), np.diff(h) / np.diff(mesh.offshore)
+    dx = np.diff(mesh.offshore)
     on_bottom = values[:, mesh.start[:-1] + mesh.bottom]
     rise = np.diff(on_bottom) / dx
     middle = 0.5 * (on_bottom[:, 1:] + on_bottom[:, :-1])
-    burger = profile.at(0.5 * (h[1:] + h[:-1])) * (slope / f) ** 2
-    p_x = (rise - eigenvalue[:, None] * burger * middle) / (1.0 + burger)
+    n2 = solution.profile.at(0.5 * (h[1:] + h[:-1]))
+    burger = n2 * (np.diff(h) / (dx * solution.f)) ** 2
+    p_x = (rise - solution.eigenvalue[:, None] * burger * middle) / (1.0 + burger)
     inside = np.sum(rise * p_x * dx, axis=1)
 
     k = beyond.decay
     shares = values[:, mesh.start[-2] :] @ beyond.projection * beyond.structure[-1]
     outside = np.einsum("mi,ij,mj->m", shares, np.outer(k, k) / np.add.outer(k, k), shares)
-    total: Array = (inside + outside) / abs(f)
+    total: Array = (inside + outside) / abs(solution.f)
     return total
 
 
-def _trapping_scales(mesh: Mesh, values: Array, beyond: OffshoreModes) -> Array:
+def _trapping_scales(solution: _Solution) -> Array:
     """Distance (m) within which 1 - e⁻² of ∫ v² dx at the surface lies, one per mode."""
+    mesh, values, beyond = solution.mesh, solution.values, solution.beyond
     far = np.geomspace(1e-3, 10.0, 200) / beyond.decay[0]
     amplitude = values[:, mesh.start[-2] :] @ beyond.projection * beyond.structure[0]
     outside = amplitude @ np.exp(-np.outer(beyond.decay, far))
@@ -234,27 +212,26 @@ def _trapping_scales(mesh: Mesh, values: Array, beyond: OffshoreModes) -> Array:
     return np.array([np.interp(2.0, np.log(e[0] / e), x[:-1]) for e in after])
 
 
-def _mode_set(
-    result: _Extrapolated, error: Array, profile: Profile, f: float, kept: slice
-) -> ModeSet:
-    solution, mesh = result.fine, result.fine.mesh
-    below = np.arange(mesh.level.size)[:, None] > mesh.bottom
-    node = np.where(below, 0, mesh.start[:-1] + np.arange(mesh.level.size)[:, None])
-    values = solution.values[kept]
+def _mode_set(coarse: _Solution, fine: _Solution, error: Array, kept: slice) -> ModeSet:
+    """Numbers extrapolated from two meshes, structures of the finer one."""
+    mesh, values = fine.mesh, fine.values[kept]
+    level = np.arange(mesh.level.size)[:, None]
+    below = level > mesh.bottom
+    node = np.where(below, 0, mesh.start[:-1] + level)
     return ModeSet(
-        mode=np.arange(solution.phase_speed.size)[kept],
-        phase_speed=result.phase_speed[kept],
+        mode=np.arange(error.size)[kept],
+        phase_speed=_limit(coarse.phase_speed, fine.phase_speed)[kept],
         error=error[kept],
-        coastal_value=result.coastal_value[kept],
-        bottom_friction=result.bottom_friction[kept],
-        trapping_scale=solution.trapping_scale[kept],
-        reverse_speed=solution.reverse_speed,
-        f=f,
+        coastal_value=_limit(coarse.values[:, 0], fine.values[:, 0])[kept],
+        bottom_friction=_limit(_friction(coarse), _friction(fine))[kept],
+        trapping_scale=_trapping_scales(fine)[kept],
+        reverse_speed=fine.reverse_speed,
+        f=fine.f,
         offshore=mesh.offshore,
         depth=mesh.level,
         bottom=mesh.bottom,
         structure=np.where(below, np.nan, values[:, node]),
         boundary_depth=mesh.boundary_depth,
         boundary_structure=values[:, mesh.boundary],
-        profile=profile,
+        profile=fine.profile,
     )
