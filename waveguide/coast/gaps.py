@@ -207,11 +207,30 @@ def _path(before: NDArray[np.int32], last: int) -> Index:
 
 
 def _passage(patch: _Patch, path: Index) -> Strait:
-    """Width, length and sill of the passage along a path of cells, whose ends are ocean."""
-    along, inside = patch.vectors[path], path[1:-1]
-    lon, lat = positions(along)
-    step = arc(np.linalg.norm(np.diff(along, axis=0), axis=1))
-    width = 2.0 * patch.clearance[path]
+    """The passage along a path of cells, whose ends are ocean."""
+    lon, lat = positions(patch.vectors[path])
+    sill = float(patch.depth[path[1:-1]].min())
+    return strait_along(lon, lat, 2.0 * patch.clearance[path], sill)
+
+
+def strait_along(lon: Array, lat: Array, width: Array, sill_depth: float) -> Strait:
+    """A strait from its middle line.
+
+    Parameters
+    ----------
+    lon, lat : ndarray, shape (k,)
+        From the ocean before one mouth to that before the other, degrees; k ≥ 3.
+    width : ndarray, shape (k,)
+        Width at these places (m).
+    sill_depth : float
+        m.
+
+    Returns
+    -------
+    Strait
+    """
+    vectors = unit_vectors(lon, lat)
+    step = arc(np.linalg.norm(np.diff(vectors, axis=0), axis=1))
     narrowest = float(width[1:-1].min())
     inertia = narrowest * (step * 0.5 * (1.0 / width[1:] + 1.0 / width[:-1])).sum()
     return Strait(
@@ -220,5 +239,5 @@ def _passage(patch: _Patch, path: Index) -> Strait:
         length=float(step.sum()),
         width=narrowest,
         inertia_length=float(inertia),
-        sill_depth=float(patch.depth[inside].min()),
+        sill_depth=sill_depth,
     )

@@ -124,9 +124,8 @@ def adjoining_depth(network: Network, depths: Bathymetry, radius: Array) -> Arra
 
 def _greatest(values: Array) -> Array:
     """Largest known value along the last axis, NaN where nothing is known."""
-    return np.where(
-        np.isfinite(values).any(axis=-1), np.nanmax(np.nan_to_num(values, nan=-1e9), axis=-1), np.nan
-    )
+    largest = np.max(np.where(np.isfinite(values), values, -np.inf), axis=-1)
+    return np.where(np.isfinite(largest), largest, np.nan)
 
 
 def _mean(values: Array, weight: Array) -> Array:

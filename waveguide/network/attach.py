@@ -79,9 +79,22 @@ def point_box(lon: float, lat: float) -> Box:
 
 
 def closest_in_box(box: Box, lon: Array, lat: Array) -> tuple[Array, Array]:
-    """The place in a box (west, south, east, north; degrees) closest to each position."""
+    """The place in a box closest to each position, along its own parallel and meridian.
+
+    Parameters
+    ----------
+    box : (west, south, east, north)
+        Degrees; from west eastward to east, so across the date line where west > east. A box
+        of 360° goes round the globe.
+    lon, lat : ndarray of one shape, degrees
+
+    Returns
+    -------
+    lon, lat : ndarray of that shape, degrees
+    """
     west, south, east, north = box
-    half = ((east - west) % 360.0) / 2.0
+    span = (east - west) % 360.0
+    half = 180.0 if east != west and span == 0.0 else span / 2.0
     middle = west + half
     off = wrap_longitude(lon - middle)
     return wrap_longitude(middle + np.clip(off, -half, half)), np.clip(lat, south, north)
@@ -190,7 +203,7 @@ def _is_inshore(network: Network, node: Index, lon: Array, lat: Array) -> NDArra
     """Whether places lie on the landward side of the coast at their nodes."""
     here = unit_vectors(network.lon[node], network.lat[node])
     azimuth = np.radians(np.nan_to_num(network.offshore[node]))
-    lam, phi = np.radians(network.lon[node]), np.radians(network.lat[node])
+    lam = np.radians(network.lon[node])
     east = np.stack([-np.sin(lam), np.cos(lam), np.zeros_like(lam)], axis=1)
     north = np.cross(here, east)
     seaward = np.sin(azimuth)[:, None] * east + np.cos(azimuth)[:, None] * north

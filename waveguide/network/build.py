@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from waveguide.coast.charted import charted_straits
 from waveguide.coast.effective import CoastRule, EffectiveCoast, effective_coast
 from waveguide.coast.gaps import straits
 from waveguide.coast.raster import GlobalGrid, Mask
@@ -106,7 +107,9 @@ def build_network(
     equatorial_radius = float(np.sqrt(np.interp(0.0, rule.lat, phase_speed) / BETA_EQUATOR))
     lines = build_lines(coast, rule.spacing)
     report("straits")
-    through = strait_crossings(lines, straits(coast, depth), 2.0 * rule.spacing, rule.spacing)
+    found = straits(coast, depth)
+    found += charted_straits(coast, rule, found)
+    through = strait_crossings(lines, found, 2.0 * rule.spacing, rule.spacing)
     report("facing coasts and openings")
     speed = np.interp(lines.lat, rule.lat, phase_speed)
     radius = deformation_radius(speed, lines.lat)

@@ -74,7 +74,7 @@ def save_network(path: Path, network: Network, atlas: Atlas, attributes: dict[st
 
 def _write(file: object, name: str, dimensions: tuple[str, ...], values: NDArray[np.generic]
            ) -> None:
-    """Write one variable: positions in double precision, other reals in single, counts in 32 bit."""
+    """Write one variable: positions and lengths as double, other reals as single precision."""
     if values.dtype == bool:
         kind = "i1"
     elif np.issubdtype(values.dtype, np.integer):
