@@ -88,22 +88,24 @@ def _coast_nodes(lines: Lines) -> _CoastNodes:
 
 
 def strait_crossings(
-    lines: Lines, found: list[Strait], reach: float, spacing: float
+    lines: Lines, found: list[Strait], radius: Array, spacing: float
 ) -> Crossings:
     """Straits that lead somewhere the coast does not soon lead by itself.
 
-    Only ways whose ends lie far apart along the coast or on different rings are kept, and of
-    the many that a gap with many mouths offers, for each mouth the cheapest (narrow and long is
-    dear) to each ring: from there the coast itself leads to the others.
+    Only ways whose ends lie far apart along the coast or on different rings are kept (a wave
+    does not notice a detour shorter than its own R), and of the many that a gap with many mouths
+    offers, for each mouth the cheapest (narrow and long is dear) to each ring: from there the
+    coast itself leads to the others.
 
     Parameters
     ----------
     lines : Lines
     found : list of Strait
-    reach : float
-        A mouth farther than this from any node borders no followed coast (m).
+    radius : ndarray, shape (n,)
+        Deformation radius at every node (m).
     spacing : float
-        Distance between the places along the way through (m).
+        Distance between nodes, and between the places along the way through (m). A mouth farther
+        than twice this from any node borders no followed coast.
 
     Returns
     -------
@@ -114,8 +116,9 @@ def strait_crossings(
     ends = np.array([(s.lon[[0, -1]], s.lat[[0, -1]]) for s in found]).reshape(-1, 2, 2)
     distance, node = cKDTree(nodes.vectors).query(unit_vectors(ends[:, 0], ends[:, 1]))
     length = np.array([strait.length for strait in found])
-    near = (arc(distance) <= reach).all(axis=1)
-    far_apart = nodes.along_separation(node[:, 0], node[:, 1]) > DETOUR * length
+    near = (arc(distance) <= 2.0 * spacing).all(axis=1)
+    shortest = np.maximum(DETOUR * length, radius[node].min(axis=1))
+    far_apart = nodes.along_separation(node[:, 0], node[:, 1]) > shortest
     rows = np.nonzero(near & far_apart & (node[:, 0] != node[:, 1]))[0]
     cost = np.array([found[row].inertia_length / found[row].width for row in rows])
     rows = rows[_cheapest_ways(node[rows], nodes.line[node[rows]], cost)]
