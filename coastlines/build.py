@@ -35,6 +35,7 @@ from packages import (
     wheel_member,
 )
 
+from waveguide.coast.shoreline import winding_numbers
 from waveguide.geodesy import wrap_longitude
 from waveguide.ocean.seawater import (
     MINIMUM_N2,
@@ -196,6 +197,14 @@ def copy_licences() -> None:
 # --- bathymetry ---------------------------------------------------------------------------
 
 
+def antarctic_ice(lon: NDArray[np.float64], lat: NDArray[np.float64]) -> NDArray[np.bool_]:
+    """Grid points behind the Antarctic ice front (level 5), shape (lat, lon)."""
+    rings = [rounded(r) * COORDINATE_STEP for r in read_rings("intermediate") if r.level == 5]
+    start = np.concatenate([ring[:-1] for ring in rings])
+    end = np.concatenate([ring[1:] for ring in rings])
+    return np.asarray(winding_numbers(*start.T, *end.T, lon, lat) != 0)
+
+
 def fill_bathymetry(dataset: netCDF4.Dataset) -> None:
     """Elevation on a node-registered 0.1° grid, −180 ≤ lon < 180, south to north."""
     content = wheel_member(TOPOGRAPHY_WHEEL, TOPOGRAPHY_MEMBER)
@@ -203,10 +212,13 @@ def fill_bathymetry(dataset: netCDF4.Dataset) -> None:
         z = np.asarray(raw["z"][:], float)[:, :-1]  # the last column repeats the first
     if z.shape != (1801, 3600) or not np.isfinite(z).all():
         raise SystemExit("the topography is not the complete 0.1 degree grid expected")
+    lon, lat = np.arange(-1800, 1800) / 10.0, np.arange(-900, 901) / 10.0
     elevation = np.rint(np.minimum(np.roll(z, 1800, axis=1), LAND_CAP)).astype(np.int16)
-    add(dataset, "lat", ("lat",), np.arange(-900, 901) / 10.0,
+    # The bedrock under ice shelves is no sea floor: up to the ice front it is set to land.
+    elevation = np.where(antarctic_ice(lon, lat), np.maximum(elevation, 1), elevation)
+    add(dataset, "lat", ("lat",), lat,
         standard_name="latitude", units="degrees_north", axis="Y")
-    add(dataset, "lon", ("lon",), np.arange(-1800, 1800) / 10.0,
+    add(dataset, "lon", ("lon",), lon,
         standard_name="longitude", units="degrees_east", axis="X")
     add(dataset, "elevation", ("lat", "lon"), elevation, chunks=(181, 3600),
         standard_name="height_above_mean_sea_level", units="m", positive="up",

@@ -9,6 +9,7 @@ import numpy as np
 
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
+from waveguide.network.attach import distance_to_water
 from waveguide.network.packaged import family_of, packaged_network
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import used_files
@@ -157,20 +158,24 @@ def check_positions(scenario: Scenario) -> None:
 
 def _inland(name: str, lon: float, lat: float) -> str:
     """What is wrong with a position, or nothing."""
-    from waveguide.network.attach import distance_to_water
-
-    depths = packaged_bathymetry()
-    away = distance_to_water(lon, lat, depths, 4.0 * FAR_INLAND)
+    away = distance_to_water(lon, lat, packaged_bathymetry(), 4.0 * FAR_INLAND)
     if away <= FAR_INLAND:
         return ""
     far = f"{away / 1e3:.0f} km" if np.isfinite(away) else f"over {4 * FAR_INLAND / 1e3:.0f} km"
-    swapped = ""
-    if abs(lon) <= 90.0 and distance_to_water(lat, lon, depths, FAR_INLAND) < FAR_INLAND:
-        swapped = f" Are they swapped? [{lat:g}, {lon:g}] is at sea."
     return (
         f"{name}: [{lon:g}, {lat:g}] lies {far} from the sea; positions are [longitude, latitude] "
-        f"in degrees, at sea or on a coast, at most {FAR_INLAND / 1e3:.0f} km inland.{swapped}"
+        f"in degrees, at sea or on a coast, at most {FAR_INLAND / 1e3:.0f} km inland{_swapped((lon, lat))}"
     )
+
+
+def _swapped(position: tuple[float, float]) -> str:
+    """A question, where the position with longitude and latitude exchanged is at sea."""
+    lon, lat = position
+    if abs(lon) > 90.0:
+        return ""
+    if distance_to_water(lat, lon, packaged_bathymetry(), FAR_INLAND) > FAR_INLAND:
+        return ""
+    return f" (are longitude and latitude swapped? [{lat:g}, {lon:g}] is at sea)"
 
 
 def _require_an_answer(scenario: Scenario, answers: dict[int, list[Arrival]]) -> None:
@@ -178,7 +183,7 @@ def _require_an_answer(scenario: Scenario, answers: dict[int, list[Arrival]]) ->
     if any(a.status == REACHED for rows in answers.values() for a in rows):
         return
     problems = [
-        f"{target.name!r}, mode {mode}: {_reason(answer)}"
+        f"{target.name!r}, mode {mode}: {_reason(answer)}{_swapped(target.position)}"
         for mode, rows in answers.items()
         for target, answer in zip(scenario.targets, rows, strict=True)
     ]
@@ -196,7 +201,7 @@ def _reason(answer: Arrival) -> str:
             )
     if answer.status == "no route":
         return (
-            "no route: signals do not travel that way. They keep the coast on the right in the "
+            "no route: signals do not travel that way, or nothing is left of them. They keep the coast on the right in the "
             "northern hemisphere, on the left in the southern, and go eastward on the equator; "
             "see whether source and target should be exchanged"
         )

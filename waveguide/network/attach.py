@@ -51,7 +51,12 @@ class Ties:
     node : ndarray of int, shape (k,)
         Empty when the position is off the guide.
     distance : ndarray, shape (k,)
-        Distance to the node (m); 0 within a box.
+        Distance to the line of the guide at the node (m); 0 within a box.
+    along : ndarray, shape (k,)
+        How far the closest point of the line lies beyond the node in the direction of travel
+        (m, negative upstream).
+    foot_lon, foot_lat : ndarray, shape (k,)
+        That closest point, degrees.
     radii : ndarray, shape (k,)
         The same in deformation radii.
     factor : ndarray, shape (k,)
@@ -66,6 +71,9 @@ class Ties:
 
     node: Index
     distance: Array
+    along: Array
+    foot_lon: Array
+    foot_lat: Array
     radii: Array
     factor: Array
     inshore: NDArray[np.bool_]
@@ -120,9 +128,10 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
     -------
     Ties
     """
-    node, off_lon, off_lat, distance = _within_reach(network, speed, box)
+    node, off_lon, off_lat = _within_reach(network, speed, box)
     if not node.size:
         return _none(network, speed, box)
+    distance, along, foot_lon, foot_lat = _feet(network, node, off_lon, off_lat)
     inshore = _is_inshore(network, node, off_lon, off_lat) & (distance > 0.0)
     local = speed[node]
     radius = deformation_radius(local, network.lat[node])
@@ -140,15 +149,16 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
     keep &= factor >= FAINTEST_TIE * np.max(factor[keep], initial=0.0)
     nearest = int(np.argmin(distance))
     return Ties(
-        node[keep], distance[keep], radii[keep], factor[keep], inshore[keep],
+        node[keep], distance[keep], along[keep], foot_lon[keep], foot_lat[keep],
+        radii[keep], factor[keep], inshore[keep],
         float(distance[nearest]), float(radii[nearest]),
     )
 
 
 def _within_reach(
     network: Network, speed: Array, box: Box
-) -> tuple[Index, Array, Array, Array]:
-    """Nodes near a box that carry the mode, the place in the box nearest each, the distance (m)."""
+) -> tuple[Index, Array, Array]:
+    """Nodes near a box that carry the mode, and the place in the box nearest each."""
     lon, lat = closest_in_box(box, network.lon, network.lat)
     rough = arc(np.linalg.norm(
         unit_vectors(lon, lat) - unit_vectors(network.lon, network.lat), axis=1
@@ -157,30 +167,47 @@ def _within_reach(
     radius = deformation_radius(np.where(carried, speed, 0.0), network.lat)
     reach = np.maximum(FARTHEST_RADII * radius, WIDEST_SHELF) * 1.01
     node = np.nonzero(carried & (rough <= reach))[0]
-    distance = geodesic_length(network.lon[node], network.lat[node], lon[node], lat[node])
-    nearer = _distance_to_steps(network, node, unit_vectors(lon[node], lat[node]))
-    return node, lon[node], lat[node], np.minimum(distance, nearer)
+    return node, lon[node], lat[node]
 
 
-def _distance_to_steps(network: Network, node: Index, place: Array) -> Array:
-    """Distance (m) from a place to the line through each node and its neighbours.
+def _feet(
+    network: Network, node: Index, lon: Array, lat: Array
+) -> tuple[Array, Array, Array, Array]:
+    """Closest points to places on the line through each node and its neighbours.
 
     Nodes lie some 20 km apart, which may be more than R: what counts is the distance to the line.
+
+    Returns
+    -------
+    distance, along : ndarray, shape (n,)
+        m; `along` is positive downstream of the node.
+    lon, lat : ndarray, shape (n,)
+        The closest points, degrees.
     """
-    along = np.isin(network.kind, (StepKind.COAST, StepKind.EQUATOR, StepKind.STRAIT))
+    lines = np.isin(network.kind, (StepKind.COAST, StepKind.EQUATOR, StepKind.STRAIT))
     row = np.full(network.size, -1)
     row[node] = np.arange(node.size)
-    here = unit_vectors(network.lon[node], network.lat[node])
-    result = np.full(node.size, np.inf)
-    for start, end in ((network.tail, network.head), (network.head, network.tail)):
-        at = row[start[along]]
-        at, other = at[at >= 0], end[along][at >= 0]
-        step = unit_vectors(network.lon[other], network.lat[other]) - here[at]
-        off = place[at] - here[at]
-        share = np.clip((off * step).sum(axis=1) / (step**2).sum(axis=1), 0.0, 1.0)
-        away = arc(np.linalg.norm(off - share[:, None] * step, axis=1))
-        np.minimum.at(result, at, away)
-    return result
+    place, here = unit_vectors(lon, lat), unit_vectors(network.lon[node], network.lat[node])
+    foot, along = here.copy(), np.zeros(node.size)
+    nearest = np.linalg.norm(place - here, axis=1)
+    for start, end, sign in (
+        (network.tail[lines], network.head[lines], 1.0),
+        (network.head[lines], network.tail[lines], -1.0),
+    ):
+        step = np.nonzero(row[start] >= 0)[0]
+        at = row[start[step]]
+        span = unit_vectors(network.lon[end[step]], network.lat[end[step]]) - here[at]
+        share = ((place[at] - here[at]) * span).sum(axis=1) / (span**2).sum(axis=1)
+        # beyond half-way the other node is the closer one
+        reached = here[at] + np.clip(share, 0.0, 0.5)[:, None] * span
+        away = np.linalg.norm(place[at] - reached, axis=1)
+        for k in np.nonzero(away < nearest[at])[0]:
+            if away[k] < nearest[at[k]]:
+                nearest[at[k]], foot[at[k]] = away[k], reached[k]
+                along[at[k]] = sign
+    foot_lon, foot_lat = positions(foot)
+    along *= geodesic_length(foot_lon, foot_lat, network.lon[node], network.lat[node])
+    return geodesic_length(foot_lon, foot_lat, lon, lat), along, foot_lon, foot_lat
 
 
 def _none(network: Network, speed: Array, box: Box) -> Ties:
@@ -196,7 +223,10 @@ def _none(network: Network, speed: Array, box: Box) -> Ties:
             deformation_radius(speed[carried[at]], network.lat[carried[at]])
         )
     empty = np.zeros(0)
-    return Ties(np.zeros(0, np.int64), empty, empty, empty, np.zeros(0, bool), nearest, radii)
+    return Ties(
+        np.zeros(0, np.int64), empty, empty, empty, empty, empty, empty, np.zeros(0, bool),
+        nearest, radii,
+    )
 
 
 def _is_inshore(network: Network, node: Index, lon: Array, lat: Array) -> NDArray[np.bool_]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import pairwise
 
 import numpy as np
@@ -67,21 +67,70 @@ def legs_of_route(
         _leg(network, physics, route.steps[a:b])
         for a, b in _runs(network, route.steps)
     ]
+    if legs:
+        legs[0] = _from_foot(legs[0], source_ties, route.start, physics.slowness[first])
+        legs[-1] = _to_foot(legs[-1], target_ties, route.end, physics.slowness[last])
+    source_foot = _foot(source_ties, route.start)
+    target_foot = _foot(target_ties, route.end)
+    if not legs and source_foot != target_foot:
+        legs = [_short_leg(network, physics, last, source_ties, route, target_ties)]
     if source_ties.distance[route.start] > 0.0:
         legs.insert(0, _attachment(
-            source, _place(network, first), source_ties.distance[route.start],
+            source, source_foot, source_ties.distance[route.start],
             source_ties.factor[route.start],
         ))
     if target_ties.distance[route.end] > 0.0:
         legs.append(_attachment(
-            _place(network, last), target, target_ties.distance[route.end],
+            target_foot, target, target_ties.distance[route.end],
             target_ties.factor[route.end],
         ))
     return legs
 
 
-def _place(network: Network, node: int) -> Position:
-    return float(network.lon[node]), float(network.lat[node])
+def _foot(ties: Ties, at: int) -> Position:
+    return float(ties.foot_lon[at]), float(ties.foot_lat[at])
+
+
+def _from_foot(leg: Leg, ties: Ties, at: int, slowness: float) -> Leg:
+    """The leg from the foot of the source's tie: cut short of it, or led back to it."""
+    shift = float(ties.along[at])
+    keep = slice(1, None) if shift >= 0.0 else slice(None)  # downstream feet pass the node by
+    lon, lat = _foot(ties, at)
+    return replace(
+        leg,
+        lon=np.concatenate([[lon], leg.lon[keep]]),
+        lat=np.concatenate([[lat], leg.lat[keep]]),
+        distance=np.concatenate([[0.0], leg.distance[keep] - shift]),
+        time=np.concatenate([[0.0], leg.time[keep] - shift * slowness]),
+    )
+
+
+def _to_foot(leg: Leg, ties: Ties, at: int, slowness: float) -> Leg:
+    """The leg to the foot of the target's tie: cut short at it, or led on to it."""
+    shift = float(ties.along[at])
+    keep = slice(None, -1) if shift <= 0.0 else slice(None)
+    lon, lat = _foot(ties, at)
+    return replace(
+        leg,
+        lon=np.concatenate([leg.lon[keep], [lon]]),
+        lat=np.concatenate([leg.lat[keep], [lat]]),
+        distance=np.concatenate([leg.distance[keep], [leg.distance[-1] + shift]]),
+        time=np.concatenate([leg.time[keep], [leg.time[-1] + shift * slowness]]),
+    )
+
+
+def _short_leg(
+    network: Network, physics: StepPhysics, node: int, source: Ties, route: Route, target: Ties
+) -> Leg:
+    """The way between two feet next to the same node."""
+    length = max(float(target.along[route.end] - source.along[route.start]), 0.0)
+    (lon0, lat0), (lon1, lat1) = _foot(source, route.start), _foot(target, route.end)
+    kind = StepKind.EQUATOR if network.equatorial[node] else StepKind.COAST
+    return Leg(
+        kind=kind.label, lon=np.array([lon0, lon1]), lat=np.array([lat0, lat1]),
+        distance=np.array([0.0, length]), time=np.array([0.0, length]) * physics.slowness[node],
+        amplitude=1.0,
+    )
 
 
 def _runs(network: Network, steps: Index) -> list[tuple[int, int]]:

@@ -55,12 +55,15 @@ class StepPhysics:
         Travel time of the front along each step (s); infinite where the mode does not exist.
     loss : ndarray, shape (m,)
         Nepers of a, ≥ 0.
+    slowness : ndarray, shape (n,)
+        1/c at every node (s/m), NaN where the mode does not exist.
     potential : ndarray, shape (n,)
         P of every node (m^-1/2 s^-1/2); ratios of P are ratios of sea level at equal flux.
     """
 
     time: Array
     loss: Array
+    slowness: Array
     potential: Array
 
 
@@ -116,7 +119,7 @@ def step_physics(
     loss[other] += damping * time[other]
     loss += _junction_loss(network, speed, mode.matching, omega)
     loss += _gap_loss(network, mode, omega)
-    return StepPhysics(time, loss, _potential(network, mode, omega))
+    return StepPhysics(time, loss, 1.0 / mode.speed, _potential(network, mode, omega))
 
 
 def _floored_coriolis(lat: Array, speed: Array, matching: float) -> Array:

@@ -28,6 +28,10 @@ FAINTEST_SHARE = 1.0 / 3.0
 FAINTEST_ALTERNATIVE = 0.02
 """Routes with less than this share of the strongest one's amplitude are not listed."""
 
+NOTHING_LEFT = 1e-4
+"""A path on which the strongest signal falls below this amplitude ratio is no route: of a metre
+it leaves less than a tenth of a millimetre."""
+
 LATEST_ALTERNATIVE = 4.0
 """Nor are those that take this many times longer than the headline route."""
 
@@ -45,7 +49,7 @@ class Route:
     start, end : int
         Positions in the ties of the source and of the target.
     time : float
-        Travel time of the front (s).
+        Travel time of the front (s), from the foot of the source's tie to that of the target's.
     amplitude : float
         Sea level at the target over sea level at the source.
     """
@@ -84,11 +88,11 @@ class RouteFinder:
         Returns
         -------
         list of Route
-            Empty if there is none.
+            Empty if there is none that leaves anything.
         """
         family = [self._best(target, patience, -1) for patience in PATIENCE_DAYS]
         found = _distinct([route for route in family if route is not None])
-        if not found:
+        if not any(route.amplitude >= NOTHING_LEFT for route in found):
             return []
         found = _distinct(found + self._detours(target, _headline(found)))
         headline = _headline(found)
@@ -128,7 +132,8 @@ class RouteFinder:
         """Best route under a patience to any of the nodes a target is tied to."""
         reach = self._reach(patience, closed)
         loss = -np.log(np.maximum(target.factor, 1e-300))
-        cost = reach.cost[target.node] + patience * SECONDS_PER_DAY * loss
+        beyond = self._physics.slowness[target.node] * target.along
+        cost = reach.cost[target.node] + beyond + patience * SECONDS_PER_DAY * loss
         if not np.isfinite(cost).any():
             return None
         end = int(np.argmin(cost))
@@ -144,7 +149,10 @@ class RouteFinder:
         ratio = physics.potential[last] / physics.potential[first]
         kept = float(np.exp(-physics.loss[steps].sum()))
         amplitude = self._source.factor[start] * target.factor[end] * ratio * kept
-        return Route(steps, start, end, float(physics.time[steps].sum()), float(amplitude))
+        beyond = physics.slowness[last] * target.along[end]
+        before = physics.slowness[first] * self._source.along[start]
+        time = max(float(physics.time[steps].sum() + beyond - before), 0.0)
+        return Route(steps, start, end, time, float(amplitude))
 
 
 def _headline(routes: list[Route]) -> Route:

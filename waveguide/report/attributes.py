@@ -37,6 +37,7 @@ def arrivals_attributes(scenario: Scenario, data_sha256: Mapping[str, str]) -> d
     """
     event = scenario.event
     lon, lat = event.centre
+    box = {} if event.box is None else {"event_box_west_south_east_north": list(event.box)}
     return {
         "Conventions": "CF-1.11",
         "title": scenario.title,
@@ -54,4 +55,5 @@ def arrivals_attributes(scenario: Scenario, data_sha256: Mapping[str, str]) -> d
         "history": f"waveguide arrivals {scenario.name}",
         "data_sha256": "; ".join(f"{name} {digest}" for name, digest in data_sha256.items()),
         "caution": CAUTION,
+        **box,
     }

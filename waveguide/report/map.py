@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from waveguide.geodesy import wrap_longitude
 from waveguide.report.map_labels import LabelPlacer
 from waveguide.report.map_view import Bounds, View, choose_view, draw_graticule, draw_land, extent
 from waveguide.report.routes import leg_line, legs_of, split_at_date_line, vertices_of
@@ -187,6 +188,7 @@ def _draw_places(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlace
     for chosen, face in ((reached, "black"), (~reached, "white")):
         axes.scatter(tx[chosen], ty[chosen], s=22, c=face, edgecolors="black", zorder=6)
     axes.scatter([sx], [sy], s=150, marker="*", c="#ffd23f", edgecolors="black", zorder=7)
+    _draw_box(axes, dataset, view)
     labels.keep_clear(float(sx), float(sy), 7.0)
     for x, y in zip(tx, ty, strict=True):
         labels.keep_clear(float(x), float(y), 3.0)
@@ -194,6 +196,20 @@ def _draw_places(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlace
     names += [plain(name, 28) for name in dataset["target"].values]
     for name, x, y in zip(names, np.append(sx, tx), np.append(sy, ty), strict=True):
         labels.place(name, float(x), float(y), (5, 12, 22, 36, 52, 70), True, fontsize=8, zorder=8)
+
+
+def _draw_box(axes: Axes, dataset: xr.Dataset, view: View) -> None:
+    """Outline of an event that is a box."""
+    box = dataset.attrs.get("event_box_west_south_east_north")
+    if box is None:
+        return
+    west, south, east, north = box
+    share = np.linspace(0.0, 1.0, 50)
+    along = np.concatenate([share, 0 * share + 1, share[::-1], 0 * share])
+    lon = west + ((east - west) % 360.0) * along
+    lat = south + (north - south) * np.concatenate([0 * share, share, 0 * share + 1, share[::-1]])
+    x, y = view.place(wrap_longitude(lon), lat)
+    axes.plot(x, y, color="#8a6d00", lw=1.0, ls=(0, (4, 2)), zorder=6)
 
 
 def _draw_ticks(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer) -> None:
