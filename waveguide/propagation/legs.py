@@ -32,6 +32,9 @@ class Leg:
         Distance (m) and time of the front (s) at the vertices, from the start of the leg.
     amplitude : float
         Sea level at the end over that at the start.
+    step_count : int
+        Steps of the network it is made of; vertices are these steps' nodes and, at the ends of a
+        route, the feet of the ties.
     """
 
     kind: str
@@ -40,6 +43,7 @@ class Leg:
     distance: Array
     time: Array
     amplitude: float
+    step_count: int
 
 
 def legs_of_route(
@@ -130,6 +134,7 @@ def _short_leg(
         kind=kind.label, lon=np.array([lon0, lon1]), lat=np.array([lat0, lat1]),
         distance=np.array([0.0, length]), time=np.array([0.0, length]) * physics.slowness[node],
         amplitude=1.0,
+        step_count=0,
     )
 
 
@@ -157,6 +162,7 @@ def _leg(network: Network, physics: StepPhysics, steps: Index) -> Leg:
         distance=np.concatenate([[0.0], np.cumsum(network.length[steps])]),
         time=np.concatenate([[0.0], np.cumsum(physics.time[steps])]),
         amplitude=float(ratio * np.exp(-physics.loss[steps].sum())),
+        step_count=int(steps.size),
     )
 
 
@@ -169,4 +175,5 @@ def _attachment(start: Position, end: Position, distance: float, factor: float) 
         distance=np.array([0.0, float(distance)]),
         time=np.zeros(2),
         amplitude=float(factor),
+        step_count=0,
     )

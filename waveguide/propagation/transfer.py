@@ -127,7 +127,7 @@ def paths_of_arrival(arrival: Arrival) -> list[Path]:
     """
     paths = []
     for route, legs in zip(arrival.routes, arrival.legs, strict=True):
-        lengths = [leg.lon.size - 1 for leg in legs if leg.kind != "attachment"]
+        lengths = [leg.step_count for leg in legs if leg.step_count]
         paths.append(Path(
             route.steps,
             np.cumsum(lengths, dtype=np.int64),
