@@ -164,7 +164,8 @@ def _inland(name: str, lon: float, lat: float) -> str:
     far = f"{away / 1e3:.0f} km" if np.isfinite(away) else f"over {4 * FAR_INLAND / 1e3:.0f} km"
     return (
         f"{name}: [{lon:g}, {lat:g}] lies {far} from the sea; positions are [longitude, latitude] "
-        f"in degrees, at sea or on a coast, at most {FAR_INLAND / 1e3:.0f} km inland{_swapped((lon, lat))}"
+        f"in degrees, at sea or on a coast, at most {FAR_INLAND / 1e3:.0f} km inland"
+        f"{_swapped((lon, lat))}"
     )
 
 
@@ -201,8 +202,9 @@ def _reason(answer: Arrival) -> str:
             )
     if answer.status == "no route":
         return (
-            "no route: signals do not travel that way, or nothing is left of them. They keep the coast on the right in the "
-            "northern hemisphere, on the left in the southern, and go eastward on the equator; "
+            "no route: signals do not travel that way, or nothing is left of them. They keep the "
+            "coast on the right in the northern hemisphere, on the left in the southern, and go "
+            "eastward on the equator; "
             "see whether source and target should be exchanged"
         )
     return answer.status
