@@ -67,6 +67,9 @@ class _Patch:
     shores: tuple[Index, Index]
 
 
+WALLS_ABOUT = 256
+"""Wall cells about a place that are searched for one on either side."""
+
 _NEIGHBOURS = ((0, 1), (1, 0), (1, 1), (1, -1))
 
 
@@ -90,7 +93,11 @@ def straits(coast: EffectiveCoast, depth: NDArray[np.floating]) -> list[Strait]:
     walls = cKDTree(grid.vectors(~coast.passable & _near(gap)))
     found: list[Strait] = []
     for patch in _patches(coast, depth, labels, count, walls):
-        found.extend(_passages(patch))
+        for path in _passages(patch):
+            lon, lat = positions(patch.vectors[path])
+            width = _widths(walls, patch.vectors[path], grid.spacing)
+            sill = float(patch.depth[path[1:-1]].min())
+            found.append(strait_along(lon, lat, width, sill))
     return found
 
 
@@ -174,8 +181,20 @@ def _mouths(patch: _Patch) -> list[Index]:
     return [np.nonzero(patch.ocean & (group == g))[0] for g in np.unique(group[patch.ocean])]
 
 
-def _passages(patch: _Patch) -> list[Strait]:
-    """Passages between the mouths of one gap along its middle, where the water is widest."""
+def _widths(walls: cKDTree, vectors: Array, cell: float) -> Array:
+    """Water between the nearest wall and the nearest one on the other side of each place (m).
+
+    Walls are known by the centres of their cells, so half a cell is taken off at either side.
+    """
+    distance, index = walls.query(vectors, k=range(1, min(WALLS_ABOUT, walls.n) + 1))
+    towards = walls.data[index] - vectors[:, None, :]
+    opposite = (towards * towards[:, :1]).sum(axis=2) < 0.0
+    far = distance[np.arange(len(vectors)), np.argmax(opposite, axis=1)]
+    return np.maximum(arc(distance[:, 0]) + arc(far) - cell, 0.5 * cell)
+
+
+def _passages(patch: _Patch) -> list[Index]:
+    """Paths between the mouths of one gap along its middle, their ends in the ocean."""
     mouths = _mouths(patch)
     if len(mouths) < 2:
         return []
@@ -194,7 +213,7 @@ def _passages(patch: _Patch) -> list[Strait]:
             path = _path(before, int(end[np.argmin(reach[end])]))
             # What leads past a third mouth is two passages.
             if not patch.ocean[path[1:-1]].any():
-                passages.append(_passage(patch, path))
+                passages.append(path)
     return passages
 
 
@@ -204,13 +223,6 @@ def _path(before: NDArray[np.int32], last: int) -> Index:
     while before[path[-1]] >= 0:
         path.append(int(before[path[-1]]))
     return np.array(path[::-1])
-
-
-def _passage(patch: _Patch, path: Index) -> Strait:
-    """The passage along a path of cells, whose ends are ocean."""
-    lon, lat = positions(patch.vectors[path])
-    sill = float(patch.depth[path[1:-1]].min())
-    return strait_along(lon, lat, 2.0 * patch.clearance[path], sill)
 
 
 def strait_along(lon: Array, lat: Array, width: Array, sill_depth: float) -> Strait:
