@@ -1,0 +1,1 @@
+"""Theory against records: series, lags with intervals, verdicts, moorings, model output."""
