@@ -193,6 +193,11 @@ def test_zonal_coast_without_cancellation(end: float) -> None:
     assert segment_exponent(0.0, C, 5e-5, end, 1e6).real == pytest.approx(0.0, abs=1e-12)
 
 
+def test_segment_of_no_length_changes_nothing() -> None:
+    exponent = segment_exponent([0.0, 2e-6], C, [5e-5, 4e-5], [5e-5, 4e-5], 0.0)
+    assert_allclose(exponent, 0.0, atol=1e-12)
+
+
 def test_mean_flow_shifts_the_speed() -> None:
     exponent = segment_exponent(2e-6, C, 5e-5, 5e-5, 1e6, mean_flow=[0.5, -0.5])
     assert_allclose(exponent.imag, 2e-6 * 1e6 / np.array([3.0, 2.0]), rtol=1e-12)

@@ -352,7 +352,7 @@ def _poleward_exponent(
     """K of `segment_exponent`, with the smaller and the larger |f|."""
     first, last = np.abs(np.asarray(f_start, float)), np.abs(np.asarray(f_end, float))
     f_lo, f_hi = np.minimum(first, last), np.maximum(first, last)
-    distance = np.asarray(length, float)
+    distance = np.maximum(np.asarray(length, float), 1e-9)  # m; a segment may have no length
     a = (f_hi - f_lo) / (2.0 * distance)
     root_lo, root_hi = (np.sqrt((kappa * f) ** 2 - a**2 + 0j) for f in (f_lo, f_hi))
     total = root_lo + root_hi
