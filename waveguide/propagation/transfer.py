@@ -55,13 +55,16 @@ class Path:
     steps : ndarray of int, shape (k,)
         In order of travel.
     leg_ends : ndarray of int, shape (legs,)
-        Number of steps up to the end of each leg along the guide; the last is k.
+        Number of steps up to the end of each leg along the guide; the last is k. A leg between
+        two places next to one node has no steps.
     start : int
         Node where the path begins.
     end : int
         Position in the target's ties of the node where it ends.
     source_factor, target_factor : float
         Shares of amplitude at the attachments.
+    source_along, target_along : float
+        How far beyond the first and the last node the path begins and ends (m).
     """
 
     steps: Index
@@ -70,6 +73,8 @@ class Path:
     end: int
     source_factor: float
     target_factor: float
+    source_along: float = 0.0
+    target_along: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -113,6 +118,14 @@ class LegBudget(NamedTuple):
     taken: Array
 
 
+class _Times(NamedTuple):
+    """Travel time of the front along the steps, and what both ends of a path add to it (s)."""
+
+    steps: float
+    before: float
+    after: float
+
+
 def paths_of_arrival(arrival: Arrival) -> list[Path]:
     """The routes of an arrival, in its order.
 
@@ -127,14 +140,16 @@ def paths_of_arrival(arrival: Arrival) -> list[Path]:
     """
     paths = []
     for route, legs in zip(arrival.routes, arrival.legs, strict=True):
-        lengths = [leg.step_count for leg in legs if leg.step_count]
+        counts = [leg.step_count for leg in legs if leg.kind != "attachment"]
         paths.append(Path(
             route.steps,
-            np.cumsum(lengths, dtype=np.int64),
+            np.cumsum(counts, dtype=np.int64),
             int(arrival.source.node[route.start]),
             route.end,
             float(arrival.source.factor[route.start]),
             float(arrival.target.factor[route.end]),
+            float(arrival.source.along[route.start]),
+            float(arrival.target.along[route.end]),
         ))
     return paths
 
@@ -206,8 +221,8 @@ def route_transfers(
         legs = slice(leg, leg + path.leg_ends.size)
         here = at_nodes[leg + row : legs.stop + row + 1]  # a path has one node more than legs
         leg = legs.stop
-        front = _front_time(network, mode, path, conditions)
-        transfers.append(_assembled(path, omega, lag[legs], nepers[:, legs], here, front))
+        time = _times(network, mode, path, conditions)
+        transfers.append(_assembled(path, omega, lag[legs], nepers[:, legs], here, time))
     return transfers
 
 
@@ -235,7 +250,8 @@ def leg_budget(transfer: RouteTransfer, weight: Array) -> LegBudget:
 
 def _leg_nodes(network: Network, path: Path) -> Index:
     """Start of a path and the ends of its legs."""
-    return np.concatenate([[path.start], network.head[path.steps[path.leg_ends - 1]]])
+    nodes = np.concatenate([[path.start], network.head[path.steps]])
+    return np.concatenate([[path.start], nodes[path.leg_ends]])
 
 
 def _leg_sums(
@@ -253,19 +269,23 @@ def _leg_sums(
     return legs @ response.lag, nepers, potential(network, mode, nodes, table)
 
 
+def _times(network: Network, mode: ModeAtNodes, path: Path, conditions: Conditions) -> _Times:
+    speed = step_speeds(network, mode, path.steps, conditions)[1]
+    steps = float((network.length[path.steps] / speed).sum())
+    last = int(network.head[path.steps[-1]]) if path.steps.size else path.start
+    before = -path.source_along / float(mode.speed[path.start])
+    after = path.target_along / float(mode.speed[last])
+    return _Times(steps, before, max(after, -steps - before))
+
+
 def _assembled(
-    path: Path, omega: Array, lag: Array, nepers: Array, at_nodes: Array, front: float
+    path: Path, omega: Array, lag: Array, nepers: Array, at_nodes: Array, time: _Times
 ) -> RouteTransfer:
     """A transfer function from the sums over its legs."""
     exponent = np.cumsum(1j * lag - nepers.sum(axis=0), axis=0)
     exponent = np.concatenate([np.zeros((1, omega.size)), exponent])
+    exponent[1:] += 1j * omega * time.before
+    exponent[-1] += 1j * omega * time.after
     response = path.source_factor * at_nodes / at_nodes[0] * np.exp(exponent)
+    front = time.steps + time.before + time.after
     return RouteTransfer(omega, path.target_factor * response[-1], response[1:], nepers, front)
-
-
-def _front_time(
-    network: Network, mode: ModeAtNodes, path: Path, conditions: Conditions
-) -> float:
-    """Travel time of the front (s)."""
-    speed = step_speeds(network, mode, path.steps, conditions)[1]
-    return float((network.length[path.steps] / speed).sum())
