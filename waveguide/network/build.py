@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
@@ -171,29 +171,48 @@ def _ways(lines: Lines, crossings: tuple[Crossings, ...], passing: list[Index]) 
     What comes out of a gap goes on along the coast beyond its mouth, so it lands past the step
     that passes the mouth and not before it.
     """
-    lon, lat, line, tail, head, kind, gap = [], [], [], [], [], [], []
+    none = np.zeros(0, dtype=np.int64)
+    parts = [_Ways(np.zeros(0), np.zeros(0), none, none, none, none, none)]
     first, number, row = lines.lon.size, int(lines.line.max()) + 1, 0
     for crossing, passed in zip(crossings, passing, strict=True):
         half = crossing.tail.size // 2
         beyond = np.where(passed >= 0, lines.head[passed], crossing.tail)
         landing = np.roll(beyond, half)
         for there in range(half):
-            way_lon, way_lat = crossing.way[there]
-            inner = np.arange(first, first + way_lon.size)
-            lon.append(way_lon)
-            lat.append(way_lat)
-            line.append(np.full(way_lon.size, number))
-            number += 1 if way_lon.size else 0
-            first += way_lon.size
-            for at, nodes in ((there, inner), (there + half, inner[::-1])):
-                chain = np.concatenate([[crossing.tail[at]], nodes, [landing[at]]])
-                tail.append(chain[:-1])
-                head.append(chain[1:])
-                kind.append(np.full(nodes.size + 1, crossing.kind[at]))
-                gap.append(np.where(np.arange(nodes.size + 1) == 0, row + at, -1))
+            parts.append(_way(crossing, there, landing, first, number, row))
+            first += parts[-1].lon.size
+            number += int(parts[-1].lon.size > 0)
         row += crossing.tail.size
-    whole = [np.concatenate(part).astype(np.int64) for part in (line, tail, head, kind, gap)]
-    return _Ways(np.concatenate(lon), np.concatenate(lat), *whole)
+    return _Ways(*(
+        np.concatenate([getattr(part, field.name) for part in parts]) for field in fields(_Ways)
+    ))
+
+
+def _way(
+    crossing: Crossings, there: int, landing: Index, first: int, number: int, row: int
+) -> _Ways:
+    """Nodes within one crossing, and its steps there and back.
+
+    `there` is its row in the crossings, `first` the number of its first node, `number` that of
+    its line, `row` the row of the crossings' first gap in the gap table.
+    """
+    lon, lat = crossing.way[there]
+    inner = np.arange(first, first + lon.size)
+    back = there + crossing.tail.size // 2
+    chains = [
+        np.concatenate([[crossing.tail[at]], nodes, [landing[at]]])
+        for at, nodes in ((there, inner), (back, inner[::-1]))
+    ]
+    no_gap = np.full(lon.size, -1)
+    return _Ways(
+        lon=lon,
+        lat=lat,
+        line=np.full(lon.size, number),
+        tail=np.concatenate([chain[:-1] for chain in chains]),
+        head=np.concatenate([chain[1:] for chain in chains]),
+        kind=np.repeat(crossing.kind[[there, back]], lon.size + 1),
+        gap=np.concatenate([[row + there], no_gap, [row + back], no_gap]),
+    )
 
 
 def _passing_steps(lines: Lines, kind: Index, gap_tails: list[Index]) -> list[Index]:
