@@ -35,10 +35,12 @@ def test_one_source_to_every_node_warm(benchmark):
     network, atlas = packaged_network("baroclinic")
     searcher = Searcher.of(network)
     physics = step_physics(network, atlas_mode(atlas, 1), 2.0 * np.pi / (60.0 * 86400.0))
-    origin = Origin(np.array([network.size // 2]), np.zeros(1))
+    start = np.argmin(np.hypot(network.lon - 126.7, network.lat - 8.6))  # off Mindanao
+    origin = Origin(np.array([start]), np.zeros(1))
     reach = benchmark(searcher.reach, physics.time, origin)
     benchmark.extra_info["nodes"] = network.size
-    assert np.isfinite(reach.cost).sum() > network.size / 4
+    benchmark.extra_info["reached"] = int(np.isfinite(reach.cost).sum())
+    assert np.isfinite(reach.cost).sum() > network.size / 2
 
 
 @pytest.mark.slow
