@@ -29,9 +29,10 @@ from waveguide.ocean.bathymetry import Bathymetry
 
 Array = NDArray[np.float64]
 
-LEAST_REACH, FARTHEST_REACH, REACH_RADII = 200e3, 1000e3, 4.0
+LEAST_REACH, FARTHEST_REACH, REACH_RADII = 300e3, 1000e3, 4.0
 """Sections go four deformation radii seaward of the guide, but no less and no more than this (m).
-At four radii a wave trapped within R has 2 % of its amplitude left."""
+At four radii a wave trapped within R has 2 % of its amplitude left; 300 km reaches deep water off
+the widest slopes and borderlands."""
 
 LEAST_DECAY = 50e3
 """Depths count in the monotonic fit by e^(−x/R), with R no less than the width of a slope (m)."""
