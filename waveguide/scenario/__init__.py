@@ -5,17 +5,36 @@ This package is the only place that knows the syntax of the file.
 
 from __future__ import annotations
 
-from waveguide.scenario.model import Event, Ocean, Output, Scenario, Target, Waves
-from waveguide.scenario.reading import find_scenario, read_scenario, shipped_scenarios
+from waveguide.scenario.model import (
+    Comparison,
+    Event,
+    Ocean,
+    Output,
+    Scenario,
+    Target,
+    Waves,
+)
+from waveguide.scenario.observed import Compare, Lookout, Observation
+from waveguide.scenario.reading import (
+    find_scenario,
+    read_comparison,
+    read_scenario,
+    shipped_scenarios,
+)
 
 __all__ = [
+    "Compare",
+    "Comparison",
     "Event",
+    "Lookout",
+    "Observation",
     "Ocean",
     "Output",
     "Scenario",
     "Target",
     "Waves",
     "find_scenario",
+    "read_comparison",
     "read_scenario",
     "shipped_scenarios",
 ]

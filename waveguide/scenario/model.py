@@ -27,6 +27,7 @@ from waveguide.scenario.fields import (
     distinct_modes,
     not_empty,
 )
+from waveguide.scenario.observed import Compare, Lookout, Observation, check_observations
 
 
 class Event(Table):
@@ -164,6 +165,9 @@ class Scenario(Table):
     waves : Waves
     ocean : Ocean
     output : Output
+    observations : tuple of Observation
+    compare : Compare or None
+    lookout : Lookout
     """
 
     name: Name = "scenario"
@@ -174,6 +178,14 @@ class Scenario(Table):
     waves: Waves
     ocean: Ocean = Ocean()
     output: Output = Output()
+    observations: tuple[Observation, ...] = ()
+    compare: Compare | None = None
+    lookout: Lookout = Lookout()
+
+    @model_validator(mode="after")
+    def _sound_observations(self) -> Scenario:
+        check_observations(self.observations, self.compare)
+        return self
 
     @model_validator(mode="after")
     def _distinct_names(self) -> Scenario:
@@ -196,4 +208,35 @@ class Scenario(Table):
             raise ValueError(
                 f"phase_speed_m_s = {speed:g} is faster than any baroclinic mode; is it in m/s?"
             )
+        return self
+
+
+class Comparison(Table):
+    """A scenario as `compare` reads it: records come first, and an event need not be there.
+
+    Attributes
+    ----------
+    name, title, description, waves, ocean, output, targets, lookout
+        As in a `Scenario`; targets are not looked at.
+    event : Event or None
+        Its arrival is looked for in every record.
+    observations : tuple of Observation
+    compare : Compare
+    """
+
+    name: Name = "comparison"
+    title: Name
+    description: Prose = ""
+    event: Event | None = None
+    targets: tuple[Target, ...] = ()
+    waves: Waves
+    ocean: Ocean = Ocean()
+    output: Output = Output()
+    observations: Annotated[tuple[Observation, ...], AfterValidator(not_empty)]
+    compare: Compare
+    lookout: Lookout = Lookout()
+
+    @model_validator(mode="after")
+    def _sound_observations(self) -> Comparison:
+        check_observations(self.observations, self.compare)
         return self

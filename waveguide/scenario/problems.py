@@ -11,6 +11,7 @@ from difflib import get_close_matches
 from typing import TYPE_CHECKING, Any
 
 from waveguide.scenario.model import Event, Ocean, Output, Scenario, Target, Waves
+from waveguide.scenario.observed import Compare, Lookout, Observation
 
 if TYPE_CHECKING:
     from pydantic_core import ErrorDetails
@@ -22,6 +23,9 @@ _KEYS: dict[str, tuple[str, ...]] = {
     "waves": tuple(Waves.model_fields),
     "ocean": tuple(Ocean.model_fields),
     "output": tuple(Output.model_fields),
+    "observations": tuple(Observation.model_fields),
+    "compare": tuple(Compare.model_fields),
+    "lookout": tuple(Lookout.model_fields),
 }
 
 _WAY_OUT = {
@@ -48,7 +52,22 @@ _WAY_OUT = {
     "ocean.phase_speed_m_s": "write a speed in m/s, as in phase_speed_m_s = 2.5",
     "output": "write an [output] table, or leave it out to get every format",
     "output.formats": 'write a list of "csv", "netcdf", "geojson" and "map"',
+    "observations": "write an [[observations]] table for each record",
+    "observations.name": 'write a name of 1 to 120 characters, as in name = "Callao"',
+    "observations.position": "write position = [longitude, latitude], in degrees east and north",
+    "observations.file": 'name a CSV or NetCDF file, as in file = "gauges.csv"',
+    "observations.units": 'write the units, as in units = "mm"',
+    "observations.depth_m": "write the depth in metres, positive down, as in depth_m = 150",
+    "observations.zone": 'write zone = "UTC" after converting the times, or leave it out',
+    "compare": "write a [compare] table with band_days",
+    "compare.band_days": "write the shortest and longest period, as in band_days = [15, 60]",
+    "compare.pairs": 'write pairs of observations, as in pairs = [["Callao", "Arica"]]',
+    "compare.longest_lag_days": "write days, as in longest_lag_days = 30, or leave it out",
+    "lookout": "write a [lookout] table, or leave it out to look at sea level",
 }
+
+_LISTS = ("targets", "observations")
+"""Tables that may come many times."""
 
 _RULES = {
     "missing": "it is missing",
@@ -109,7 +128,7 @@ def shown(value: object) -> str:
 def _heading(table: str) -> str:
     if not table:
         return "at the top of the file"
-    return "in a [[targets]] table" if table == "targets" else f"in [{table}]"
+    return f"in a [[{table}]] table" if table in _LISTS else f"in [{table}]"
 
 
 def _line(error: ErrorDetails, target_labels: Sequence[str]) -> str:
@@ -129,6 +148,8 @@ def _subject(loc: tuple[int | str, ...], words: list[str], target_labels: Sequen
     """The key as a person would point at it: ``event.start``, ``gauges.csv row 3 position``."""
     if len(loc) > 1 and loc[0] == "targets" and isinstance(loc[1], int):
         return " ".join([target_labels[loc[1]], *words[1:]])
+    if len(loc) > 1 and loc[0] == "observations" and isinstance(loc[1], int):
+        return " ".join([f"observation {loc[1] + 1}", *words[1:]])
     return ".".join(words)
 
 

@@ -6,14 +6,16 @@ import os
 import tomllib
 from difflib import get_close_matches
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 from pydantic import ValidationError
 
 from waveguide.errors import InputError
-from waveguide.scenario.model import Scenario
+from waveguide.scenario.model import Comparison, Scenario
 from waveguide.scenario.problems import problem_lines, shown
 from waveguide.scenario.target_table import TargetTable, read_target_table
+
+Model = TypeVar("Model", Scenario, Comparison)
 
 
 def read_scenario(scenario: str | Path) -> Scenario:
@@ -33,13 +35,38 @@ def read_scenario(scenario: str | Path) -> Scenario:
     InputError
         With every problem of the file and of its targets file at once.
     """
+    return _read(scenario, Scenario)
+
+
+def read_comparison(scenario: str | Path) -> Comparison:
+    """Read and check a scenario file with records, in which an event and targets may be missing.
+
+    Parameters
+    ----------
+    scenario : str or Path
+        The path of a TOML file, or the name of a shipped scenario.
+
+    Returns
+    -------
+    Comparison
+
+    Raises
+    ------
+    InputError
+        With every problem of the file at once.
+    """
+    return _read(scenario, Comparison)
+
+
+def _read(scenario: str | Path, model: type[Model]) -> Model:
+    """The file as one of the two models, or all its problems."""
     path = find_scenario(scenario)
     document = _parse(path)
     listed = _listed_targets(document, path.parent)
     labels = _join_targets(document, listed)
     document.setdefault("name", path.stem)
     try:
-        result = Scenario.model_validate(document, context={"folder": path.parent})
+        result = model.model_validate(document, context={"folder": path.parent})
         problems = listed.problems
     except ValidationError as error:
         errors = error.errors(include_url=False)
