@@ -101,8 +101,8 @@ def closest_in_box(box: Box, lon: Array, lat: Array) -> tuple[Array, Array]:
     lon, lat : ndarray of that shape, degrees
     """
     west, south, east, north = box
-    span = (east - west) % 360.0
-    half = 180.0 if east != west and span == 0.0 else span / 2.0
+    # a hair (1e-9°) wider, or two equal sides that rounding has swapped would span the globe
+    half = 180.0 if abs(east - west) > 359.999999999 else ((east - west + 1e-9) % 360.0) / 2.0
     middle = west + half
     off = wrap_longitude(lon - middle)
     return wrap_longitude(middle + np.clip(off, -half, half)), np.clip(lat, south, north)
@@ -142,11 +142,13 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
         np.where(inshore, 0.0, radii),
     )
     keep = np.where(inshore, distance <= WIDEST_SHELF, radii <= FARTHEST_RADII)
-    keep &= _closest_on_line(network, node, distance)
+    keep &= _closest_on_line(network, node, distance, _rough_distance(network, box))
     keep &= _mostly_water(network, node, off_lon, off_lat, distance, depths)
     keep &= _not_round_a_corner(network, node, distance)
+    if not keep.any():
+        return _none(network, speed, box)
     factor = np.exp(-offshore_loss)
-    keep &= factor >= FAINTEST_TIE * np.max(factor[keep], initial=0.0)
+    keep &= factor >= FAINTEST_TIE * np.max(factor[keep])
     nearest = int(np.argmin(distance))
     return Ties(
         node[keep], distance[keep], along[keep], foot_lon[keep], foot_lat[keep],
@@ -155,14 +157,20 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
     )
 
 
+def _rough_distance(network: Network, box: Box) -> Array:
+    """Distance on the sphere from every node to a box (m)."""
+    lon, lat = closest_in_box(box, network.lon, network.lat)
+    return arc(np.linalg.norm(
+        unit_vectors(lon, lat) - unit_vectors(network.lon, network.lat), axis=1
+    ))
+
+
 def _within_reach(
     network: Network, speed: Array, box: Box
 ) -> tuple[Index, Array, Array]:
     """Nodes near a box that carry the mode, and the place in the box nearest each."""
     lon, lat = closest_in_box(box, network.lon, network.lat)
-    rough = arc(np.linalg.norm(
-        unit_vectors(lon, lat) - unit_vectors(network.lon, network.lat), axis=1
-    ))
+    rough = _rough_distance(network, box)
     carried = np.isfinite(speed)
     radius = deformation_radius(np.where(carried, speed, 0.0), network.lat)
     reach = np.maximum(FARTHEST_RADII * radius, WIDEST_SHELF) * 1.01
@@ -241,9 +249,14 @@ def _is_inshore(network: Network, node: Index, lon: Array, lat: Array) -> NDArra
     return np.asarray(((seaward * towards).sum(axis=1) < 0.0) & np.isfinite(network.offshore[node]))
 
 
-def _closest_on_line(network: Network, node: Index, distance: Array) -> NDArray[np.bool_]:
-    """Nodes no farther than both neighbours on their line, or within the box itself."""
-    away = np.full(network.size, np.inf)
+def _closest_on_line(
+    network: Network, node: Index, distance: Array, rough: Array
+) -> NDArray[np.bool_]:
+    """Nodes no farther than both neighbours on their line, or within the box itself.
+
+    A neighbour may be beyond its own reach and yet nearer, so all of them are compared.
+    """
+    away = rough.copy()
     away[node] = distance
     along = np.isin(network.kind, (StepKind.COAST, StepKind.EQUATOR, StepKind.STRAIT))
     tail, head = network.tail[along], network.head[along]
