@@ -1,0 +1,1 @@
+"""Wind over the guide and the sea level it drives."""
