@@ -67,7 +67,7 @@ class _Patch:
     shores: tuple[Index, Index]
 
 
-WALLS_ABOUT = 256
+WALLS_ABOUT = 64
 """Wall cells about a place that are searched for one on either side."""
 
 _NEIGHBOURS = ((0, 1), (1, 0), (1, 1), (1, -1))
@@ -93,11 +93,14 @@ def straits(coast: EffectiveCoast, depth: NDArray[np.floating]) -> list[Strait]:
     walls = cKDTree(grid.vectors(~coast.passable & _near(gap)))
     found: list[Strait] = []
     for patch in _patches(coast, depth, labels, count, walls):
-        for path in _passages(patch):
+        paths = _passages(patch)
+        used = np.unique(np.concatenate([*paths, np.zeros(0, dtype=np.int64)]))
+        width = np.full(patch.ocean.size, np.nan)
+        width[used] = _widths(walls, patch.vectors[used], grid.spacing)
+        for path in paths:
             lon, lat = positions(patch.vectors[path])
-            width = _widths(walls, patch.vectors[path], grid.spacing)
             sill = float(patch.depth[path[1:-1]].min())
-            found.append(strait_along(lon, lat, width, sill))
+            found.append(strait_along(lon, lat, width[path], sill))
     return found
 
 
