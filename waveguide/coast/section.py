@@ -263,7 +263,7 @@ def _outer_depth(offset: Array, depth: Array, weight: Array, beyond: Array) -> A
 
 def _coverage(offset: Array, extents: Extents, reach: Array) -> Array:
     """Share of the way from the inner end to where the section should end that is known."""
-    wanted = np.where(np.isfinite(extents.facing), offset[extents.end - 1], reach)
-    known = np.minimum(offset[extents.end - 1], wanted) - extents.origin
-    result: Array = np.clip(known / np.maximum(wanted - extents.origin, 1.0), 0.0, 1.0)
+    known = offset[extents.end - 1] - extents.origin
+    wanted = np.where(extents.cut_data, reach - extents.origin, known)
+    result: Array = np.clip(known / np.maximum(wanted, 1.0), 0.0, 1.0)
     return np.where(extents.found, result, 0.0)

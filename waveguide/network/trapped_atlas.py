@@ -17,10 +17,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from waveguide.coast.section import Sections, cross_shelf_sections
+from waveguide.coast.section_modes import LEAST_LATITUDE, limited_scale
 from waveguide.coast.section_quality import QualityFlag
 from waveguide.constants import coriolis, deformation_radius
 from waveguide.modes.trapped import TOLERANCE
-from waveguide.modes.vertical import barotropic_speed, vertical_modes
+from waveguide.modes.vertical import barotropic_speed
 from waveguide.network.atlas import Atlas
 from waveguide.network.continuity import followed_ranks
 from waveguide.network.graph import Network, StepKind
@@ -45,9 +46,6 @@ NUMBERS = 3
 BLENDED = 1.0
 """Latitude (degrees) below which the modes of sections give way to those of a flat bottom."""
 
-LEAST_LATITUDE = 0.05
-"""Closer to the equator (degrees) sections are not computed: their weight is below 5 %."""
-
 
 @dataclass(frozen=True)
 class TrappedAtlas(Atlas):
@@ -57,8 +55,6 @@ class TrappedAtlas(Atlas):
     ----------
     error : ndarray, shape (k, n)
         Relative error of the phase speed, NaN for flat-bottom modes.
-    decay_per_drag : ndarray, shape (k, n)
-        Bottom friction: decay per metre and unit linear drag r (s/m²), e^(−decay r s).
     trapping_scale : ndarray, shape (k, n)
         Offshore scale (m), no more than the equatorial radius.
     rank : ndarray of int, shape (k, n)
@@ -73,7 +69,6 @@ class TrappedAtlas(Atlas):
     """
 
     error: Array
-    decay_per_drag: Array
     trapping_scale: Array
     rank: Index
     overlap: Array
@@ -131,10 +126,7 @@ def build_trapped_atlas(
     flags = np.zeros(network.size, dtype=np.int64)
     flags[chosen] = sections.flags
     flags[~wanted] = int(QualityFlag.NOT_COMPUTED)
-    needed = wanted & (
-        np.isnan(ranked.phase_speed[:, : NUMBERS + 1]).any(axis=1) | (np.abs(network.lat) < BLENDED)
-    )
-    fallback = _flat_bottom(network, flat, columns, climatology.depth, needed)
+    fallback = _flat_bottom(network, flat, wanted)
     return _assembled(network, flat, ranked, _followed(network, ranked), fallback, flags)
 
 
@@ -233,25 +225,22 @@ class _Modes:
     scale: Array
 
 
-def _flat_bottom(
-    network: Network, flat: Atlas, columns: Array, n2_depth: Array, needed: Mask
-) -> _Modes:
-    """Flat-bottom modes of some nodes, NaN for the rest.
-
-    A wave of p ∝ e^(−x/R) F(z) decays by r F(−H)²/(2c) per metre. That is (1/|f|) ∫ (∂x F)² dx
-    over the bottom; on the equator it follows from the energy, d/dt ∫F² dz = −r F(−H)², too.
-    """
+def _flat_bottom(network: Network, flat: Atlas, wanted: Mask) -> _Modes:
+    """Flat-bottom modes at the nodes of a region; mode 0 over the adjoining deep water."""
     rows = [flat.row(mode) for mode in range(1, NUMBERS + 1)]
-    known = needed & np.isfinite(flat.depth) & np.isfinite(columns).all(axis=1)
-    deep = np.where(known, flat.depth, np.nan)
-    speed = np.vstack([barotropic_speed(deep), np.where(known, flat.phase_speed[rows], np.nan)])
-    value = np.vstack([1.0 / np.sqrt(deep), np.where(known, flat.coastal_value[rows], np.nan)])
-    foot = np.full_like(speed, np.nan)
-    foot[0] = value[0]
-    for node in np.flatnonzero(known):
-        modes = vertical_modes(columns[node], n2_depth, float(deep[node]), NUMBERS)
-        foot[1:, node] = modes.structure[1:, -1]
-    return _Modes(speed, value, foot**2 / (2.0 * speed), deformation_radius(speed, network.lat))
+    deep = np.where(wanted, flat.depth, np.nan)
+    barotropic = barotropic_speed(deep)
+
+    def with_barotropic(zero: Array, others: Array) -> Array:
+        return np.vstack([zero, np.where(wanted, others[rows], np.nan)])
+
+    speed = with_barotropic(barotropic, flat.phase_speed)
+    return _Modes(
+        speed,
+        with_barotropic(1.0 / np.sqrt(deep), flat.coastal_value),
+        with_barotropic(0.5 / (deep * barotropic), flat.decay_per_drag),
+        deformation_radius(speed, network.lat),
+    )
 
 
 def _assembled(
@@ -262,9 +251,7 @@ def _assembled(
     rank = np.vstack([np.zeros((1, network.size), dtype=np.int64), followed + 1])
     pick = (np.arange(network.size), rank)
     speed, error = ranked.phase_speed[pick], ranked.error[pick]
-    # near the equator the wave is trapped within the equatorial radius, where that is less than c/f
-    nearer = deformation_radius(speed, network.lat) * np.abs(coriolis(network.lat)) / speed
-    scale = ranked.trapping_scale[pick] * nearer
+    scale = limited_scale(ranked.trapping_scale[pick], speed, network.lat)
     found = np.isfinite(speed)
     weight = np.clip(np.abs(network.lat) / BLENDED, 0.0, 1.0)
 
