@@ -6,7 +6,6 @@ Exit status: 0 answered, 2 the input cannot be used, 1 a defect of the package.
 from __future__ import annotations
 
 import sys
-import threading
 import time
 import traceback
 from contextlib import nullcontext
@@ -14,6 +13,9 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
+
+from waveguide.cli_records import compare
+from waveguide.progress import Progress
 
 if TYPE_CHECKING:
     import xarray as xr
@@ -30,6 +32,9 @@ app = typer.Typer(
     pretty_exceptions_enable=False,
     no_args_is_help=True,
 )
+
+
+app.command()(compare)
 
 
 def main() -> None:
@@ -274,43 +279,3 @@ class Bar:
         filled = round(self.width * share)
         bar = "█" * filled + "·" * (self.width - filled)
         return f"waveguide: {self._name} {bar} {100.0 * share:3.0f} %{left}".ljust(100)
-
-
-class Progress:
-    """Says on stderr what is being done, once the work has taken two seconds.
-
-    Called with the name of a stage when it begins, from the pipeline's own thread. A timer
-    names the stage that is running when the two seconds are over.
-    """
-
-    patience = 2.0
-    """Seconds of silence."""
-
-    def __init__(self) -> None:
-        self._stage = ""
-        self._start = time.monotonic()
-        self._timer = threading.Timer(self.patience, self._report)
-        self._timer.daemon = True
-
-    def __enter__(self) -> Progress:
-        self._timer.start()
-        return self
-
-    def __exit__(self, *_: object) -> None:
-        self._timer.cancel()
-
-    def __call__(self, stage: str) -> None:
-        """Take note of a stage that begins."""
-        self._stage = stage
-        if time.monotonic() - self._start > self.patience:
-            self._report()
-
-    def _report(self) -> None:
-        if self._stage:
-            seconds = time.monotonic() - self._start
-            print(f"waveguide: {seconds:.0f} s, {self._stage} …", file=sys.stderr, flush=True)
-
-
-from waveguide.cli_records import compare  # noqa: E402 (it needs Progress when it runs)
-
-app.command()(compare)

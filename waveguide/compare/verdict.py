@@ -71,9 +71,13 @@ def verdict(
     hidden = unresolved(estimate, chance)
     if hidden:
         return Verdict("not resolvable", hidden)
-    if not np.isfinite(predicted):
-        return Verdict("not resolvable", f"theory has no lag for this mode: {status}")
     span = f"{estimate.lag:.1f} [{estimate.low:.1f} to {estimate.high:.1f}] days"
+    if not np.isfinite(predicted):
+        way = (
+            f"; the record has the signal at the second place first, {span}"
+            if estimate.high < 0.0 else ""
+        )
+        return Verdict("not resolvable", f"theory has no lag for this mode: {status}{way}")
     if estimate.high < 0.0 < predicted:
         return Verdict(
             "too early",

@@ -1,0 +1,306 @@
+"""Figures of a comparison: one for each pair, each event record and each mooring."""
+
+from __future__ import annotations
+
+import re
+import textwrap
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from waveguide.report.colours import MODE_COLOURS, RECORD_COLOURS
+from waveguide.report.text import plain
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+    from waveguide.compare.events import EventResult
+    from waveguide.compare.moorings import MooringResult
+    from waveguide.compare.pairs import PairResult, Prediction
+    from waveguide.compare.result import ComparisonResult
+    from waveguide.compare.series import Array
+
+SHOWN_DAYS = 730.0
+"""Length of the stretch of a pair's records that is drawn."""
+
+_UNITS = {
+    "sea level": ("cm", 100.0), "dynamic height": ("cm", 100.0), "temperature": ("°C", 1.0),
+    "isopycnal depth": ("m", 1.0), "alongshore velocity": ("cm/s", 100.0),
+    "bottom pressure": ("cm of water", 100.0),
+}
+"""Unit drawn for each quantity, and how many are in the SI unit."""
+
+
+def write_comparison_figures(result: ComparisonResult, folder: Path) -> None:
+    """Write ``pair_….png``, ``event_….png`` and ``mooring_….png``.
+
+    Parameters
+    ----------
+    result : ComparisonResult
+    folder : Path
+    """
+    for pair in result.pairs:
+        name = f"pair_{_file_name(pair.first.name)}_{_file_name(pair.second.name)}.png"
+        draw_pair(pair).savefig(folder / name)
+    for event in result.events:
+        draw_event(event).savefig(folder / f"event_{_file_name(event.series.name)}.png")
+    for mooring in result.moorings:
+        draw_mooring(mooring).savefig(folder / f"mooring_{_file_name(mooring.reference)}.png")
+
+
+def _file_name(text: str) -> str:
+    return re.sub(r"[^\w-]+", "-", text).strip("-").lower() or "record"
+
+
+def _figure(rows: int, columns: int, height: float, title: str) -> tuple[Figure, Any]:
+    from matplotlib.backends.backend_agg import FigureCanvasAgg
+    from matplotlib.figure import Figure
+
+    figure = Figure(figsize=(9.5, height), dpi=130, layout="constrained")
+    FigureCanvasAgg(figure)
+    figure.suptitle(title, fontsize=12, fontweight="bold", parse_math=False)
+    return figure, figure.subplots(rows, columns, squeeze=False)
+
+
+def draw_pair(pair: PairResult) -> Figure:
+    """Records, correlation, coherence and phase of a pair, with the predictions.
+
+    Parameters
+    ----------
+    pair : PairResult
+
+    Returns
+    -------
+    matplotlib.figure.Figure
+    """
+    title = f"{plain(pair.first.name, 30)} to {plain(pair.second.name, 30)}"
+    figure, axes = _figure(3, 2, 9.0, title)
+    grid = axes[0, 0].get_gridspec()
+    for ax in axes[0]:
+        ax.remove()
+    _draw_records(figure.add_subplot(grid[0, :]), pair)
+    _draw_correlation(axes[1, 0], pair)
+    _draw_gain(axes[1, 1], pair)
+    _draw_coherence(axes[2, 0], pair)
+    _draw_phase(axes[2, 1], pair)
+    figure.supxlabel(_verdicts(pair), fontsize=8.5, parse_math=False)
+    return figure
+
+
+def _verdicts(result: PairResult | EventResult) -> str:
+    """The verdicts as lines that fit below a figure."""
+    lines = [
+        textwrap.fill(f"mode {p.mode}: {v.word}: {v.reason}", 125)
+        for p, v in zip(result.predictions, result.verdicts, strict=True)
+    ]
+    return "\n".join(lines)
+
+
+def _draw_records(ax: Axes, pair: PairResult) -> None:
+    size = round(SHOWN_DAYS / pair.first.step)
+    start = _fullest(pair, size)
+    for series, colour in zip((pair.first, pair.second), RECORD_COLOURS, strict=True):
+        unit, factor = _UNITS[series.quantity]
+        inside = (series.times >= start) & (
+            series.times <= start + np.timedelta64(round(SHOWN_DAYS * 86400), "s")
+        )
+        label = f"{plain(series.name, 30)}: {series.quantity} ({unit})"
+        ax.plot(series.times[inside], factor * series.values[inside], color=colour, lw=1.0,
+                label=label)
+    short, long = pair.band
+    ax.set_title(f"a  records passed {short:g} to {long:g} days (the two fullest years)",
+                 loc="left", fontsize=9)
+    ax.axhline(0.0, color="0.8", lw=0.6, zorder=0)
+    ax.legend(fontsize=8, loc="upper right", ncols=2)
+
+
+def _fullest(pair: PairResult, size: int) -> np.datetime64:
+    """Start of the stretch in which both records have most values."""
+    first, second = pair.first, pair.second
+    start = max(first.start, second.start)
+    there = []
+    for series in (first, second):
+        skip = int(np.searchsorted(series.times, start))
+        there.append(np.isfinite(series.values[skip:]))
+    n = min(map(len, there))
+    both = np.concatenate([[0], np.cumsum(there[0][:n] & there[1][:n])])
+    if n <= size:
+        return start
+    best = int(np.argmax(both[size:] - both[:-size]))
+    moment: np.datetime64 = first.times[int(np.searchsorted(first.times, start)) + best]
+    return moment
+
+
+def _draw_correlation(ax: Axes, pair: PairResult) -> None:
+    estimate, corr = pair.estimate, pair.correlation
+    ax.axvspan(estimate.low, estimate.high, color="0.85", lw=0, label="95 % interval of the lag")
+    ax.plot(corr.lag, corr.value, color="0.2", lw=1.2)
+    ax.plot(estimate.lag, estimate.correlation, "o", ms=4, color="0.2")
+    ax.axvline(0.0, color="0.7", lw=0.6)
+    ax.axhline(0.0, color="0.7", lw=0.6)
+    for prediction in pair.predictions:
+        if np.isfinite(prediction.lag):
+            ax.axvline(prediction.lag, color=MODE_COLOURS[prediction.mode], lw=1.6, ls="--",
+                       label=f"theory, mode {prediction.mode}")
+    ax.set_title("b  cross-correlation", loc="left", fontsize=9)
+    ax.set_xlabel("lag of the second record (days)", fontsize=8.5)
+    ax.legend(fontsize=7.5, loc="lower left")
+
+
+def _draw_gain(ax: Axes, pair: PairResult) -> None:
+    """Scatter of the second record, at the lag, on the first, with the slope."""
+    from waveguide.compare.lags import overlap
+    from waveguide.compare.series import align
+
+    x, y, _, offset = align(pair.first, pair.second)
+    a, b = overlap(x, y, round((pair.estimate.lag - offset) / pair.first.step))
+    (unit_a, fa), (unit_b, fb) = _UNITS[pair.first.quantity], _UNITS[pair.second.quantity]
+    ax.plot(fa * a, fb * b, ".", ms=1.6, color="0.55", alpha=0.5, rasterized=True)
+    ends = fa * np.array([np.nanmin(a), np.nanmax(a)])
+    sign = np.sign(np.nansum(a * b)) or 1.0
+    slope = sign * abs(pair.slope.slope) * fb / fa
+    ax.plot(ends, slope * ends, color="0.1", lw=1.4, label=f"slope {slope:.2f}")
+    for p in pair.predictions:
+        if np.isfinite(p.ratio):
+            ax.plot(ends, p.ratio * fb / fa * ends, ls="--", lw=1.4, color=MODE_COLOURS[p.mode],
+                    label=f"theory, mode {p.mode}: {p.ratio * fb / fa:.2f}")
+    ax.set_title("c  amplitude at the lag", loc="left", fontsize=9)
+    ax.set_xlabel(f"{plain(pair.first.name, 30)} ({unit_a})", fontsize=8.5)
+    ax.set_ylabel(f"{plain(pair.second.name, 30)} ({unit_b})", fontsize=8.5)
+    ax.legend(fontsize=7.5, loc="lower right")
+
+
+def _draw_coherence(ax: Axes, pair: PairResult) -> None:
+    spectrum = pair.spectrum
+    shown = spectrum.frequency <= _highest(pair)
+    if shown.any():
+        ax.plot(spectrum.frequency[shown], spectrum.coherence[shown], color="0.2", lw=1.2)
+        ax.axhline(spectrum.significant, color="0.5", lw=0.8, ls=":",
+                   label="95 % of unrelated records lie below")
+        ax.legend(fontsize=7.5, loc="upper right")
+    _draw_band(ax, pair)
+    ax.set_ylim(0.0, 1.0)
+    ax.set_title("d  squared coherence", loc="left", fontsize=9)
+    ax.set_xlabel("frequency (cycles per day)", fontsize=8.5)
+
+
+def _draw_phase(ax: Axes, pair: PairResult) -> None:
+    spectrum = pair.spectrum
+    sure = np.isfinite(spectrum.phase_error) & (spectrum.frequency <= _highest(pair))
+    ax.errorbar(spectrum.frequency[sure], spectrum.phase[sure], 1.96 * spectrum.phase_error[sure],
+                fmt="o", ms=2.5, lw=0.8, color="0.2", label="measured, 95 %")
+    f = np.linspace(0.0, _highest(pair), 400)
+    for p in pair.predictions:
+        if np.isfinite(p.lag):
+            ax.plot(f, _wrapped(360.0 * f * p.lag), color=MODE_COLOURS[p.mode], lw=1.4, ls="--",
+                    label=f"theory, mode {p.mode}")
+    _draw_band(ax, pair)
+    ax.set_ylim(-180.0, 180.0)
+    ax.set_yticks(np.arange(-180, 181, 90))
+    ax.set_title("e  phase by which the second record lags (degrees)", loc="left", fontsize=9)
+    ax.set_xlabel("frequency (cycles per day)", fontsize=8.5)
+    ax.legend(fontsize=7.5, loc="lower right")
+
+
+def _highest(pair: PairResult) -> float:
+    return min(1.5 / pair.band[0], 0.5 / pair.first.step)
+
+
+def _draw_band(ax: Axes, pair: PairResult) -> None:
+    ax.axvspan(1.0 / pair.band[1], 1.0 / pair.band[0], color="0.93", lw=0, zorder=0)
+    ax.set_xlim(0.0, _highest(pair))
+
+
+def _wrapped(phase: Array) -> Array:
+    """Degrees within ±180, NaN where the line jumps."""
+    wrapped = (phase + 180.0) % 360.0 - 180.0
+    jump = np.abs(np.diff(wrapped, prepend=wrapped[0])) > 180.0
+    return np.where(jump, np.nan, wrapped)
+
+
+def draw_event(event: EventResult) -> Figure:
+    """The record about an event and the amplitude that fits at each delay.
+
+    Parameters
+    ----------
+    event : EventResult
+
+    Returns
+    -------
+    matplotlib.figure.Figure
+    """
+    series = event.series
+    unit, factor = _UNITS[series.quantity]
+    figure, axes = _figure(2, 1, 6.5, f"The event at {plain(series.name, 30)}")
+    span = float(event.delay[-1])
+    days = series.days - event.start
+    shown = (days > -0.5 * span) & (days < 1.5 * span)
+    top, bottom = axes[0, 0], axes[1, 0]
+    top.plot(days[shown], factor * series.values[shown], color=RECORD_COLOURS[1], lw=1.2)
+    top.set_ylabel(f"{series.quantity} ({unit})", fontsize=8.5)
+    top.set_title(
+        f"a  record passed {event.band[0]:g} to {event.band[1]:g} days", loc="left", fontsize=9
+    )
+    bottom.plot(event.delay, factor * event.amplitude, color="0.2", lw=1.2)
+    estimate = event.estimate
+    if np.isfinite(estimate.high):
+        bottom.axvspan(estimate.low, estimate.high, color="0.85", lw=0, label="95 % interval")
+    bottom.set_ylabel(f"amplitude that fits ({unit})", fontsize=8.5)
+    bottom.set_title("b  amplitude of the event at each delay", loc="left", fontsize=9)
+    for ax in (top, bottom):
+        ax.axvline(0.0, color="0.6", lw=0.8)
+        ax.axhline(0.0, color="0.8", lw=0.6, zorder=0)
+        ax.set_xlim(-0.5 * span, 1.5 * span)
+        ax.set_xlabel("days after the start of the event", fontsize=8.5)
+        _mark(ax, event.predictions)
+    bottom.legend(fontsize=7.5, loc="upper right")
+    figure.supxlabel(_verdicts(event), fontsize=8.5, parse_math=False)
+    return figure
+
+
+def _mark(ax: Axes, predictions: tuple[Prediction, ...]) -> None:
+    for p in predictions:
+        if np.isfinite(p.lag):
+            ax.axvline(p.lag, color=MODE_COLOURS[p.mode], lw=1.6, ls="--",
+                       label=f"theory, mode {p.mode}")
+
+
+def draw_mooring(mooring: MooringResult) -> Figure:
+    """Measured and predicted ratios of a mooring's instruments.
+
+    Parameters
+    ----------
+    mooring : MooringResult
+
+    Returns
+    -------
+    matplotlib.figure.Figure
+    """
+    parts = mooring.instruments
+    figure, axes = _figure(1, 1, 1.8 + 0.6 * len(parts),
+                           f"Mooring: ratios to {plain(mooring.reference, 30)}")
+    ax = axes[0, 0]
+    place = np.arange(len(parts))[::-1]
+    for y, part in zip(place, parts, strict=True):
+        scale = max(abs(part.slope.slope), *np.abs(part.predicted))
+        low, high = part.slope.low / scale, part.slope.high / scale
+        ax.plot([low, high], [y, y], color="0.2", lw=4, solid_capstyle="butt",
+                label="measured, 95 %" if y == place[0] else None)
+        for mode, value in zip(mooring.modes, part.predicted, strict=True):
+            ax.plot(value / scale, y, "D", color=MODE_COLOURS[int(mode)], ms=7,
+                    label=f"theory, mode {mode}" if y == place[0] else None)
+    ax.set_yticks(place, [
+        f"{plain(part.series.name, 30)}\n{part.series.quantity}, {part.series.depth:g} m"
+        for part in parts
+    ], fontsize=8)
+    ax.set_ylim(-0.6, len(parts) - 0.4)
+    ax.axvline(0.0, color="0.6", lw=0.8)
+    ax.set_xlabel("ratio, in units of the largest of each row", fontsize=8.5)
+    explained = ", ".join(
+        f"mode {m} {100 * v:.0f} %" for m, v in zip(mooring.modes, mooring.explained, strict=True)
+    )
+    ax.set_title(f"variance explained: {explained}", loc="left", fontsize=9)
+    ax.legend(fontsize=8, loc="center left", bbox_to_anchor=(1.01, 0.5))
+    return figure
