@@ -166,52 +166,46 @@ class _Ways:
 
 
 def _ways(lines: Lines, crossings: tuple[Crossings, ...], passing: list[Index]) -> _Ways:
-    """Lay every crossing out as steps; both directions of a strait share its nodes.
+    """Lay every crossing out as steps.
 
     What comes out of a gap goes on along the coast beyond its mouth, so it lands past the step
-    that passes the mouth and not before it.
+    that passes the mouth and not before it. Each direction through a strait has nodes of its own,
+    or a signal could turn round inside and leave past the mouth it came in by.
     """
     none = np.zeros(0, dtype=np.int64)
     parts = [_Ways(np.zeros(0), np.zeros(0), none, none, none, none, none)]
-    first, number, row = lines.lon.size, int(lines.line.max()) + 1, 0
+    first, number, gap = lines.lon.size, int(lines.line.max()) + 1, 0
     for crossing, passed in zip(crossings, passing, strict=True):
-        half = crossing.tail.size // 2
         beyond = np.where(passed >= 0, lines.head[passed], crossing.tail)
-        landing = np.roll(beyond, half)
-        for there in range(half):
-            parts.append(_way(crossing, there, landing, first, number, row))
+        landing = np.roll(beyond, crossing.tail.size // 2)
+        for row in range(crossing.tail.size):
+            parts.append(_way(crossing, row, int(landing[row]), first, number, gap + row))
             first += parts[-1].lon.size
             number += int(parts[-1].lon.size > 0)
-        row += crossing.tail.size
+        gap += crossing.tail.size
     return _Ways(*(
         np.concatenate([getattr(part, field.name) for part in parts]) for field in fields(_Ways)
     ))
 
 
 def _way(
-    crossing: Crossings, there: int, landing: Index, first: int, number: int, row: int
+    crossing: Crossings, row: int, landing: int, first: int, number: int, gap: int
 ) -> _Ways:
-    """Nodes within one crossing, and its steps there and back.
+    """Nodes within one crossing, and its steps.
 
-    `there` is its row in the crossings, `first` the number of its first node, `number` that of
-    its line, `row` the row of the crossings' first gap in the gap table.
+    `first` is the number of its first node, `number` that of its line, `gap` its row in the gap
+    table.
     """
-    lon, lat = crossing.way[there]
-    inner = np.arange(first, first + lon.size)
-    back = there + crossing.tail.size // 2
-    chains = [
-        np.concatenate([[crossing.tail[at]], nodes, [landing[at]]])
-        for at, nodes in ((there, inner), (back, inner[::-1]))
-    ]
-    no_gap = np.full(lon.size, -1)
+    lon, lat = crossing.way[row]
+    chain = np.concatenate([[crossing.tail[row]], np.arange(first, first + lon.size), [landing]])
     return _Ways(
         lon=lon,
         lat=lat,
         line=np.full(lon.size, number),
-        tail=np.concatenate([chain[:-1] for chain in chains]),
-        head=np.concatenate([chain[1:] for chain in chains]),
-        kind=np.repeat(crossing.kind[[there, back]], lon.size + 1),
-        gap=np.concatenate([[row + there], no_gap, [row + back], no_gap]),
+        tail=chain[:-1],
+        head=chain[1:],
+        kind=np.full(lon.size + 1, crossing.kind[row]),
+        gap=np.concatenate([[gap], np.full(lon.size, -1)]),
     )
 
 

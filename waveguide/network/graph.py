@@ -46,9 +46,8 @@ class Network:
     lon, lat : ndarray, shape (n,)
         Nodes, degrees.
     line : ndarray of int, shape (n,)
-        The coast ring, equatorial stretch or strait a node belongs to; nodes of a line are
-        consecutive and in the order of travel in the northern hemisphere (eastward on the
-        equator).
+        The coast ring, equatorial stretch or way through a strait a node belongs to; nodes of
+        a line are consecutive and in the order of travel (of the northern hemisphere on a coast).
     equatorial : ndarray of bool, shape (n,)
         Whether the node lies on an equatorial stretch. Junctions belong to their coast.
     offshore : ndarray, shape (n,)
