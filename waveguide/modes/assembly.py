@@ -55,12 +55,17 @@ class Rotation:
     wavenumber : float
         Alongshore wavenumber l (1/m), 0 for long waves.
     gravity : float
-        g (m/s²).
+        g (m/s²); infinite for a rigid lid.
     """
 
     inertia: float
     wavenumber: float = 0.0
     gravity: float = GRAVITY
+
+    @property
+    def floating(self) -> bool:
+        """A uniform pressure does nothing: long waves under a rigid lid."""
+        return np.isinf(self.gravity) and self.wavenumber == 0.0
 
 
 @dataclass(frozen=True)
@@ -109,6 +114,7 @@ def offshore_modes(mesh: Mesh, profile: Profile, rotation: Rotation) -> Offshore
     # the eigenvalues again by Rayleigh's quotient: mode 0 would drown in the rounding of the rest
     surface = rotation.inertia / rotation.gravity * psi[0] ** 2
     square = stiff @ np.diff(psi, axis=0) ** 2 + surface
+    square[0] *= not rotation.floating
     return OffshoreModes(np.sqrt(square + rotation.wavenumber**2), psi, mass @ psi)
 
 
@@ -129,10 +135,13 @@ class Stiffness:
     row_sum : ndarray, shape (nnode,)
         K times the vector of ones, without the gradients that cancel: of the size of f²/g where
         the entries of `band` are of the size of f²/N², it could not be had from them.
+    floating : bool
+        K times the vector of ones is 0 exactly.
     """
 
     band: Array
     row_sum: Array
+    floating: bool
 
 
 def stiffness(
@@ -161,7 +170,7 @@ def stiffness(
     if rotation.wavenumber != 0.0:
         others += _mass(mesh, rotation)
     nodes = int(mesh.start[-1])
-    return Stiffness(_band(gradients + others, nodes), _row_sum(others, nodes))
+    return Stiffness(_band(gradients + others, nodes), _row_sum(others, nodes), rotation.floating)
 
 
 def _band(parts: list[Entries], nodes: int) -> Array:

@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg import lapack
 
-from waveguide.errors import InputError, WaveguideError
+from waveguide.errors import WaveguideError
 from waveguide.modes.assembly import Stiffness
 from waveguide.modes.mesh import Indices
 
@@ -24,8 +24,8 @@ Array = NDArray[np.float64]
 _RESIDUAL = 3e-5
 """Residual allowed, relative to the eigenvalue; the eigenvalue's own error goes as its square."""
 
-_EXHAUSTED = 1e-9
-"""A new direction smaller than this, relative to the first eigenvalue, is rounding."""
+_ROUNDING = 1e-10
+"""Residuals, directions and eigenvalues this small relative to the largest are rounding."""
 
 _FIRST_CHECK, _CHECK_EVERY, _MOST_STEPS = 11, 3, 300
 
@@ -37,9 +37,12 @@ class _Solver:
     are of the size of f²/N², so 1 drowns in their rounding. As in an electric network the first
     node is grounded instead: K' = K + σ e eᵀ is well conditioned, and K p = b means
     p = K'⁻¹ b + α K'⁻¹ e with the α that satisfies 1ᵀK p = 1ᵀ b, in which nothing cancels.
+    Under a rigid lid K 1 = 0: loads have no sum, p = K'⁻¹ b + α, and α makes 1ᵀB p = 0.
     """
 
-    def __init__(self, stiffness: Stiffness, boundary: Indices) -> None:
+    def __init__(
+        self, stiffness: Stiffness, boundary: Indices, product: Callable[[Array], Array]
+    ) -> None:
         grounded = stiffness.band.copy(order="F")
         grounded[0, 0] *= 2.0
         self.factor, fault = lapack.dpbtrf(grounded, lower=1, overwrite_ab=1)
@@ -49,9 +52,10 @@ class _Solver:
                 "depths or N² span too many orders of magnitude"
             )
         self.boundary = boundary
+        self.floating = stiffness.floating
         self.row_sum = stiffness.row_sum
+        self.uniform = product(np.ones(boundary.size))
         self.ground = self._solve(np.eye(1, self.row_sum.size).T)
-        self.total = self.row_sum @ self.ground
 
     def _solve(self, load: Array) -> Array:
         values: Array = lapack.dpbtrs(self.factor, load, lower=1, overwrite_b=1)[0][:, 0]
@@ -60,10 +64,19 @@ class _Solver:
     def __call__(self, load: Array) -> Array:
         """Values at all nodes."""
         full = np.zeros((self.row_sum.size, 1))
+        if self.floating:
+            full[self.boundary, 0] = load - load.mean()
+            values = self._solve(full)
+            return values - self.offset(values[self.boundary])
         full[self.boundary, 0] = load
         values = self._solve(full)
-        values += (load.sum() - self.row_sum @ values) / self.total * self.ground
+        alpha = (load.sum() - self.row_sum @ values) / (self.row_sum @ self.ground)
+        values += alpha * self.ground
         return values
+
+    def offset(self, values: Array) -> float:
+        """Part of values on the boundary that only a floating solution may not have."""
+        return float(self.uniform @ values / self.uniform.sum()) if self.floating else 0.0
 
 
 def largest_modes(
@@ -87,26 +100,22 @@ def largest_modes(
 
     Returns
     -------
-    inverse : ndarray, shape (count,)
-        1/λ, largest first.
-    modes : ndarray, shape (count, nnode)
+    inverse : ndarray, shape (m,)
+        1/λ, largest first; m < `count` where there are no more (a flat bottom with few levels).
+    modes : ndarray, shape (m, nnode)
         p with pᵀBp = 1, positive at the first node.
     ritz : ndarray, shape (k,)
         All Ritz values, descending; the most negative ones are accurate too.
     """
-    ritz, modes = _lanczos(_Solver(stiffness, boundary), boundary, product, count)
-    inverse = ritz[:count]
-    if inverse.size < count or inverse[-1] <= 0.0:
-        raise InputError(
-            f"count asks for {count} modes but the section holds {int(np.sum(ritz > 0.0))} at this "
-            "resolution: ask for fewer"
-        )
+    ritz, modes = _lanczos(_Solver(stiffness, boundary, product), boundary, product, count)
+    found = min(count, int(np.sum(ritz > _ROUNDING * ritz[0])))
+    inverse, modes = ritz[:found], modes[:found]
     modes /= np.where(modes[:, :1] < 0.0, -1.0, 1.0) * inverse[:, None] ** 1.5
     return inverse, modes, ritz
 
 
 def _lanczos(
-    solve: Callable[[Array], Array],
+    solve: _Solver,
     boundary: Indices,
     product: Callable[[Array], Array],
     count: int,
@@ -123,6 +132,8 @@ def _lanczos(
     projected = np.zeros((most, most))
     weight = product(1.0 + 0.5 * np.cos(2.4 * np.arange(size)))  # contains every mode
     step = solve(weight)[boundary]
+    weight = product(step)
+    step = solve(weight)[boundary]
     for j in range(most):
         norm = np.sqrt(step @ weight)
         v[j], k[j] = step / norm, weight / norm
@@ -131,13 +142,16 @@ def _lanczos(
         step = everywhere[-1][boundary]
         row = v[: j + 1] @ weight
         step, weight = step - row @ v[: j + 1], weight - row @ k[: j + 1]
-        again = v[: j + 1] @ weight  # orthogonalise twice: once loses accuracy
+        again = k[: j + 1] @ step  # the same product, but it sees the rounding in the solution
         step, weight = step - again @ v[: j + 1], weight - again @ k[: j + 1]
+        step -= solve.offset(step)
         projected[j, : j + 1] = row + again
         left = float(np.sqrt(np.maximum(step @ weight, 0.0)))
-        if _due(j, most) or left <= _EXHAUSTED * abs(projected[0, 0]):
+        exhausted = left <= _ROUNDING * projected[0, 0]
+        if exhausted or _due(j, most):
             ritz, s = np.linalg.eigh(projected[: j + 1, : j + 1])
-            if left * np.max(np.abs(s[-1, -count:] / ritz[-count:])) < _RESIDUAL:
+            allowed = np.maximum(_RESIDUAL * np.abs(ritz[-count:]), _ROUNDING * ritz[-1])
+            if exhausted or np.all(left * np.abs(s[-1, -count:]) <= allowed):
                 break
     return ritz[::-1], s[:, : -count - 1 : -1].T @ np.array(everywhere)
 

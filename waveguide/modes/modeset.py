@@ -147,21 +147,24 @@ def overlap(upstream: ModeSet, downstream: ModeSet) -> Array:
     ndarray, shape (nupstream, ndownstream)
         ∫ F_up F_down dh: near ±1 for a mode passed on, the rest is scattered.
     """
-    depth = np.union1d(upstream.boundary_depth, downstream.boundary_depth)
-    a, b = _by_depth(upstream, depth), _by_depth(downstream, depth)
+    depth_a, a = _by_depth(upstream)
+    depth_b, b = _by_depth(downstream)
+    depth = np.union1d(depth_a, depth_b)
+    a = np.array([np.interp(depth, depth_a, F, right=0.0) for F in a])
+    b = np.array([np.interp(depth, depth_b, F, right=0.0) for F in b])
     dh = np.diff(depth) / 6.0
-    ends = (a[:, :-1], a[:, 1:], b[:, :-1], b[:, 1:])
-    low = (2.0 * ends[0] + ends[1]) * dh
-    high = (ends[0] + 2.0 * ends[1]) * dh
-    product: Array = low @ ends[2].T + high @ ends[3].T
+    upper = (2.0 * a[:, :-1] + a[:, 1:]) * dh
+    lower = (a[:, :-1] + 2.0 * a[:, 1:]) * dh
+    product: Array = upper @ b[:, :-1].T + lower @ b[:, 1:].T
     return product
 
 
-def _by_depth(modes: ModeSet, depth: Array) -> Array:
-    """F on the boundary as a function of depth, 0 below the deepest."""
-    deepest = np.maximum.accumulate(modes.boundary_depth)
-    first = np.append(True, np.diff(deepest) > 0.0)
-    known = modes.boundary_depth[first]
-    return np.array(
-        [np.interp(depth, known, F[first], right=0.0) for F in modes.boundary_structure]
-    )
+def _by_depth(modes: ModeSet) -> tuple[Array, Array]:
+    """Depths along the boundary, strictly increasing, and F there.
+
+    Over a flat stretch F jumps at one depth; its nodes are set apart by a millionth of the depth.
+    """
+    depth = modes.boundary_depth
+    kept = depth >= np.maximum.accumulate(depth)
+    apart = 1e-6 * depth[-1] * np.arange(depth.size) / depth.size
+    return (depth + apart)[kept], modes.boundary_structure[:, kept]

@@ -46,6 +46,9 @@ Array = NDArray[np.float64]
 TOLERANCE = 0.005
 """Default relative error of phase speeds."""
 
+MOST_MODES = 20
+"""Highest mode number: beyond it the eigenvalues drown in the rounding of mode 0."""
+
 _FIRST_INTERVALS = 3
 _MORE_INTERVALS = 1.5
 _FIRST_DEPTH_ERROR = 3.0
@@ -53,9 +56,6 @@ _FIRST_DEPTH_ERROR = 3.0
 depth in units of the tolerance (halved each time)."""
 
 _MOST_SOLUTIONS = 7
-
-_RIGID = 1e4
-"""A rigid lid is a free surface under this many times g."""
 
 
 def trapped_modes(
@@ -109,33 +109,87 @@ def trapped_modes(
     """
     x, h = checked_section(offshore, depth)
     profile = make_profile(n2, n2_depth)
-    _check_numbers(f, count, tolerance)
-    gravity = GRAVITY * (_RIGID if rigid_lid else 1.0)
+    check_numbers(f, count, tolerance)
+    rotation = Rotation(f * f, 0.0, np.inf if rigid_lid else GRAVITY)
+    coarse, fine, error = converged_solutions(x, h, profile, f, rotation, count, tolerance)
+    return _mode_set(coarse, fine, error, first=int(rigid_lid))
+
+
+def converged_solutions(
+    x: Array,
+    h: Array,
+    profile: Profile,
+    f: float,
+    rotation: Rotation,
+    count: int,
+    tolerance: float,
+) -> tuple[Solution, Solution, Array]:
+    """Solutions on two nested meshes whose extrapolated speeds are converged.
+
+    Parameters
+    ----------
+    x, h : ndarray, shape (n,)
+        Checked section (m).
+    profile : Profile
+        Stratification.
+    f : float
+        Coriolis parameter (1/s).
+    rotation : Rotation
+        D, l and g.
+    count : int
+        Highest mode number.
+    tolerance : float
+        Relative error allowed in the phase speeds.
+
+    Returns
+    -------
+    coarse, fine : Solution
+        On meshes of which the second has half the spacing.
+    error : ndarray, shape (nmode,)
+        Relative change of the extrapolated speeds from the previous pair.
+    """
+    modes = count if rotation.floating else count + 1
     intervals, depth_error = float(_FIRST_INTERVALS * (count + 1)), _FIRST_DEPTH_ERROR * tolerance
-    speed = np.full(count + 1, np.inf)
+    speed = np.full(modes, np.inf)
     for _ in range(_MOST_SOLUTIONS):
         plan = plan_mesh(x, h, profile, f, round(intervals), depth_error)
         coarse, fine = (
-            _solve(build_mesh(plan, refinement), profile, f, gravity, count + 1)
+            solve_on_mesh(build_mesh(plan, refinement), profile, f, rotation, modes)
             for refinement in (1, 2)
         )
-        last, speed = speed, _limit(coarse.phase_speed, fine.phase_speed)
+        last, speed = speed, extrapolated(coarse.phase_speed, fine.phase_speed)
         error = np.abs(last / speed - 1.0)
-        if np.all(error[rigid_lid:] <= tolerance):
+        if np.all(error <= tolerance):
             break
         intervals, depth_error = intervals * _MORE_INTERVALS, 0.5 * depth_error
-    return _mode_set(coarse, fine, error, slice(int(rigid_lid), None))
+    return coarse, fine, error
 
 
-def _check_numbers(f: float, count: int, tolerance: float) -> None:
+def check_numbers(f: float, count: int, tolerance: float) -> None:
+    """Refuse numbers the section problem has no answer for.
+
+    Parameters
+    ----------
+    f : float
+        Coriolis parameter (1/s).
+    count : int
+        Highest mode number.
+    tolerance : float
+        Relative error allowed.
+
+    Raises
+    ------
+    InputError
+        With every problem found.
+    """
     problems = []
     if f == 0.0 or not np.isfinite(f):
         problems.append(
             f"f is {f}: coastal-trapped modes need the earth's rotation; on the equator the guide "
             "is the equator itself and its modes are the vertical modes of the deep water"
         )
-    if count < 1:
-        problems.append(f"count is {count}: ask for at least mode 1")
+    if not 1 <= count <= MOST_MODES:
+        problems.append(f"count is {count}: ask for modes up to a number from 1 to {MOST_MODES}")
     if not 0.0 < tolerance < 1.0:
         problems.append(f"tolerance is {tolerance}: it must lie between 0 and 1")
     if problems:
@@ -143,8 +197,26 @@ def _check_numbers(f: float, count: int, tolerance: float) -> None:
 
 
 @dataclass(frozen=True)
-class _Solution:
-    """Modes on one mesh."""
+class Solution:
+    """Modes on one mesh.
+
+    Attributes
+    ----------
+    mesh : Mesh
+        The mesh.
+    profile : Profile
+        The stratification.
+    f : float
+        Coriolis parameter (1/s).
+    beyond : OffshoreModes
+        Vertical modes of the flat ocean beyond.
+    eigenvalue : ndarray, shape (nmode,)
+        λ (1/m), smallest first.
+    values : ndarray, shape (nmode, nnode)
+        p at the nodes, B(p, p) = 1.
+    reverse_speed : float
+        As in `ModeSet`.
+    """
 
     mesh: Mesh
     profile: Profile
@@ -156,11 +228,38 @@ class _Solution:
 
     @property
     def phase_speed(self) -> Array:
+        """|f|/λ (m/s), c of long waves."""
         return abs(self.f) / self.eigenvalue
 
 
-def _solve(mesh: Mesh, profile: Profile, f: float, gravity: float, count: int) -> _Solution:
-    rotation = Rotation(f * f, 0.0, gravity)
+def solve_on_mesh(
+    mesh: Mesh, profile: Profile, f: float, rotation: Rotation, count: int
+) -> Solution:
+    """Solve K p = λ B p on a mesh.
+
+    Parameters
+    ----------
+    mesh : Mesh
+        The mesh.
+    profile : Profile
+        Stratification.
+    f : float
+        Coriolis parameter (1/s).
+    rotation : Rotation
+        D, l and g.
+    count : int
+        How many modes.
+
+    Returns
+    -------
+    Solution
+        The modes of smallest positive λ.
+
+    Raises
+    ------
+    InputError
+        If there are fewer.
+    """
     beyond = offshore_modes(mesh, profile, rotation)
     depth = mesh.boundary_depth
     inverse, values, ritz = largest_modes(
@@ -169,17 +268,33 @@ def _solve(mesh: Mesh, profile: Profile, f: float, gravity: float, count: int) -
         boundary_product(depth),
         count,
     )
+    if inverse.size < count:
+        raise InputError(
+            f"count asks for {count} modes but the section holds only {inverse.size} at this "
+            "resolution: ask for fewer"
+        )
     rises = bool(np.any(np.diff(depth) < 0.0))
     reverse = max(-float(ritz.min()) * abs(f), 0.0) if rises else 0.0
-    return _Solution(mesh, profile, f, beyond, 1.0 / inverse, values, reverse)
+    return Solution(mesh, profile, f, beyond, 1.0 / inverse, values, reverse)
 
 
-def _limit(coarse: Array, fine: Array) -> Array:
-    """Richardson: errors are of second order and the fine mesh has half the spacing."""
+def extrapolated(coarse: Array, fine: Array) -> Array:
+    """Limit of second-order values from two meshes (Richardson).
+
+    Parameters
+    ----------
+    coarse, fine : ndarray
+        Values on meshes of which the second has half the spacing.
+
+    Returns
+    -------
+    ndarray
+        Values without the error of second order.
+    """
     return (4.0 * fine - coarse) / 3.0
 
 
-def _friction(solution: _Solution) -> Array:
+def _friction(solution: Solution) -> Array:
     """Decay per metre and unit drag r (s/m²), one per mode; see the module's text."""
     mesh, values, beyond = solution.mesh, solution.values, solution.beyond
     h = mesh.level[mesh.bottom]
@@ -194,15 +309,16 @@ def _friction(solution: _Solution) -> Array:
 
     k = beyond.decay
     shares = values[:, mesh.start[-2] :] @ beyond.projection * beyond.structure[-1]
-    outside = np.einsum("mi,ij,mj->m", shares, np.outer(k, k) / np.add.outer(k, k), shares)
+    pairs = np.outer(k, k) / np.maximum(np.add.outer(k, k), np.finfo(float).tiny)
+    outside = np.einsum("mi,ij,mj->m", shares, pairs, shares)
     total: Array = (inside + outside) / abs(solution.f)
     return total
 
 
-def _trapping_scales(solution: _Solution) -> Array:
+def _trapping_scales(solution: Solution) -> Array:
     """Distance (m) within which 1 - e⁻² of ∫ v² dx at the surface lies, one per mode."""
     mesh, values, beyond = solution.mesh, solution.values, solution.beyond
-    far = np.geomspace(1e-3, 10.0, 200) / beyond.decay[0]
+    far = np.geomspace(1e-3, 10.0, 200) / beyond.decay[beyond.decay > 0.0][0]
     amplitude = values[:, mesh.start[-2] :] @ beyond.projection * beyond.structure[0]
     outside = amplitude @ np.exp(-np.outer(beyond.decay, far))
     x = np.append(mesh.offshore, mesh.offshore[-1] + far)
@@ -212,19 +328,19 @@ def _trapping_scales(solution: _Solution) -> Array:
     return np.array([np.interp(2.0, np.log(e[0] / e), x[:-1]) for e in after])
 
 
-def _mode_set(coarse: _Solution, fine: _Solution, error: Array, kept: slice) -> ModeSet:
+def _mode_set(coarse: Solution, fine: Solution, error: Array, first: int) -> ModeSet:
     """Numbers extrapolated from two meshes, structures of the finer one."""
-    mesh, values = fine.mesh, fine.values[kept]
+    mesh, values = fine.mesh, fine.values
     level = np.arange(mesh.level.size)[:, None]
     below = level > mesh.bottom
     node = np.where(below, 0, mesh.start[:-1] + level)
     return ModeSet(
-        mode=np.arange(error.size)[kept],
-        phase_speed=_limit(coarse.phase_speed, fine.phase_speed)[kept],
-        error=error[kept],
-        coastal_value=_limit(coarse.values[:, 0], fine.values[:, 0])[kept],
-        bottom_friction=_limit(_friction(coarse), _friction(fine))[kept],
-        trapping_scale=_trapping_scales(fine)[kept],
+        mode=first + np.arange(error.size),
+        phase_speed=extrapolated(coarse.phase_speed, fine.phase_speed),
+        error=error,
+        coastal_value=extrapolated(coarse.values[:, 0], fine.values[:, 0]),
+        bottom_friction=extrapolated(_friction(coarse), _friction(fine)),
+        trapping_scale=_trapping_scales(fine),
         reverse_speed=fine.reverse_speed,
         f=fine.f,
         offshore=mesh.offshore,
