@@ -50,7 +50,8 @@ from numpy.typing import NDArray
 
 from waveguide.constants import BETA_EQUATOR, GRAVITY, REFERENCE_DENSITY, coriolis
 from waveguide.network.graph import Network, StepKind
-from waveguide.propagation.losses import ModeAtNodes, StepPhysics, poleward_nodes
+from waveguide.propagation.losses import StepPhysics
+from waveguide.propagation.modes import ModeAtNodes, poleward_nodes
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from typing import Literal
 
@@ -14,7 +14,7 @@ from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.forcing.events import Event, event_stress
 from waveguide.forcing.samples import Samples
-from waveguide.forcing.time_axis import LONGEST_GAP, Times, day, seconds, uniform_times
+from waveguide.forcing.time_axis import Times, day, longest_gap, seconds, uniform_times
 from waveguide.forcing.wind_file import WindFile, sampling_matrix, stress_chunks
 from waveguide.network.graph import Network
 
@@ -45,6 +45,8 @@ class Forcing:
         (Pa).
     covered : ndarray, shape (k,)
         Share of each step's wind that the record holds, 0 to 1.
+    bridged : float
+        Share of its values that were missing and bridged.
     """
 
     steps: Index
@@ -52,6 +54,7 @@ class Forcing:
     step: float
     stress: Series
     covered: Array
+    bridged: float = 0.0
 
 
 def record_forcing(
@@ -96,14 +99,15 @@ def record_forcing(
         east, north = (csr_array(part[:, cells], dtype=np.float64) for part in parts)
         for where, x, y in stress_chunks(wind, cells, first, last):
             stress[:, where] = east @ x.T + north @ y.T
-    fill_gaps(stress, wind.time[first:last], network, steps)
+    bridged = fill_gaps(stress, wind.time[first:last], _places(network, steps))
     record = seconds(wind.time[first:last] - wind.time[first])
     time = uniform_times(wind.time[first], wind.time[last - 1], step)
     wanted = step * np.arange(time.size, dtype=float)
     stress = without(resampled(stress, record, wanted), step, remove)
     share = np.hypot(samples.eastward, samples.northward)
     found = np.bincount(samples.row, share * covered, minlength=steps.size)
-    return Forcing(steps, time, step, stress, found / _total(samples, share, steps.size))
+    covered = found / _total(samples, share, steps.size)
+    return Forcing(steps, time, step, stress, covered, bridged)
 
 
 def _total(samples: Samples, share: Array, count: int) -> Array:
@@ -142,41 +146,51 @@ def event_forcing(
     return Forcing(steps, time, step, stress, np.ones(steps.size))
 
 
-def fill_gaps(stress: Series, time: Times, network: Network, steps: Index) -> None:
-    """Bridge missing values by straight lines, in place.
+def fill_gaps(stress: Series, time: Times, places: Sequence[str]) -> float:
+    """Bridge missing values by straight lines, in place; the share of values bridged.
 
     Parameters
     ----------
     stress : ndarray, shape (k, nt)
     time : ndarray of datetime64[ns], shape (nt,)
-    network : Network
-    steps : ndarray of int, shape (k,)
+    places : sequence of str
+        What a person calls each row.
+
+    Returns
+    -------
+    float
 
     Raises
     ------
     InputError
-        If more than three in a row are missing; it says where and when.
+        If values are missing for too long; it says where and when.
     """
-    problems = []
+    problems, bridged = [], 0
+    longest, usual = longest_gap(time), float(np.median(seconds(time[1:] - time[:-1])))
     for row, missing in _rows_with_gaps(stress):
         edges = np.nonzero(np.diff(np.concatenate([[0], missing.astype(int), [0]])))[0]
         lengths = edges[1::2] - edges[::2]
-        if lengths.max() > LONGEST_GAP:
+        if lengths.max() * usual > longest:
             run = int(np.argmax(lengths))
-            node = network.tail[steps[row]]
-            problems.append(
-                f"{day(time[edges[2 * run]])} to {day(time[edges[2 * run + 1] - 1])} near "
-                f"{network.lon[node]:.1f}°E {network.lat[node]:.1f}°N"
-            )
+            first, last = time[edges[2 * run]], time[edges[2 * run + 1] - 1]
+            problems.append(f"{day(first)} to {day(last)} at {places[row]}")
             continue
         known = np.nonzero(~missing)[0]
         stress[row, missing] = np.interp(np.nonzero(missing)[0], known, stress[row, known])
+        bridged += int(missing.sum())
     if problems:
         raise InputError(
-            f"wind: values are missing for more than {LONGEST_GAP:g} records in a row along "
-            f"{len(problems)} step(s) of the guide, first {problems[0]}; fill them, or choose a "
-            "period without them (wind.start, wind.end)"
+            f"wind: values are missing for more than {longest / SECONDS_PER_DAY:g} days in a row "
+            f"at {len(problems)} place(s), first {problems[0]}; fill them, or choose a period "
+            "without them (wind.start, wind.end)"
         )
+    return bridged / max(stress.size, 1)
+
+
+def _places(network: Network, steps: Index) -> list[str]:
+    tail = network.tail[steps]
+    return [f"{lon:.1f}°E {lat:.1f}°N"
+            for lon, lat in zip(network.lon[tail], network.lat[tail], strict=True)]
 
 
 def _rows_with_gaps(stress: Series) -> Iterator[tuple[int, NDArray[np.bool_]]]:

@@ -116,7 +116,8 @@ def target_response(influence: Influence, forcing: Forcing) -> Array:
     ndarray, shape (nt,)
         m.
     """
-    return contributions(influence, forcing, np.zeros(influence.step.size, np.int64), 1)[0]
+    one = np.zeros(influence.step.size, dtype=np.int64)
+    return np.asarray(contributions(influence, forcing, one, 1)[0])
 
 
 def spin_up(influence: Influence) -> float:
@@ -134,7 +135,7 @@ def spin_up(influence: Influence) -> float:
         return 0.0
     order = np.argsort(influence.delay)
     share = np.cumsum(influence.weight[order])
-    return float(influence.delay[order][np.searchsorted(share, SPUN_UP * share[-1])])
+    return float(influence.delay[order][int(np.searchsorted(share, SPUN_UP * share[-1]))])
 
 
 def covered_share(influence: Influence, forcing: Forcing) -> float:

@@ -17,8 +17,11 @@ Times = NDArray[np.datetime64]
 CALENDARS = ("standard", "gregorian", "proleptic_gregorian")
 """Calendars whose days are those of the sea; the first two are one."""
 
-LONGEST_GAP = 3.0
-"""Gaps of up to this many intervals are bridged by straight lines."""
+LONGEST_GAP = 10.0 * 86400.0
+"""Gaps of up to ten days (s), or of three records if that is longer, are bridged by straight
+lines."""
+
+_MOST_RECORDS = 3.0
 
 _UNEVEN = 1.6
 """Neighbouring intervals (28 and 31 days) that differ by less are no gap."""
@@ -115,12 +118,12 @@ def bridged_gaps(times: Times) -> list[str]:
     interval = seconds(times[1:] - times[:-1])
     usual = float(np.median(interval))
     gaps = np.nonzero(interval > _UNEVEN * usual)[0]
-    long = [k for k in gaps if interval[k] > (LONGEST_GAP + 1.5) * usual]
+    long = [k for k in gaps if interval[k] - usual > longest_gap(times)]
     if long:
         places = ", ".join(f"{day(times[k])} to {day(times[k + 1])}" for k in long[:5])
         raise InputError(
-            f"wind: records are missing in {len(long)} gap(s) longer than {LONGEST_GAP:g} "
-            f"intervals of {usual / 86400.0:g} days: {places}; fill them, or choose a period "
+            f"wind: records are missing in {len(long)} gap(s) longer than "
+            f"{longest_gap(times) / 86400.0:g} days: {places}; fill them, or choose a period "
             "without them (wind.start, wind.end)"
         )
     if not gaps.size:
@@ -128,6 +131,22 @@ def bridged_gaps(times: Times) -> list[str]:
     missing = int(np.round(interval[gaps] / usual - 1.0).sum())
     return [f"{missing} missing record(s) of the wind bridged by straight lines, the first after "
             f"{day(times[gaps[0]])}"]
+
+
+def longest_gap(times: Times) -> float:
+    """Longest time without values that is bridged (s).
+
+    Parameters
+    ----------
+    times : ndarray of datetime64[ns], shape (nt,)
+        At least two, rising.
+
+    Returns
+    -------
+    float
+    """
+    usual = float(np.median(seconds(times[1:] - times[:-1])))
+    return max(LONGEST_GAP, (_MOST_RECORDS + 0.5) * usual)
 
 
 def seconds(duration: NDArray[np.timedelta64]) -> Array:
