@@ -28,6 +28,7 @@ from waveguide.scenario.fields import (
     not_empty,
 )
 from waveguide.scenario.observed import Compare, Lookout, Observation, check_observations
+from waveguide.scenario.wind import Wind
 
 
 class Event(Table):
@@ -168,6 +169,8 @@ class Scenario(Table):
     observations : tuple of Observation
     compare : Compare or None
     lookout : Lookout
+    wind : Wind or None
+        What `response` is driven by.
     """
 
     name: Name = "scenario"
@@ -181,6 +184,7 @@ class Scenario(Table):
     observations: tuple[Observation, ...] = ()
     compare: Compare | None = None
     lookout: Lookout = Lookout()
+    wind: Wind | None = None
 
     @model_validator(mode="after")
     def _sound_observations(self) -> Scenario:
@@ -189,12 +193,7 @@ class Scenario(Table):
 
     @model_validator(mode="after")
     def _distinct_names(self) -> Scenario:
-        names = [target.name for target in self.targets]
-        twice = sorted({name for name in names if names.count(name) > 1})
-        if twice:
-            raise ValueError(
-                f"the targets need distinct names, and {', '.join(map(repr, twice))} is given twice"
-            )
+        _require_distinct_names(self.targets)
         return self
 
     @model_validator(mode="after")
@@ -235,8 +234,58 @@ class Comparison(Table):
     observations: Annotated[tuple[Observation, ...], AfterValidator(not_empty)]
     compare: Compare
     lookout: Lookout = Lookout()
+    wind: Wind | None = None
 
     @model_validator(mode="after")
     def _sound_observations(self) -> Comparison:
         check_observations(self.observations, self.compare)
         return self
+
+
+class WindScenario(Table):
+    """A scenario as `response` reads it: wind comes first, and an event need not be there.
+
+    Attributes
+    ----------
+    name, title, description, targets, waves, ocean, output
+        As in a `Scenario`.
+    wind : Wind
+    event, observations, compare, lookout
+        As in a `Scenario`; they are not looked at.
+    """
+
+    name: Name = "response"
+    title: Name
+    description: Prose = ""
+    targets: Annotated[tuple[Target, ...], AfterValidator(not_empty)]
+    waves: Waves
+    ocean: Ocean = Ocean()
+    output: Output = Output()
+    wind: Wind
+    event: Event | None = None
+    observations: tuple[Observation, ...] = ()
+    compare: Compare | None = None
+    lookout: Lookout = Lookout()
+
+    @model_validator(mode="after")
+    def _distinct_names(self) -> WindScenario:
+        _require_distinct_names(self.targets)
+        return self
+
+    @model_validator(mode="after")
+    def _real_ocean(self) -> WindScenario:
+        if self.ocean.phase_speed_m_s is not None:
+            raise ValueError(
+                "a uniform phase speed does not say how wind couples to the mode; leave "
+                "phase_speed_m_s out of [ocean]"
+            )
+        return self
+
+
+def _require_distinct_names(targets: tuple[Target, ...]) -> None:
+    names = [target.name for target in targets]
+    twice = sorted({name for name in names if names.count(name) > 1})
+    if twice:
+        raise ValueError(
+            f"the targets need distinct names, and {', '.join(map(repr, twice))} is given twice"
+        )
