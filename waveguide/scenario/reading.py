@@ -11,11 +11,11 @@ from typing import Any, TypeVar
 from pydantic import ValidationError
 
 from waveguide.errors import InputError
-from waveguide.scenario.model import Comparison, Scenario
+from waveguide.scenario.model import Comparison, Scenario, WindScenario
 from waveguide.scenario.problems import problem_lines, shown
 from waveguide.scenario.target_table import TargetTable, read_target_table
 
-Model = TypeVar("Model", Scenario, Comparison)
+Model = TypeVar("Model", Scenario, Comparison, WindScenario)
 
 
 def read_scenario(scenario: str | Path) -> Scenario:
@@ -58,8 +58,42 @@ def read_comparison(scenario: str | Path) -> Comparison:
     return _read(scenario, Comparison)
 
 
+def read_wind_scenario(scenario: str | Path) -> WindScenario:
+    """Read and check a scenario file with a [wind] table, in which an event may be missing.
+
+    Parameters
+    ----------
+    scenario : str or Path
+        The path of a TOML file, or the name of a shipped scenario.
+
+    Returns
+    -------
+    WindScenario
+
+    Raises
+    ------
+    InputError
+        With every problem of the file at once.
+    """
+    return _read(scenario, WindScenario)
+
+
+def scenario_title(scenario: str | Path) -> str:
+    """The title of a scenario, whatever its file asks for.
+
+    Parameters
+    ----------
+    scenario : str or Path
+
+    Returns
+    -------
+    str
+    """
+    return str(_parse(find_scenario(scenario)).get("title", ""))
+
+
 def _read(scenario: str | Path, model: type[Model]) -> Model:
-    """The file as one of the two models, or all its problems."""
+    """The file as one of the models, or all its problems."""
     path = find_scenario(scenario)
     document = _parse(path)
     listed = _listed_targets(document, path.parent)
