@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 from waveguide.scenario.model import Event, Ocean, Output, Scenario, Target, Waves
 from waveguide.scenario.observed import Compare, Lookout, Observation
+from waveguide.scenario.wind import Wind, WindPatch, WindStorm
 
 if TYPE_CHECKING:
     from pydantic_core import ErrorDetails
@@ -26,6 +27,9 @@ _KEYS: dict[str, tuple[str, ...]] = {
     "observations": tuple(Observation.model_fields),
     "compare": tuple(Compare.model_fields),
     "lookout": tuple(Lookout.model_fields),
+    "wind": tuple(Wind.model_fields),
+    "wind.patches": tuple(WindPatch.model_fields),
+    "wind.storms": tuple(WindStorm.model_fields),
 }
 
 _WAY_OUT = {
@@ -64,9 +68,25 @@ _WAY_OUT = {
     "compare.pairs": 'write pairs of observations, as in pairs = [["Callao", "Arica"]]',
     "compare.longest_lag_days": "write days, as in longest_lag_days = 30, or leave it out",
     "lookout": "write a [lookout] table, or leave it out to look at sea level",
+    "wind": "write a [wind] table with a record, a file, or patches and storms",
+    "wind.file": 'name a NetCDF file or a list of them, as in file = "winds.nc"',
+    "wind.stations": 'name a CSV of positions, as in stations = "stations.csv"',
+    "wind.start": "write date, time and zone, as in start = 1990-01-01T00:00:00Z",
+    "wind.end": "write date, time and zone, as in end = 1999-12-31T00:00:00Z",
+    "wind.patches.position": "write position = [longitude, latitude], in degrees east and north",
+    "wind.patches.start": "write date, time and zone, as in start = 2031-03-05T00:00:00Z",
+    "wind.patches.duration_days": "write the duration in days, as in duration_days = 10",
+    "wind.patches.length_km": "write kilometres along the wind, as in length_km = 1500",
+    "wind.patches.width_km": "write kilometres across the wind, as in width_km = 400",
+    "wind.patches.stress_pa": "write the strongest stress, as in stress_pa = 0.1",
+    "wind.patches.towards_degrees": "write where the wind blows to, 90 for a westerly",
+    "wind.storms.track": "write points [longitude, latitude, time], as in "
+    "track = [[120.0, 10.0, 2031-08-01T00:00:00Z], [115.0, 14.0, 2031-08-03T00:00:00Z]]",
+    "wind.storms.max_wind_m_s": "write the strongest wind, as in max_wind_m_s = 40",
+    "wind.storms.radius_km": "write the radius of the strongest wind, as in radius_km = 50",
 }
 
-_LISTS = ("targets", "observations")
+_LISTS = ("targets", "observations", "wind.patches", "wind.storms")
 """Tables that may come many times."""
 
 _RULES = {
@@ -150,6 +170,9 @@ def _subject(loc: tuple[int | str, ...], words: list[str], target_labels: Sequen
         return " ".join([target_labels[loc[1]], *words[1:]])
     if len(loc) > 1 and loc[0] == "observations" and isinstance(loc[1], int):
         return " ".join([f"observation {loc[1] + 1}", *words[1:]])
+    if len(loc) > 2 and loc[0] == "wind" and isinstance(loc[2], int):
+        one = "patch" if loc[1] == "patches" else "storm"
+        return " ".join([f"wind {one} {loc[2] + 1}", *words[2:]])
     return ".".join(words)
 
 
