@@ -13,14 +13,18 @@ from waveguide.scenario.model import (
     Scenario,
     Target,
     Waves,
+    WindScenario,
 )
 from waveguide.scenario.observed import Compare, Lookout, Observation
 from waveguide.scenario.reading import (
     find_scenario,
     read_comparison,
     read_scenario,
+    read_wind_scenario,
+    scenario_title,
     shipped_scenarios,
 )
+from waveguide.scenario.wind import Wind, WindPatch, WindStorm
 
 __all__ = [
     "Compare",
@@ -33,8 +37,14 @@ __all__ = [
     "Scenario",
     "Target",
     "Waves",
+    "Wind",
+    "WindPatch",
+    "WindScenario",
+    "WindStorm",
     "find_scenario",
     "read_comparison",
     "read_scenario",
+    "read_wind_scenario",
+    "scenario_title",
     "shipped_scenarios",
 ]
