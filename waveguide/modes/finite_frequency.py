@@ -56,7 +56,7 @@ class Guide:
     mode : ndarray of int, shape (nmode,)
         Mode numbers.
     eigenvalues : callable
-        (l, ω) ↦ κ_n (1/m), shape (nmode,), increasing.
+        (l, ω) ↦ κ_n (1/m), at least `nmode` of them, increasing.
     """
 
     f: float
@@ -172,12 +172,12 @@ def _guide(solve: Callable[[Rotation, int], Array], f: float, count: int, gravit
 
     def eigenvalues(wavenumber: float, frequency: float) -> Array:
         rotation = Rotation(f * f - frequency**2, wavenumber, gravity)
-        if rotation.floating:
-            return solve(rotation, count)
-        return solve(rotation, count + 1)[first:]
+        found = solve(rotation, count) if rotation.floating else solve(rotation, count + 1)[first:]
+        # a nearly flat bottom holds fewer modes; the missing ones have no speed at all
+        return np.pad(found, (0, count + 1 - first - found.size), constant_values=np.inf)
 
-    found = eigenvalues(0.0, 0.0).size
-    return Guide(f, first + np.arange(found), eigenvalues)
+    modes = int(np.isfinite(eigenvalues(0.0, 0.0)).sum())
+    return Guide(f, first + np.arange(modes), eigenvalues)
 
 
 def dispersion(guide: Guide, frequency: float) -> Dispersion:
