@@ -24,6 +24,7 @@ from waveguide.scenario.reading import (
     scenario_title,
     shipped_scenarios,
 )
+from waveguide.scenario.uncertainty import Planning, Uncertainty
 from waveguide.scenario.wind import Wind, WindPatch, WindStorm
 
 __all__ = [
@@ -34,8 +35,10 @@ __all__ = [
     "Observation",
     "Ocean",
     "Output",
+    "Planning",
     "Scenario",
     "Target",
+    "Uncertainty",
     "Waves",
     "Wind",
     "WindPatch",

@@ -28,6 +28,7 @@ from waveguide.scenario.fields import (
     not_empty,
 )
 from waveguide.scenario.observed import Compare, Lookout, Observation, check_observations
+from waveguide.scenario.uncertainty import Planning, Uncertainty
 from waveguide.scenario.wind import Wind
 
 
@@ -169,6 +170,8 @@ class Scenario(Table):
     observations : tuple of Observation
     compare : Compare or None
     lookout : Lookout
+    uncertainty : Uncertainty
+    plan : Planning
     wind : Wind or None
         What `response` is driven by.
     """
@@ -184,6 +187,8 @@ class Scenario(Table):
     observations: tuple[Observation, ...] = ()
     compare: Compare | None = None
     lookout: Lookout = Lookout()
+    uncertainty: Uncertainty = Uncertainty()
+    plan: Planning = Planning()
     wind: Wind | None = None
 
     @model_validator(mode="after")
@@ -215,8 +220,8 @@ class Comparison(Table):
 
     Attributes
     ----------
-    name, title, description, waves, ocean, output, targets, lookout
-        As in a `Scenario`; targets are not looked at.
+    name, title, description, waves, ocean, output, targets, lookout, uncertainty, plan
+        As in a `Scenario`; targets, uncertainty and plan are not looked at.
     event : Event or None
         Its arrival is looked for in every record.
     observations : tuple of Observation
@@ -234,6 +239,8 @@ class Comparison(Table):
     observations: Annotated[tuple[Observation, ...], AfterValidator(not_empty)]
     compare: Compare
     lookout: Lookout = Lookout()
+    uncertainty: Uncertainty = Uncertainty()
+    plan: Planning = Planning()
     wind: Wind | None = None
 
     @model_validator(mode="after")

@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 from waveguide.scenario.model import Event, Ocean, Output, Scenario, Target, Waves
 from waveguide.scenario.observed import Compare, Lookout, Observation
+from waveguide.scenario.uncertainty import Planning, Uncertainty
 from waveguide.scenario.wind import Wind, WindPatch, WindStorm
 
 if TYPE_CHECKING:
@@ -27,6 +28,8 @@ _KEYS: dict[str, tuple[str, ...]] = {
     "observations": tuple(Observation.model_fields),
     "compare": tuple(Compare.model_fields),
     "lookout": tuple(Lookout.model_fields),
+    "uncertainty": tuple(Uncertainty.model_fields),
+    "plan": tuple(Planning.model_fields),
     "wind": tuple(Wind.model_fields),
     "wind.patches": tuple(WindPatch.model_fields),
     "wind.storms": tuple(WindStorm.model_fields),
@@ -68,6 +71,23 @@ _WAY_OUT = {
     "compare.pairs": 'write pairs of observations, as in pairs = [["Callao", "Arica"]]',
     "compare.longest_lag_days": "write days, as in longest_lag_days = 30, or leave it out",
     "lookout": "write a [lookout] table, or leave it out to look at sea level",
+    "uncertainty": "write an [uncertainty] table, or leave it out to take the usual errors",
+    "uncertainty.members": "write how many members the ensemble has, as in members = 8192",
+    "uncertainty.seed": "write a whole number of 0 or more, as in seed = 1",
+    "uncertainty.mean_flow_m_s": "write a current in m/s, as in mean_flow_m_s = 0.2",
+    "uncertainty.start_days": "write days, as in start_days = 0.5",
+    "plan": "write a [plan] table, or leave it out",
+    "plan.chance_percent": "write the chance of catching the signal, as in chance_percent = 80",
+    "plan.threshold_m": "write sea level in metres, as in threshold_m = 0.02",
+    **{
+        f"uncertainty.{key}": f"write a {what}, as in {key} = {field.default:g}"
+        for what, ends in (
+            ("standard deviation", ("_percent", "position_km", "width_km")),
+            ("correlation length", "_scale_km"),
+        )
+        for key, field in Uncertainty.model_fields.items()
+        if key.endswith(ends)
+    },
     "wind": "write a [wind] table with a record, a file, or patches and storms",
     "wind.file": 'name a NetCDF file or a list of them, as in file = "winds.nc"',
     "wind.stations": 'name a CSV of positions, as in stations = "stations.csv"',
