@@ -41,7 +41,9 @@ def _ragged() -> dict[str, list[object]]:
     """Routes, legs and vertices of ROUTES as columns."""
     from waveguide.geodesy import geodesic_length
 
-    table: dict[str, list[object]] = {n: [] for n, v in ARRIVALS.items() if len(v.dims) == 1}
+    table: dict[str, list[object]] = {
+        n: [] for n, v in ARRIVALS.items() if v.dims in (("route",), ("leg",), ("vertex",))
+    }
     for route, (target, mode, kind, via, legs) in enumerate(ROUTES):
         distance = time = 0.0
         for leg_kind, line, speed in legs:
@@ -55,7 +57,9 @@ def _ragged() -> dict[str, list[object]]:
                 "leg_from_longitude": lon[0], "leg_from_latitude": lat[0],
                 "leg_to_longitude": lon[-1], "leg_to_latitude": lat[-1],
                 "leg_time_days": days[-1] - time, "leg_phase_speed_m_s": speed,
-                "leg_amplitude_factor": 0.8,
+                "leg_amplitude_factor": 0.8, "leg_energy_share": 0.64, "leg_lost_rossby": 0.2,
+                "leg_lost_friction": 0.1, "leg_lost_damping": 0.0, "leg_lost_scattering": 0.0,
+                "leg_other_ways": 0.06, "leg_critical_period_days": 90.0,
             }.items():  # fmt: skip
                 table[column].append(value)
             for column, values in {
@@ -93,6 +97,10 @@ def build_arrivals() -> xr.Dataset:
         status[row] = "reached"
         rows["front_time_days"][row] = table["route_front_time_days"][route]
         rows["path_length_km"][row] = table["route_length_km"][route]
+        front = rows["front_time_days"][row]
+        for name, later in (("half_height", 3.0), ("peak", 5.0), ("centroid", 5.5)):
+            rows[f"{name}_time_days"][row] = front + later
+        rows["peak_ratio"][row] = 0.5
         rows["amplitude_ratio"][row] = table["route_amplitude_ratio"][route]
         rows["mean_speed_m_s"][row] = (
             rows["path_length_km"][row] * 1e3 / rows["front_time_days"][row] / 86400.0
@@ -107,6 +115,14 @@ def build_arrivals() -> xr.Dataset:
         "status": status, "caution": caution, "front_date": date, **rows,
         **{name: column for name, column in table.items() if name not in ("target", "mode")
            and not name.startswith("target_")},
+    }  # fmt: skip
+    time = np.arange(0.0, 120.0, 0.5)
+    peak = np.nan_to_num(rows["peak_time_days"])[..., None]
+    wave = np.where(peak > 0.0, 0.5 * np.exp(-(((time - peak) / 3.0) ** 2)), 0.0)
+    values |= {
+        "time": start + (time * 86400e9).astype("timedelta64[ns]"), "time_days": time,
+        "source_waveform": np.exp(-(((time - 5.0) / 3.0) ** 2)), "waveform": wave,
+        "mode_share": [0.7, 0.3], "waveform_sum": 0.7 * wave[:, 0] + 0.3 * wave[:, 1],
     }  # fmt: skip
     attributes = dict.fromkeys(ARRIVALS_ATTRIBUTES, "") | {
         "Conventions": "CF-1.11",

@@ -13,11 +13,23 @@ from waveguide.network.attach import distance_to_water
 from waveguide.network.packaged import family_of, packaged_network
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import used_files
+from waveguide.propagation.answers import mode_answer
 from waveguide.propagation.arrivals import REACHED, Arrival, mode_arrivals
-from waveguide.propagation.modes import atlas_mode, uniform_mode
+from waveguide.propagation.dispersion import interior_damping_rate
+from waveguide.propagation.modes import atlas_mode, friction_of_steps, uniform_mode
+from waveguide.propagation.sources import (
+    SourceFunction,
+    boxcar_burst,
+    gaussian_burst,
+    series_source,
+    step_rise,
+)
+from waveguide.propagation.step_response import Conditions
+from waveguide.propagation.waveform import default_window
 from waveguide.report.attributes import arrivals_attributes
 from waveguide.report.dataset import arrivals_dataset
 from waveguide.scenario import Scenario
+from waveguide.scenario.source_series import read_source_series
 
 if TYPE_CHECKING:
     import xarray as xr
@@ -52,14 +64,75 @@ def arrivals(scenario: Scenario, progress: Progress | None = None) -> xr.Dataset
     say = progress or (lambda stage: None)
     say("reading depths")
     check_positions(scenario)
-    answers: dict[int, list[Arrival]] = {}
-    for mode in scenario.waves.modes:
-        say(f"phase speeds of mode {mode}")
-        network, carried = _mode(scenario, mode, say)
+    guides = {mode: _mode(scenario, mode, say) for mode in scenario.waves.modes}
+    found: dict[int, list[Arrival]] = {}
+    for mode, (network, carried) in guides.items():
         say(f"routes of mode {mode}")
-        answers[mode] = _answers(scenario, network, carried)
-    _require_an_answer(scenario, answers)
+        found[mode] = _answers(scenario, network, carried)
+    _require_an_answer(scenario, found)
+    source = source_function(scenario)
+    window = _window(scenario, found, source)
+    omega = _omega(scenario)
+    answers = {}
+    for mode, (network, carried) in guides.items():
+        say(f"waveforms of mode {mode}")
+        answers[mode] = mode_answer(
+            network, carried, found[mode], source, window, omega,
+            _conditions(scenario, network, carried),
+        )
     return arrivals_dataset(scenario, answers, arrivals_attributes(scenario, used_files()))
+
+
+def _omega(scenario: Scenario) -> float:
+    """Dominant angular frequency (rad/s)."""
+    return 2.0 * np.pi / (scenario.waves.period_days * SECONDS_PER_DAY)
+
+
+def source_function(scenario: Scenario) -> SourceFunction:
+    """Sea level at the source as a function of time.
+
+    Parameters
+    ----------
+    scenario : Scenario
+
+    Returns
+    -------
+    SourceFunction
+        With peak 1, unless it is a series of the user's own.
+    """
+    event = scenario.event
+    if event.series_file is not None:
+        return series_source(*read_source_series(event.series_file, event.start))
+    shapes = {"gaussian": gaussian_burst, "boxcar": boxcar_burst, "step": step_rise}
+    return shapes[event.shape](event.duration_days * SECONDS_PER_DAY)
+
+
+def _window(
+    scenario: Scenario, found: dict[int, list[Arrival]], source: SourceFunction
+) -> float:
+    """How long waveforms go on (s)."""
+    if scenario.waves.window_days is not None:
+        return scenario.waves.window_days * SECONDS_PER_DAY
+    headline = [a.routes[0].time for rows in found.values() for a in rows if a.routes]
+    return default_window(headline, source)
+
+
+def _damping(scenario: Scenario, mode: ModeAtNodes) -> float:
+    """Interior damping of a mode (1/s): that of mode 1 times (c₁/c)², by median speeds."""
+    days = scenario.waves.damping_days
+    if days is None or mode.number == 0:
+        return 0.0
+    first = atlas_mode(packaged_network("baroclinic")[1], 1).speed
+    rate = interior_damping_rate(
+        np.nanmedian(mode.speed), 1.0 / (days * SECONDS_PER_DAY), np.nanmedian(first)
+    )
+    return float(rate)
+
+
+def _conditions(scenario: Scenario, network: Network, mode: ModeAtNodes) -> Conditions:
+    """Friction and damping of a mode."""
+    friction = friction_of_steps(network, mode, scenario.waves.drag_m_s)
+    return Conditions(friction=friction, damping=_damping(scenario, mode))
 
 
 def source_box(scenario: Scenario) -> Box:
@@ -73,7 +146,7 @@ def _answers(scenario: Scenario, network: Network, mode: ModeAtNodes) -> list[Ar
     return mode_arrivals(
         network, mode, packaged_bathymetry(), source_box(scenario), scenario.event.centre,
         [target.position for target in scenario.targets],
-        2.0 * np.pi / (scenario.waves.period_days * SECONDS_PER_DAY),
+        _omega(scenario), _damping(scenario, mode), scenario.waves.drag_m_s,
     )
 
 

@@ -94,8 +94,20 @@ ARRIVALS: dict[str, Variable] = {
     "status": Variable(_ROW, "text", "reached, or why there is no arrival"),
     "front_time_days": _number(_ROW, "time from the start of the event to the front", "day"),
     "front_date": Variable(_ROW, "date", "date of the front (UTC)", None, "time"),
-    "amplitude_ratio": _number(_ROW, "sea level at the target over sea level at the source", "1"),
-    "amplitude_m": _number(_ROW, "sea level at the target", "m"),
+    "half_height_time_days": _number(
+        _ROW, "time from the start of the event until sea level first reaches half of its peak", "day"
+    ),
+    "peak_time_days": _number(_ROW, "time from the start of the event to the peak", "day"),
+    "centroid_time_days": _number(
+        _ROW, "time from the start of the event to the centroid of squared sea level", "day"
+    ),
+    "peak_ratio": _number(
+        _ROW, "peak of sea level at the target over that at the source, all routes together", "1"
+    ),
+    "amplitude_ratio": _number(
+        _ROW, "sea level at the target over that at the source at the dominant period", "1"
+    ),
+    "amplitude_m": _number(_ROW, "peak of sea level at the target", "m"),
     "path_length_km": _number(_ROW, "length of the route", "km"),
     "mean_speed_m_s": _number(_ROW, "length of the route over the time of the front", "m s-1"),
     "source_distance_km": _number(_ROW, "distance from the source to the guide", "km"),
@@ -128,11 +140,33 @@ ARRIVALS: dict[str, Variable] = {
     "leg_time_days": _number(_LEG, "time the front takes along the leg", "day"),
     "leg_phase_speed_m_s": _number(_LEG, "length of the leg over its time", "m s-1"),
     "leg_amplitude_factor": _number(_LEG, "amplitude at the end over that at the start", "1"),
+    "leg_energy_share": _number(_LEG, "energy at the end of the leg over that at the source", "1"),
+    "leg_lost_rossby": _number(_LEG, "share of the source's energy radiated as Rossby waves", "1"),
+    "leg_lost_friction": _number(_LEG, "share of the source's energy lost to bottom friction", "1"),
+    "leg_lost_damping": _number(_LEG, "share of the source's energy lost to damping", "1"),
+    "leg_lost_scattering": _number(_LEG, "share of the source's energy scattered", "1"),
+    "leg_other_ways": _number(
+        _LEG, "share of the source's energy that goes other ways at junctions and gaps", "1"
+    ),
+    "leg_critical_period_days": _number(
+        _LEG, "median critical period of the poleward part of the leg", "day"
+    ),
     "vertex_leg": Variable(_VERTEX, "integer", "index of the vertex's leg"),
     "vertex_longitude": _longitude("vertex", "the vertex"),
     "vertex_latitude": _latitude("vertex", "the vertex"),
     "vertex_distance_km": _number(_VERTEX, "distance from the source along the route", "km"),
     "vertex_time_days": _number(_VERTEX, "time of the front at the vertex", "day"),
+    "time": Variable(("time",), "date", "date of the waveforms (UTC)", None, "time", True),
+    "time_days": _number(("time",), "time from the start of the event", "day"),
+    "source_waveform": _number(("time",), "sea level at the source over its peak", "1"),
+    "waveform": _number(
+        ("target", "mode", "time"), "sea level at the target over the peak at the source", "1"
+    ),
+    "waveform_sum": _number(
+        ("target", "time"),
+        "sea level of all modes, each weighted by its share in the sea level at the source", "1",
+    ),
+    "mode_share": _number(("mode",), "share of the mode in the sea level at the source", "1"),
 }
 """Arrivals: one row for each target and mode, reached or not, and the routes behind them.
 

@@ -14,8 +14,8 @@ from waveguide.network.attach import Ties
 from waveguide.network.graph import Network, StepKind
 from waveguide.propagation.arrivals import REACHED, Arrival
 from waveguide.propagation.legs import legs_of_route
-from waveguide.propagation.losses import ModeAtNodes, step_physics
-from waveguide.propagation.modes import uniform_mode
+from waveguide.propagation.losses import step_physics
+from waveguide.propagation.modes import ModeAtNodes, uniform_mode
 from waveguide.propagation.routes import Route
 from waveguide.propagation.transfer import Path
 

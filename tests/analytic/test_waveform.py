@@ -14,7 +14,7 @@ from waveguide.constants import EARTH_RADIUS, SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.network.graph import Network
 from waveguide.propagation.dispersion import amplification_rate, dispersive_group_speed
-from waveguide.propagation.losses import ModeAtNodes
+from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.sources import (
     SourceFunction,
     boxcar_burst,

@@ -9,7 +9,8 @@ import numpy as np
 from waveguide.forcing.projection import Forcing
 from waveguide.geodesy import geodesic_length
 from waveguide.network.graph import Network, StepKind
-from waveguide.propagation.losses import ModeAtNodes, StepPhysics, step_physics
+from waveguide.propagation.losses import StepPhysics, step_physics
+from waveguide.propagation.modes import ModeAtNodes
 
 
 def line_network(lon, lat, equatorial=False) -> Network:

@@ -138,7 +138,7 @@ def _forced_potential(network: Network, mode: ModeAtNodes, physics: StepPhysics)
 
 def influence(
     network: Network, mode: ModeAtNodes, physics: StepPhysics, node: int, factor: float,
-    longest: float, faintest: float = FAINTEST,
+    longest: float, beyond: float = 0.0, faintest: float = FAINTEST,
 ) -> Influence:
     """Follow the guide upstream from a target.
 
@@ -153,6 +153,8 @@ def influence(
         Share of the node's amplitude that the target feels.
     longest : float
         Delay beyond which the wind is forgotten (s).
+    beyond : float
+        Time from the node to the target, which may lie between two nodes (s).
     faintest : float
         Share of amplitude below which a way is not followed further.
 
@@ -166,8 +168,8 @@ def influence(
         step=step,
         parent=parent,
         weight=at_target * step_increment(network, mode, physics)[step],
-        delay=delay + _time_after_middle(network, physics)[step],
-        head_delay=delay,
+        delay=np.maximum(delay + _time_after_middle(network, physics)[step] + beyond, 0.0),
+        head_delay=np.maximum(delay + beyond, 0.0),
         gain=at_target / physics.potential[network.head[step]],
         distance=distance,
     )

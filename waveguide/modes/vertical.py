@@ -127,10 +127,10 @@ def phase_speeds(
     return _extrapolated_speed(rough, _slowness(*fine, number, rigid_lid, start=rough))
 
 
-def surface_values(
+def end_values(
     n2: ArrayLike, depth: ArrayLike, bottom: ArrayLike, phase_speed: ArrayLike
-) -> Array:
-    """Surface pressure p(0) of modes normalised by ∫ p² dz = 1, of many columns at once.
+) -> tuple[Array, Array]:
+    """Pressure at surface and bottom of modes with ∫ p² dz = 1, of many columns at once.
 
     Parameters
     ----------
@@ -141,8 +141,8 @@ def surface_values(
 
     Returns
     -------
-    ndarray, shape (ncolumn, nmode)
-        p(0) (m^-1/2), positive.
+    surface, floor : ndarray, shape (ncolumn, nmode)
+        |p(0)| and |p(−H)| (m^-1/2).
 
     Raises
     ------
@@ -160,7 +160,8 @@ def surface_values(
         doubled += (p**2 + (k * w) ** 2) * d - p * w
         w, p = w * co + p * s / k, p * co - w * k * s
         doubled += p * w
-    return np.asarray(np.abs(p) / np.sqrt(0.5 * doubled))
+    scale = 1.0 / np.sqrt(0.5 * doubled)
+    return np.abs(p) * scale, scale
 
 
 def vertical_modes(

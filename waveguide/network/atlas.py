@@ -18,9 +18,9 @@ from waveguide.constants import BETA_EQUATOR, EARTH_RADIUS, deformation_radius
 from waveguide.geodesy import destination
 from waveguide.modes.vertical import (
     barotropic_speed,
+    end_values,
     phase_speeds,
     sill_share,
-    surface_values,
     vertical_modes,
 )
 from waveguide.network.graph import Network, StepKind
@@ -50,6 +50,9 @@ class Atlas:
         Modal pressure at the coast F(0,0) with ∫ F² dz = 1 over the coastal wall (m^-1/2).
     gap_share : ndarray, shape (k, ngap)
         Share of the mode that clears the sill of each gap, 0 to 1.
+    decay_per_drag : ndarray, shape (k, n)
+        Bottom friction: decay per metre and unit linear drag r (s/m²). Over a flat bottom it is
+        F(−H)²/(2c): see `waveguide.propagation.step_response.flat_bottom_friction`.
     """
 
     mode: Index
@@ -57,6 +60,7 @@ class Atlas:
     phase_speed: Array
     coastal_value: Array
     gap_share: Array
+    decay_per_drag: Array
 
     def row(self, mode: int) -> int:
         """Row of a mode, −1 if the atlas does not hold it."""
@@ -191,6 +195,9 @@ def barotropic_atlas(network: Network, depths: Bathymetry) -> Atlas:
         coastal_value=np.where(known, 1.0 / np.sqrt(np.where(known, depth, 1.0)), np.nan)[None, :],
         # F is uniform with depth, so the share is that of the water above the sill
         gap_share=np.minimum(network.gap_sill / _at_gaps(network, depth), 1.0)[None, :],
+        decay_per_drag=np.where(
+            known, 0.5 / np.where(known, depth * speed, 1.0), np.nan
+        )[None, :],
     )
 
 
@@ -223,6 +230,7 @@ def flat_bottom_atlas(
     count = len(BAROCLINIC_MODES)
     speed = np.full((count, network.size), np.nan)
     value = np.full((count, network.size), np.nan)
+    decay = np.full((count, network.size), np.nan)
     n2 = climatology.profiles(network.lon[known], network.lat[known]).n2
     for start in range(0, known.size, 1000):
         nodes, columns = known[start : start + 1000], n2[start : start + 1000]
@@ -231,7 +239,9 @@ def flat_bottom_atlas(
             column = (columns[usable], climatology.depth, depth[nodes[usable]])
             c = phase_speeds(*column, count)
             speed[:, nodes[usable]] = c.T
-            value[:, nodes[usable]] = surface_values(*column, c).T
+            surface, floor = end_values(*column, c)
+            value[:, nodes[usable]] = surface.T
+            decay[:, nodes[usable]] = (floor**2 / (2.0 * c)).T
         report(min(start + 1000, known.size), known.size)
     share = _gap_shares(network, climatology, n2, depth, known)
     return Atlas(
@@ -240,6 +250,7 @@ def flat_bottom_atlas(
         np.stack([_through_straits(network, row) for row in speed]),
         np.stack([_through_straits(network, row) for row in value]),
         share,
+        np.stack([_through_straits(network, row) for row in decay]),
     )
 
 

@@ -19,6 +19,7 @@ _UNITS = {
     "lon": "degrees_east", "lat": "degrees_north", "offshore": "degree", "length": "m",
     "gap_width": "m", "gap_length": "m", "gap_sill": "m", "depth": "m",
     "phase_speed": "m s-1", "coastal_value": "m-0.5",
+    "decay_per_drag": "s m-2",
 }
 _MEANING = {
     "lon": "longitude of node",
@@ -39,6 +40,7 @@ _MEANING = {
     "depth": "depth of the adjoining deep water",
     "phase_speed": "long-wave phase speed",
     "coastal_value": "modal pressure at the coast, F(0,0)",
+    "decay_per_drag": "decay by bottom friction per metre and unit linear drag",
     "gap_share": "share of the mode that clears the sill of a gap",
 }
 
@@ -70,6 +72,7 @@ def save_network(path: Path, network: Network, atlas: Atlas, attributes: dict[st
         _write(file, "phase_speed", ("mode", "node"), atlas.phase_speed)
         _write(file, "coastal_value", ("mode", "node"), atlas.coastal_value)
         _write(file, "gap_share", ("mode", "gap"), atlas.gap_share)
+        _write(file, "decay_per_drag", ("mode", "node"), atlas.decay_per_drag)
 
 
 def _write(file: object, name: str, dimensions: tuple[str, ...], values: NDArray[np.generic]
@@ -123,5 +126,6 @@ def load_network(path: Path) -> tuple[Network, Atlas]:
         phase_speed=read["phase_speed"].astype(float),
         coastal_value=read["coastal_value"].astype(float),
         gap_share=read["gap_share"].astype(float),
+        decay_per_drag=read["decay_per_drag"].astype(float),
     )
     return Network(**values), atlas

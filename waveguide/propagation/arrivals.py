@@ -13,7 +13,8 @@ from waveguide.network.search import Searcher
 from waveguide.ocean.bathymetry import Bathymetry
 from waveguide.propagation.cautions import route_cautions
 from waveguide.propagation.legs import Leg, legs_of_route
-from waveguide.propagation.losses import ModeAtNodes, step_physics
+from waveguide.propagation.losses import step_physics
+from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.routes import Route, RouteFinder
 
 Array = NDArray[np.float64]
@@ -52,6 +53,7 @@ class Arrival:
 def mode_arrivals(
     network: Network, mode: ModeAtNodes, depths: Bathymetry, source: Box,
     source_place: Position, targets: list[Position], omega: float, damping: float = 0.0,
+    drag: float = 0.0,
 ) -> list[Arrival]:
     """Arrivals of one mode at every target.
 
@@ -70,13 +72,15 @@ def mode_arrivals(
         Dominant angular frequency (rad/s).
     damping : float
         Interior damping (1/s).
+    drag : float
+        Coefficient of the linear bottom stress (m/s).
 
     Returns
     -------
     list of Arrival
         One for each target.
     """
-    physics = step_physics(network, mode, omega, damping)
+    physics = step_physics(network, mode, omega, damping, drag)
     ties = tie(network, mode.speed, source, depths)
     finder = RouteFinder(Searcher.of(network), physics, ties) if ties.node.size else None
     arrivals = []

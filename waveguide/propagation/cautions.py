@@ -9,7 +9,8 @@ from waveguide.constants import SECONDS_PER_DAY, coriolis
 from waveguide.network.attach import Ties
 from waveguide.network.graph import Network, StepKind
 from waveguide.propagation.equator import equatorial_radius
-from waveguide.propagation.losses import ModeAtNodes, critical_share
+from waveguide.propagation.losses import critical_share
+from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.routes import Route
 
 Array = NDArray[np.float64]

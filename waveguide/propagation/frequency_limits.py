@@ -24,7 +24,7 @@ from waveguide.constants import coriolis
 from waveguide.network.graph import Network, StepKind
 from waveguide.propagation.cautions import FASTEST_SHARE_OF_F
 from waveguide.propagation.dispersion import critical_frequency
-from waveguide.propagation.losses import ModeAtNodes
+from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.near_equator import floored_coriolis
 from waveguide.propagation.step_response import step_speeds
 

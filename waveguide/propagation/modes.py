@@ -2,11 +2,83 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
+from numpy.typing import NDArray
 
 from waveguide.network.atlas import Atlas
-from waveguide.network.graph import Network
-from waveguide.propagation.losses import ModeAtNodes
+from waveguide.network.graph import Network, StepKind
+
+Array = NDArray[np.float64]
+
+MATCHING = 2.0
+"""Distance from the equator, in L_e, where a coast takes over from a junction."""
+
+BAROTROPIC_MATCHING = 1.0
+"""The same for the barotropic mode, whose L_e of 3000 km leaves no room for two."""
+
+HIGHEST_SCALED_FREQUENCY = 3.0
+"""ω̂ up to which the wall solution holds."""
+
+
+@dataclass(frozen=True)
+class ModeAtNodes:
+    """One mode at the nodes and gaps of a network.
+
+    Attributes
+    ----------
+    number : int
+    speed, coastal_value : ndarray, shape (n,)
+        Phase speed (m/s) and F(0,0) (m^-1/2), NaN where the mode does not exist.
+    gap_share : ndarray, shape (k,)
+        Share of the mode that clears the sill of each gap.
+    decay_per_drag : ndarray, shape (n,)
+        Decay by bottom friction per metre and unit linear drag (s/m²).
+    """
+
+    number: int
+    speed: Array
+    coastal_value: Array
+    gap_share: Array
+    decay_per_drag: Array
+
+    @property
+    def matching(self) -> float:
+        """Distance from the equator where a coast takes over, in L_e."""
+        return MATCHING if self.number > 0 else BAROTROPIC_MATCHING
+
+
+def friction_of_steps(network: Network, mode: ModeAtNodes, drag: float) -> Array:
+    """Decay by bottom friction along every step (1/m), shape (m,).
+
+    Parameters
+    ----------
+    network : Network
+    mode : ModeAtNodes
+    drag : float
+        Coefficient r of the linear bottom stress ρ r v (m/s).
+    """
+    decay = np.nan_to_num(mode.decay_per_drag)
+    return drag * 0.5 * (decay[network.tail] + decay[network.head])
+
+
+def stretch_lengths(network: Network) -> Array:
+    """Length of the equatorial stretch that each step belongs to (m), 0 off the equator."""
+    equator = network.kind == StepKind.EQUATOR
+    inner = np.where(network.equatorial[network.head], network.head, network.tail)
+    line = np.where(equator & network.equatorial[inner], network.line[inner], -1)
+    total = np.bincount(line + 1, weights=network.length, minlength=1)
+    return np.where(line >= 0, total[line + 1], np.where(equator, network.length, 0.0))
+
+
+def poleward_nodes(network: Network) -> NDArray[np.bool_]:
+    """Coast nodes from which the signal travels towards the pole: an eastern boundary."""
+    coast = network.kind == StepKind.COAST
+    tail, head = network.tail[coast], network.head[coast]
+    poleward = np.zeros(network.size, dtype=bool)
+    poleward[tail] = np.abs(network.lat[head]) > np.abs(network.lat[tail])
+    return poleward
 
 
 def atlas_mode(atlas: Atlas, mode: int) -> ModeAtNodes:
@@ -24,7 +96,8 @@ def atlas_mode(atlas: Atlas, mode: int) -> ModeAtNodes:
     """
     row = atlas.row(mode)
     return ModeAtNodes(
-        mode, atlas.phase_speed[row], atlas.coastal_value[row], atlas.gap_share[row]
+        mode, atlas.phase_speed[row], atlas.coastal_value[row], atlas.gap_share[row],
+        atlas.decay_per_drag[row],
     )
 
 
@@ -41,9 +114,9 @@ def uniform_mode(network: Network, mode: int, speed: float) -> ModeAtNodes:
     Returns
     -------
     ModeAtNodes
-        With the same coastal value everywhere and no sills.
+        With the same coastal value everywhere, no sills and no bottom friction.
     """
     return ModeAtNodes(
         mode, np.full(network.size, speed), np.ones(network.size),
-        np.ones(network.gap_width.size),
+        np.ones(network.gap_width.size), np.zeros(network.size),
     )

@@ -2,9 +2,9 @@
 
 Within the matching distance of a junction (see :mod:`waveguide.propagation.equator`) sea level
 follows the wall solution W(ŷ, ω): its modulus shapes the coast between the equator and the
-matching latitude, and its phase is the lag along it. A western wall is the eastern one read
-backwards (reciprocity: the product of both transfer functions is the ratio of f), so between two
-latitudes the lag is the same, arg W(ŷ_far) − arg W(ŷ_near), and the modulus is ŷ/|W|.
+matching latitude, and its phase is the lag along it. A western wall has its own solution; its
+lag between two latitudes is that of the eastern one read backwards (reciprocity), to within 2.5°
+from ŷ = 0.5 outwards.
 
 The wall of that solution is meridional. A real coast between two latitudes is longer; what is in
 excess of its extent in latitude adds the lag of a wave that runs along it with speed c.
@@ -19,32 +19,32 @@ from numpy.typing import NDArray
 
 from waveguide.constants import BETA_EQUATOR, coriolis
 from waveguide.network.graph import Network
-from waveguide.propagation.equator import eastern_wall, scaled_frequency
-from waveguide.propagation.losses import HIGHEST_SCALED_FREQUENCY, ModeAtNodes, poleward_nodes
+from waveguide.propagation.equator import eastern_wall, scaled_frequency, western_wall
+from waveguide.propagation.modes import HIGHEST_SCALED_FREQUENCY, ModeAtNodes, poleward_nodes
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 _CELLS = 40
-_NEAREST = 0.05  # ŷ that stands for the equator on a western wall, where sea level → 0
 
 
 @dataclass(frozen=True)
 class WallTable:
-    """The eastern wall solution between the equator and the matching latitude.
+    """Wall solutions between the equator and the matching latitude.
 
     Attributes
     ----------
     matching : float
         Matching distance ŷ.
-    amplitude : ndarray, shape (g, nω)
+    eastern, western : ndarray, shape (g, nω)
         |W(ŷ)|/|W(matching)| at g equidistant ŷ from 0 to `matching`.
     lag : ndarray, shape (g, nω)
         arg W(ŷ) − arg W(0) (rad).
     """
 
     matching: float
-    amplitude: Array
+    eastern: Array
+    western: Array
     lag: Array
 
 
@@ -68,10 +68,13 @@ def wall_table(omega: Array, speed: float, matching: float) -> WallTable:
     """
     frequency = scaled_frequency(omega, speed)
     inside = np.minimum(frequency, HIGHEST_SCALED_FREQUENCY)
-    wall = eastern_wall(inside, np.linspace(0.0, matching, _CELLS + 1)).T
+    distance = np.linspace(0.0, matching, _CELLS + 1)
+    wall, back = eastern_wall(inside, distance).T, western_wall(inside, distance).T
     lag = np.unwrap(np.angle(wall), axis=0)
     beyond = np.maximum(frequency / HIGHEST_SCALED_FREQUENCY, 1.0)
-    return WallTable(matching, np.abs(wall / wall[-1]), (lag - lag[0]) * beyond)
+    return WallTable(
+        matching, np.abs(wall / wall[-1]), np.abs(back / back[-1]), (lag - lag[0]) * beyond
+    )
 
 
 def scaled_distance(network: Network, mode: ModeAtNodes, nodes: Index) -> Array:
@@ -181,14 +184,14 @@ def _known_speed(mode: ModeAtNodes) -> Array:
 def _shape(network: Network, mode: ModeAtNodes, nodes: Index, table: WallTable) -> Array:
     """Sea level along the wall of a junction over that at the matching distance."""
     distance = scaled_distance(network, mode, nodes)
-    shape = np.ones((nodes.size, table.amplitude.shape[1]))
+    shape = np.ones((nodes.size, table.eastern.shape[1]))
     near = np.nonzero(np.isfinite(network.offshore[nodes]) & (distance < table.matching))[0]
-    eastern = _at(table.amplitude, distance[near] / table.matching)
-    western = (np.maximum(distance[near], _NEAREST) / table.matching)[:, None] / eastern
+    place = distance[near] / table.matching
     eastward = poleward_nodes(network)[nodes[near]]
-    shape[near] = np.where(eastward[:, None], eastern, western)
+    shape[near] = np.where(
+        eastward[:, None], _at(table.eastern, place), _at(table.western, place)
+    )
     return shape
-
 
 def _at(values: Array, position: Array) -> Array:
     """Linear interpolation between the rows of a table; position 0 to 1."""

@@ -34,7 +34,7 @@ from waveguide.network.graph import Network, StepKind
 from waveguide.propagation.dispersion import segment_exponent, segment_growth
 from waveguide.propagation.equator import eastern_junction, equatorial_radius
 from waveguide.propagation.gaps import facing_coast_share, passage
-from waveguide.propagation.losses import ModeAtNodes, stretch_lengths
+from waveguide.propagation.modes import ModeAtNodes, stretch_lengths
 from waveguide.propagation.near_equator import (
     WallTable,
     floored_coriolis,
@@ -294,7 +294,8 @@ def _gap_factors(
     entry[network.gap[enters]] = enters
     step = entry[rows]
     c = mode.speed[network.tail[step], None]
-    f = np.maximum(np.abs(coriolis(network.lat[network.tail[step]])), 1e-7)[:, None]
+    # closer to the equator than the matching distance no coast guides: |f| is that at its end
+    f = floored_coriolis(network.lat[network.tail[step]], c[:, 0], mode.matching)[:, None]
     width = network.gap_width[rows, None]
     length = np.maximum(network.gap_length[rows], 1e3)[:, None]
     beyond = passage(omega, width, length, f, c, mode.gap_share[rows, None])

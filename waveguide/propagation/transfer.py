@@ -29,7 +29,7 @@ from scipy.sparse import csr_array
 
 from waveguide.network.graph import Network
 from waveguide.propagation.arrivals import Arrival
-from waveguide.propagation.losses import ModeAtNodes
+from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.near_equator import network_wall_table, potential
 from waveguide.propagation.step_response import (
     FATES,

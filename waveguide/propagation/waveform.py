@@ -43,7 +43,7 @@ from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.network.graph import Network
 from waveguide.propagation.arrivals import Arrival
-from waveguide.propagation.losses import ModeAtNodes
+from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.sources import SourceFunction, time_step
 from waveguide.propagation.step_response import STILL, Conditions
 from waveguide.propagation.transfer import (

@@ -8,9 +8,12 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.constants import SECONDS_PER_DAY
+from waveguide.propagation.answers import ModeAnswer
 from waveguide.propagation.arrivals import REACHED, Arrival
 from waveguide.propagation.legs import Leg
 from waveguide.propagation.routes import Route
+from waveguide.propagation.transfer import LegBudget
+from waveguide.propagation.waveform import ArrivalTimes, mode_shares
 from waveguide.schema import ARRIVALS, assemble, check
 
 if TYPE_CHECKING:
@@ -20,15 +23,15 @@ if TYPE_CHECKING:
 
 
 def arrivals_dataset(
-    scenario: Scenario, answers: Mapping[int, list[Arrival]], attributes: Mapping[str, Any]
+    scenario: Scenario, answers: Mapping[int, ModeAnswer], attributes: Mapping[str, Any]
 ) -> xr.Dataset:
     """Put arrivals into a Dataset that follows the schema.
 
     Parameters
     ----------
     scenario : Scenario
-    answers : mapping of mode to list of Arrival
-        One arrival for each target of the scenario.
+    answers : mapping of mode to ModeAnswer
+        With one arrival for each target of the scenario.
     attributes : mapping
         Global attributes.
 
@@ -48,13 +51,21 @@ def arrivals_dataset(
     }
     for target in range(len(scenario.targets)):
         for column, mode in enumerate(modes):
-            arrival = answers[mode][target]
-            for name, value in _row(scenario, arrival).items():
+            answer = answers[mode]
+            arrival = answer.arrivals[target]
+            row = _row(scenario, arrival) | _wave_row(answer, target, scenario.event.amplitude_m)
+            for name, value in row.items():
                 rows[name].append(value)
             for rank, route in enumerate(arrival.routes):
                 _add_route(values, target, column, arrival, rank, route)
+                _add_budgets(
+                    values, arrival.legs[rank], answer.budgets[target][rank],
+                    answer.critical_periods[target][rank],
+                )
     shape = (len(scenario.targets), len(modes))
     values.update({name: np.array(row).reshape(shape) for name, row in rows.items()})
+    start = np.datetime64(scenario.event.start.replace(tzinfo=None), "ns")
+    values.update(_waveforms(list(answers.values()), start))
     dataset = assemble(values, attributes)
     check(dataset)
     return dataset
@@ -88,17 +99,78 @@ def _row(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
     return row
 
 
+def _wave_row(answer: ModeAnswer, target: int, height: float | None) -> dict[str, float]:
+    """Times of the waveform (days from the start of the event) and the ratio of peaks."""
+    times: ArrivalTimes = answer.times[target]
+    level, source = answer.waveforms.sea_level[target], answer.waveforms.source
+    reached = answer.arrivals[target].status == REACHED
+    peak = float(np.abs(level).max() / np.abs(source).max()) if reached else float("nan")
+    return {
+        "half_height_time_days": times.half_height / SECONDS_PER_DAY,
+        "peak_time_days": times.peak / SECONDS_PER_DAY,
+        "centroid_time_days": times.centroid / SECONDS_PER_DAY,
+        "peak_ratio": peak,
+        "amplitude_m": float("nan") if height is None else peak * height,
+    }
+
+
+def _waveforms(answers: list[ModeAnswer], start: np.datetime64) -> dict[str, Any]:
+    """Waveforms of all modes on their common time axis, and their sum.
+
+    Modes share the sea level at the source as wind of long duration would raise them.
+    """
+    waves = [answer.waveforms for answer in answers]
+    top = float(np.abs(waves[0].source).max())
+    level = np.stack([wave.sea_level for wave in waves], axis=1) / top
+    share = mode_shares([_value_at_source(answer) for answer in answers])
+    return {
+        "time": start + (waves[0].time * 1e9).astype("timedelta64[ns]"),
+        "time_days": waves[0].time / SECONDS_PER_DAY,
+        "source_waveform": waves[0].source / top,
+        "waveform": level,
+        "waveform_sum": np.einsum("m,jmt->jt", share, level),
+        "mode_share": share,
+    }
+
+
+def _value_at_source(answer: ModeAnswer) -> float:
+    """F(0,0) where the source is tied to the guide, 0 where it is not."""
+    node = answer.arrivals[0].source.node
+    return float(answer.mode.coastal_value[node[0]]) if node.size else 0.0
+
+
+def _add_budgets(
+    values: dict[str, Any], legs: list[Leg], budget: LegBudget, critical: Any
+) -> None:
+    """Append the energy budget of the legs of one route; attachments take nothing."""
+    row, before = 0, 1.0
+    for leg in legs:
+        taken = np.zeros(5)
+        period = float("nan")
+        if leg.step_count:
+            taken, before = budget.taken[row], float(budget.arrives[row])
+            period = float(critical[row]) / SECONDS_PER_DAY
+            row += 1
+        _append(values, {
+            "leg_energy_share": before,
+            "leg_lost_rossby": taken[0],
+            "leg_lost_friction": taken[1],
+            "leg_lost_damping": taken[2],
+            "leg_lost_scattering": taken[3],
+            "leg_other_ways": taken[4],
+            "leg_critical_period_days": period,
+        })
+
+
 def _reached(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
     """What a row has where the target is reached."""
     route, source, target = arrival.routes[0], arrival.source, arrival.target
     length = sum(float(leg.distance[-1]) for leg in arrival.legs[0] if leg.kind != "attachment")
     start = np.datetime64(scenario.event.start.replace(tzinfo=None), "ns")
-    height = scenario.event.amplitude_m
     return {
         "front_time_days": route.time / SECONDS_PER_DAY,
         "front_date": start + np.timedelta64(round(route.time * 1e9), "ns"),
         "amplitude_ratio": route.amplitude,
-        "amplitude_m": float("nan") if height is None else route.amplitude * height,
         "path_length_km": length / 1e3,
         "mean_speed_m_s": length / route.time if route.time > 0.0 else float("nan"),
         "source_distance_km": source.distance[route.start] / 1e3,

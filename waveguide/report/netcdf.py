@@ -25,14 +25,16 @@ def write_netcdf(dataset: xr.Dataset, folder: Path) -> None:
     folder : Path
     """
     stored = dataset.copy().reset_index("target").rename_vars(target="target_name")
-    stored["front_date"].attrs["units_metadata"] = "leap_seconds: none"  # section 4.4
+    for name in ("front_date", "time"):
+        stored[name].attrs["units_metadata"] = "leap_seconds: none"  # section 4.4
     encoding = {str(name): _encoding(variable) for name, variable in stored.variables.items()}
     stored.to_netcdf(folder / "arrivals.nc", engine="netcdf4", encoding=encoding)
 
 
 def _encoding(variable: xr.Variable) -> dict[str, Any]:
     if variable.dtype.kind == "M":
-        return {"units": "days since 1970-01-01 00:00:00", "dtype": "f8", "_FillValue": np.nan}
+        fill = None if variable.dims == ("time",) else np.nan  # none in a coordinate
+        return {"units": "days since 1970-01-01 00:00:00", "dtype": "f8", "_FillValue": fill}
     if variable.dtype.kind == "f":
         return {"_FillValue": np.nan}
     return {}

@@ -66,13 +66,15 @@ def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
     show: list[tuple[str, str, Callable[[int, int], str]]] = [
         ("Mode", "", lambda t, m: str(int(dataset["mode"].values[m]))),
         ("Front", "(days)", _column(dataset, "front_time_days", ".2f")),
+        ("Half", "(days)", _column(dataset, "half_height_time_days", ".2f")),
+        ("Peak", "(days)", _column(dataset, "peak_time_days", ".2f")),
         ("Front", "(UTC)", _date(dataset)),
         ("Speed", "(m/s)", _column(dataset, "mean_speed_m_s", ".2f")),
         ("Path", "(km)", _column(dataset, "path_length_km", ".0f")),
-        ("Amplitude", "ratio", _column(dataset, "amplitude_ratio", ".3g")),
+        ("Peak", "ratio", _column(dataset, "peak_ratio", ".3g")),
     ]
     if np.isfinite(dataset["amplitude_m"].values).any():
-        show.append(("Amplitude", "(m)", _column(dataset, "amplitude_m", ".3f")))
+        show.append(("Peak", "(m)", _column(dataset, "amplitude_m", ".3f")))
     names = ["Target", ""] + [plain(dataset["target"].values[t], 28) for t, _ in rows]
     status = ["Status", ""] + [plain(dataset["status"].values[row], 28) for row in rows]
     middle = [[top, unit, *(cell(*row) for row in rows)] for top, unit, cell in show]

@@ -47,6 +47,11 @@ class Event(Table):
     duration_days : float
     amplitude_m : float or None
         Sea level at the source (m), negative for a lowering; None where it is unknown.
+    shape : {"gaussian", "boxcar", "step"}
+        How sea level at the source goes with time: a smooth burst, a flat one, or a rise that
+        stays, all within the duration.
+    series_file : Path or None
+        CSV of sea level at the source (columns time, value), in place of a shape.
     """
 
     name: Name | None = None
@@ -55,6 +60,14 @@ class Event(Table):
     start: Moment
     duration_days: Days
     amplitude_m: Annotated[Number, Field(ge=-100.0, le=100.0)] | None = None
+    shape: Literal["gaussian", "boxcar", "step"] = "gaussian"
+    series_file: DataFile | None = None
+
+    @model_validator(mode="after")
+    def _one_course(self) -> Event:
+        if self.series_file is not None and "shape" in self.model_fields_set:
+            raise ValueError("a shape and a series_file exclude each other; leave one out")
+        return self
 
     @model_validator(mode="after")
     def _one_place(self) -> Event:
@@ -97,10 +110,19 @@ class Waves(Table):
         0 is the barotropic mode, 1 to 3 the baroclinic ones; in rising order.
     period_days : float
         Dominant period of the signal.
+    window_days : float or None
+        How long after the start waveforms go on; None for as long as the slowest route needs.
+    drag_m_s : float
+        Coefficient r of the linear bottom stress ρ r v.
+    damping_days : float or None
+        e-folding time of mode 1 by interior damping, others as c⁻²; None for no damping.
     """
 
     modes: Annotated[tuple[Mode, ...], AfterValidator(not_empty), AfterValidator(distinct_modes)]
     period_days: Days
+    window_days: Days | None = None
+    drag_m_s: Annotated[Number, Field(ge=0.0, le=0.01)] = 5e-4
+    damping_days: Days | None = None
 
 
 class Ocean(Table):
