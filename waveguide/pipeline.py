@@ -117,9 +117,19 @@ def _window(
     return default_window(headline, source)
 
 
-def _damping(scenario: Scenario, mode: ModeAtNodes) -> float:
-    """Interior damping of a mode (1/s): that of mode 1 times (c₁/c)², by median speeds."""
-    days = scenario.waves.damping_days
+def damping_rate(days: float | None, mode: ModeAtNodes) -> float:
+    """Interior damping of a mode (1/s): that of mode 1 times (c₁/c)², by median speeds.
+
+    Parameters
+    ----------
+    days : float or None
+        e-folding time of mode 1; None for no damping.
+    mode : ModeAtNodes
+
+    Returns
+    -------
+    float
+    """
     if days is None or mode.number == 0:
         return 0.0
     first = atlas_mode(packaged_network("baroclinic")[1], 1).speed
@@ -132,7 +142,8 @@ def _damping(scenario: Scenario, mode: ModeAtNodes) -> float:
 def _conditions(scenario: Scenario, network: Network, mode: ModeAtNodes) -> Conditions:
     """Friction and damping of a mode."""
     friction = friction_of_steps(network, mode, scenario.waves.drag_m_s)
-    return Conditions(friction=friction, damping=_damping(scenario, mode))
+    damping = damping_rate(scenario.waves.damping_days, mode)
+    return Conditions(friction=friction, damping=damping)
 
 
 def source_box(scenario: Scenario) -> Box:
@@ -146,7 +157,8 @@ def _answers(scenario: Scenario, network: Network, mode: ModeAtNodes) -> list[Ar
     return mode_arrivals(
         network, mode, packaged_bathymetry(), source_box(scenario), scenario.event.centre,
         [target.position for target in scenario.targets],
-        _omega(scenario), _damping(scenario, mode), scenario.waves.drag_m_s,
+        _omega(scenario), damping_rate(scenario.waves.damping_days, mode),
+        scenario.waves.drag_m_s,
     )
 
 
@@ -224,6 +236,22 @@ def check_positions(scenario: Scenario) -> None:
     places = [(f"targets: {t.name!r}", t.position) for t in scenario.targets]
     if scenario.event.position is not None:
         places.append(("event.position", scenario.event.position))
+    check_places(places)
+
+
+def check_places(places: list[tuple[str, tuple[float, float]]]) -> None:
+    """Refuse positions far inland.
+
+    Parameters
+    ----------
+    places : list of (name, (lon, lat))
+        What a person calls each, and degrees.
+
+    Raises
+    ------
+    InputError
+        Naming every such position, and the swapped one where that is at sea.
+    """
     problems = [problem for name, place in places if (problem := _inland(name, *place))]
     if problems:
         raise InputError(problems)
