@@ -82,7 +82,17 @@ class Ties:
 
 
 def point_box(lon: float, lat: float) -> Box:
-    """A position as a box without extent."""
+    """A position as a box without extent.
+
+    Parameters
+    ----------
+    lon, lat : float
+        Degrees.
+
+    Returns
+    -------
+    (west, south, east, north), degrees
+    """
     return (lon, lat, lon, lat)
 
 
@@ -298,7 +308,21 @@ def _spacing(network: Network) -> float:
 
 
 def distance_to_water(lon: float, lat: float, depths: Bathymetry, reach: float) -> float:
-    """Distance from a position to the nearest sea of the bathymetry (m), infinite beyond reach."""
+    """Distance from a position to the nearest sea of the bathymetry.
+
+    Parameters
+    ----------
+    lon, lat : float
+        Degrees.
+    depths : Bathymetry
+    reach : float
+        How far to look (m).
+
+    Returns
+    -------
+    float
+        m; infinite if there is no sea within reach.
+    """
     half = np.degrees(chord(reach))
     stretch = 1.0 / max(np.cos(np.radians(lat)), 0.05)
     offset = np.linspace(-half, half, 61)

@@ -36,6 +36,10 @@ def baroclinic_rule(lat: Array, phase_speed: Array, sill_depth: Array) -> CoastR
         First-mode phase speed typical of the latitude (m/s).
     sill_depth : ndarray, shape (n,)
         Depth that still carries the mode (m).
+
+    Returns
+    -------
+    CoastRule
     """
     radius = deformation_radius(phase_speed, lat)
     return CoastRule(
@@ -61,6 +65,10 @@ def barotropic_rule(lat: Array) -> CoastRule:
     ----------
     lat : ndarray, shape (n,)
         Latitudes, degrees, ascending.
+
+    Returns
+    -------
+    CoastRule
     """
     one = np.ones_like(lat)
     return CoastRule(

@@ -21,12 +21,31 @@ TYPICAL_BAROTROPIC_SPEED = 200.0
 
 
 def family_of(mode: int) -> Family:
-    """The family of a mode number."""
+    """The family of a mode.
+
+    Parameters
+    ----------
+    mode : int
+        0 for the barotropic mode, 1, 2, 3 … for baroclinic ones.
+
+    Returns
+    -------
+    {"baroclinic", "barotropic"}
+    """
     return "barotropic" if mode == 0 else "baroclinic"
 
 
 def network_file(family: Family) -> str:
-    """Name of the shipped file of a family."""
+    """Name of the shipped file of a family.
+
+    Parameters
+    ----------
+    family : {"baroclinic", "barotropic"}
+
+    Returns
+    -------
+    str
+    """
     return f"network_{family}.nc"
 
 
