@@ -10,14 +10,17 @@ import pytest
 
 from waveguide.constants import GRAVITY, coriolis
 from waveguide.errors import InputError
+from waveguide.modes.assembly import Rotation
+from waveguide.modes.mesh import build_mesh, plan_mesh
 from waveguide.modes.modeset import (
     ModeSet,
     alongshore_velocity,
     isopycnal_displacement,
     overlap,
 )
+from waveguide.modes.profile import make_profile
 from waveguide.modes.section import monotonic_depth
-from waveguide.modes.trapped import trapped_modes
+from waveguide.modes.trapped import solve_on_mesh, trapped_modes
 from waveguide.modes.vertical import vertical_modes
 
 F = 8.2e-5
@@ -118,6 +121,26 @@ def test_more_flat_ocean_changes_nothing() -> None:
                          tolerance=1e-3)  # fmt: skip
     np.testing.assert_allclose(near.phase_speed, wide.phase_speed, rtol=1.5e-3)
     np.testing.assert_allclose(near.trapping_scale[0], wide.trapping_scale[0], rtol=0.01)
+
+
+def test_observed_order_of_accuracy() -> None:
+    """Second order on nested meshes of one polygon, a little less where its corners bend the
+    bottom outward (p is singular there); Richardson's limit is better than either mesh."""
+    x, h = shelf_and_slope()
+    profile = make_profile(N2, N2_DEPTH)
+    plan = plan_mesh(x, h, profile, F, 16, 1e-3)
+    speeds = np.array(
+        [
+            solve_on_mesh(build_mesh(plan, k), profile, F, Rotation(F * F), 4).phase_speed
+            for k in (1, 2, 4, 8)
+        ]
+    )
+    limit = (4.0 * speeds[3] - speeds[2]) / 3.0
+    errors = np.abs(speeds / limit - 1.0)
+    order = np.log2(errors[:2] / errors[1:3])
+    assert np.all((order > 1.65) & (order < 2.1))
+    first_limit = (4.0 * speeds[1] - speeds[0]) / 3.0
+    assert np.all(np.abs(first_limit / limit - 1.0) < 0.35 * errors[1])
 
 
 def test_error_estimate_covers_the_error() -> None:

@@ -18,7 +18,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.optimize import brentq, minimize_scalar
+from scipy.optimize import brentq
 
 from waveguide.constants import GRAVITY
 from waveguide.errors import InputError
@@ -214,8 +214,9 @@ def dispersion(guide: Guide, frequency: float) -> Dispersion:
 def _wavenumber(guide: Guide, n: int, frequency: float) -> float:
     """First root of κ_n(l, ω) = |f| l/ω, NaN if there is none.
 
-    The difference of the two sides is convex, so secants through points left of the root do not
-    pass it, and one that stops falling has no root.
+    The difference of the two sides starts positive and is convex (but for avoided crossings of
+    two modes), so secants approach the root from the left; once one has passed it, the root is
+    bracketed. Where the difference rises while it is still positive there is no root.
     """
     steepness = abs(guide.f) / frequency
 
@@ -225,10 +226,12 @@ def _wavenumber(guide: Guide, n: int, frequency: float) -> float:
     previous, here = 0.0, float(guide.eigenvalues(0.0, frequency)[n]) / steepness
     before, now = steepness * here, excess(here)
     for _ in range(_MOST_STEPS):
+        if now <= 0.0:
+            return float(brentq(excess, previous, here, rtol=_ROOT))
         if now >= before:
             break
         following = here - now * (here - previous) / (now - before)
-        if abs(following - here) <= _ROOT * following:
+        if following - here <= _ROOT * following:
             return following
         previous, before, here = here, now, following
         now = excess(here)
@@ -291,25 +294,20 @@ def cutoff(guide: Guide, n: int) -> tuple[float, float]:
     Returns
     -------
     frequency : float
-        ω (1/s) above which the mode does not travel; |f| if it does at all sub-inertial ones.
+        ω (1/s) above which the mode does not travel downstream, within 0.25 %; |f| if it does
+        at all sub-inertial frequencies (up to 0.99 |f|).
     wavenumber : float
         l (1/m) there, NaN in the second case.
     """
-    scale = float(guide.eigenvalues(0.0, 0.0)[n])
-    tried: list[tuple[float, float]] = []
-    for wavenumber in 0.1 * scale * 1.6 ** np.arange(16):
-        frequency = free_frequency(guide, n, wavenumber)
-        if np.isnan(frequency):
-            return abs(guide.f), np.nan
-        tried.append((wavenumber, frequency))
-        if len(tried) > 2 and tried[-2][1] > frequency:
-            break
-    else:
+    travels, stops = 0.0, _HIGHEST * abs(guide.f)
+    if not np.isnan(_wavenumber(guide, n, stops)):
         return abs(guide.f), np.nan
-    best = minimize_scalar(
-        lambda log_l: -free_frequency(guide, n, float(np.exp(log_l))),
-        bounds=(np.log(tried[-3][0]), np.log(tried[-1][0])),
-        method="bounded",
-        options={"xatol": 2e-2},
-    )
-    return float(-best.fun), float(np.exp(best.x))
+    wavenumber = 0.0
+    while stops - travels > TOLERANCE * stops:
+        middle = 0.5 * (travels + stops)
+        found = _wavenumber(guide, n, middle)
+        if np.isnan(found):
+            stops = middle
+        else:
+            travels, wavenumber = middle, found
+    return 0.5 * (travels + stops), wavenumber
