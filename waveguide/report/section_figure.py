@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from waveguide.report.text import plain
 
@@ -13,9 +14,13 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
+Array = NDArray[np.float64]
+
 _GROUND, _RAW, _DEPTH, _N2 = "#d9cfc1", "#8a8a8a", "#7a4a1d", "#0b5c8a"
 _LEVELS = np.round(np.arange(-1.0, 1.01, 0.1), 1)
 _MOST_PANELS = 3
+_DEPTH_TICKS = np.array([20.0, 50.0, 100.0, 200.0, 500.0, 1000.0, 2000.0, 3000.0, 4000.0,
+                         6000.0, 8000.0, 10000.0])
 
 
 def draw_section(dataset: xr.Dataset) -> Figure:
@@ -70,6 +75,29 @@ def _reach(dataset: xr.Dataset) -> float:
     return float(min(x[-1], max(1.3 * foot, 2.0 * widest)))
 
 
+def _depth_axis(axes: Axes, deepest: float, top: float = 0.0, labelled: bool = True) -> None:
+    """Depth downward on a square-root scale, which gives shelf and deep sea room both."""
+    axes.set_yscale("function", functions=(_signed_root, _signed_square))
+    axes.set_ylim(deepest, top)
+    kept = [0.0]
+    for tick in _DEPTH_TICKS[deepest >= _DEPTH_TICKS]:
+        if np.sqrt(tick) - np.sqrt(kept[-1]) > 0.09 * np.sqrt(deepest):
+            kept.append(float(tick))
+    axes.set_yticks(kept, [f"{tick:g}" for tick in kept])
+    if labelled:
+        axes.set_ylabel("Depth (m)")
+    else:
+        axes.tick_params(labelleft=False)
+
+
+def _signed_root(depth: Array) -> Array:
+    return np.asarray(np.sign(depth) * np.sqrt(np.abs(depth)))
+
+
+def _signed_square(root: Array) -> Array:
+    return np.asarray(np.sign(root) * root**2)
+
+
 def _draw_depths(axes: Axes, dataset: xr.Dataset) -> None:
     x, h = dataset["section_offshore_km"].values, dataset["section_depth_m"].values
     raw_x, raw_h = dataset["raw_offshore_km"].values, dataset["raw_depth_m"].values
@@ -78,9 +106,8 @@ def _draw_depths(axes: Axes, dataset: xr.Dataset) -> None:
     axes.plot(raw_x, raw_h, color=_RAW, lw=1.2, label="raw depths")
     axes.plot(x, h, color=_DEPTH, lw=1.6, label="monotonic section")
     axes.set_xlim(0.0, _reach(dataset))
-    axes.set_ylim(deepest, min(0.0, 1.05 * raw_h.min()))
+    _depth_axis(axes, deepest, min(0.0, 1.05 * raw_h.min()))
     axes.set_xlabel("Distance from the shore (km)")
-    axes.set_ylabel("Depth (m)")
     axes.legend(loc="lower left", bbox_to_anchor=(0.0, 1.0), ncols=2, frameon=False, fontsize=9,
                 borderaxespad=0.2)
 
@@ -95,9 +122,8 @@ def _draw_stratification(axes: Axes, dataset: xr.Dataset) -> None:
         from_last = np.flatnonzero(~known)[0] - 1
         axes.plot(n2[from_last:], depth[from_last:], color=_N2, lw=1.0, ls=":")
     axes.set_xscale("log")
-    axes.set_ylim(1.05 * deepest, 0.0)
+    _depth_axis(axes, 1.05 * deepest)
     axes.set_xlabel("N² (s$^{-2}$)")
-    axes.set_ylabel("Depth (m)")
 
 
 def _draw_mode(axes: Axes, dataset: xr.Dataset, row: int, first: bool) -> Any:
@@ -114,12 +140,8 @@ def _draw_mode(axes: Axes, dataset: xr.Dataset, row: int, first: bool) -> Any:
     axes.fill_between(section_x, section_h, deepest, color=_GROUND, lw=0.0, zorder=3)
     axes.plot(section_x, section_h, color=_DEPTH, lw=1.2, zorder=4)
     axes.set_xlim(0.0, _reach(dataset))
-    axes.set_ylim(deepest, 0.0)
+    _depth_axis(axes, deepest, labelled=first)
     axes.set_xlabel("Distance from the shore (km)")
-    if first:
-        axes.set_ylabel("Depth (m)")
-    else:
-        axes.tick_params(labelleft=False)
     number, speed = int(dataset["mode"].values[row]), dataset["phase_speed_m_s"].values[row]
     times = "" if scale == 1.0 else f"\npressure / {scale:.2g}"
     axes.set_title(f"Mode {number}: {speed:.2f} m/s, "
@@ -127,7 +149,7 @@ def _draw_mode(axes: Axes, dataset: xr.Dataset, row: int, first: bool) -> Any:
     return colours
 
 
-def _filled_below(pressure: np.ndarray[Any, Any]) -> np.ndarray[Any, Any]:
+def _filled_below(pressure: Array) -> Array:
     """The field with the bottom value repeated below it, so that colours reach the bottom."""
     level = np.arange(pressure.shape[0])[:, None]
     last = np.maximum.accumulate(np.where(np.isfinite(pressure), level, 0), axis=0)
