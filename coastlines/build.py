@@ -59,6 +59,12 @@ SMALLEST_LAKE = 1000.0
 COORDINATE_STEP = 1e-4
 """Step (degrees, 11 m) to which shoreline coordinates are rounded."""
 
+WIND_STEP = 0.02
+"""Step (m/s) to which winds are rounded."""
+
+HIGHEST_WIND = 80.0
+"""Latitude (degrees) up to which winds are kept: no guide goes further."""
+
 MANTISSA_BITS = 11
 """Bits of the mantissa of N² that are kept: a relative rounding of 2.4e-4 at most."""
 
@@ -297,6 +303,51 @@ def build_stratification() -> None:
     }, fill_stratification)
 
 
+# --- winds --------------------------------------------------------------------------------
+
+
+def fill_winds(dataset: netCDF4.Dataset) -> None:
+    """Monthly mean wind on 2.5°, 1982 to 1992, −180 ≤ lon < 180, south to north."""
+    member = "./usr/share/ferret-vis/data/monthly_navy_winds.cdf"
+    with netCDF4.Dataset("raw", memory=package_member(CLIMATOLOGY_PACKAGE, member)) as raw:
+        lon, lat = (np.asarray(raw[name][:], float) for name in ("FNOCX", "FNOCY"))
+        hours, since = np.asarray(raw["TIME"][:], float), raw["TIME"].units
+        u, v = (np.ma.filled(raw[name][:].astype(float), np.nan) for name in ("UWND", "VWND"))
+    if u.shape != (132, 73, 144) or not (np.isfinite(u).all() and np.isfinite(v).all()):
+        raise SystemExit("the winds are not the 132 complete months expected")
+    if since != "hour since 1980-01-14 14:00:00":
+        raise SystemExit(f"the time of the winds is in {since!r}, not what is expected")
+    east = wrap_longitude(lon)
+    order, rows = np.argsort(east), np.nonzero(np.abs(lat) <= HIGHEST_WIND)[0]
+    add(dataset, "time", ("time",), hours, standard_name="time", axis="T",
+        units="hours since 1980-01-14 14:00:00", calendar="standard",
+        long_name="middle of the month")
+    add(dataset, "lat", ("lat",), lat[rows],
+        standard_name="latitude", units="degrees_north", axis="Y")
+    add(dataset, "lon", ("lon",), east[order],
+        standard_name="longitude", units="degrees_east", axis="X")
+    for name, standard, values in (("u", "eastward_wind", u), ("v", "northward_wind", v)):
+        packed = np.rint(values[:, rows][:, :, order] / WIND_STEP).astype(np.int16)
+        add(dataset, name, ("time", "lat", "lon"), packed, chunks=(1, rows.size, lon.size),
+            standard_name=standard, units="m s-1", scale_factor=WIND_STEP,
+            cell_methods="time: mean")
+
+
+def build_winds() -> None:
+    """monthly_winds.nc from the winds of the U.S. Navy's centre for weather analysis."""
+    write_dataset("monthly_winds.nc", {
+        "title": "Monthly mean wind over sea and land at 2.5 degrees, 1982 to 1992",
+        "source": "Monthly winds of the U.S. Navy Fleet Numerical Oceanography Center, as packaged "
+                  "in ferret-datasets 7.6.0 (monthly_navy_winds.cdf)",
+        "license": "public domain (U.S. government)",
+    }, fill_winds)
+    member = "./usr/share/doc/ferret-datasets/copyright"
+    text = package_member(CLIMATOLOGY_PACKAGE, member).decode()
+    start = text.index("Ferret License Agreement:")
+    notice = text[start : text.index("License: GPL-2+", start)]
+    (DATA / "monthly_winds.LICENSE").write_text(notice.rstrip() + "\n", "utf-8")
+
+
 # --- manifest -----------------------------------------------------------------------------
 
 
@@ -347,6 +398,7 @@ def build() -> None:
     copy_licences()
     build_bathymetry()
     build_stratification()
+    build_winds()
     write_manifest()
     build_networks()
 
