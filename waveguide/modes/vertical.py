@@ -27,14 +27,12 @@ from numpy.typing import ArrayLike, NDArray
 
 from waveguide.constants import GRAVITY
 from waveguide.errors import InputError
+from waveguide.modes.columns import checked_columns, thin_layers
 
 Array = NDArray[np.float64]
 
 LAYERS_PER_INTERVAL = 3
 """Thin layers between two depths of N² in the coarser of the two cuts; the finer has twice that."""
-
-LEAST_N2 = 1e-14
-"""Stand-in for N² = 0 (1/s²): small enough to change no speed by 1e-6 in 10 km of water."""
 
 _TOLERANCE = 1e-10
 _MOST_ITERATIONS = 80
@@ -119,10 +117,10 @@ def phase_speeds(
     ----------
     Gill, A. E. (1982): Atmosphere-Ocean Dynamics, section 6.11. Academic Press.
     """
-    columns, levels, floor = _checked(n2, depth, bottom, count)
+    columns, levels, floor = checked_columns(n2, depth, bottom, count)
     number = np.arange(1, count + 1)
-    coarse = _cut(columns, levels, floor, LAYERS_PER_INTERVAL)
-    fine = _cut(columns, levels, floor, 2 * LAYERS_PER_INTERVAL)
+    coarse = thin_layers(columns, levels, floor, LAYERS_PER_INTERVAL)
+    fine = thin_layers(columns, levels, floor, 2 * LAYERS_PER_INTERVAL)
     rough = _slowness(*coarse, number, rigid_lid)
     return _extrapolated_speed(rough, _slowness(*fine, number, rigid_lid, start=rough))
 
@@ -150,8 +148,8 @@ def end_values(
         As `phase_speeds`.
     """
     slowness = 1.0 / np.asarray(phase_speed, dtype=float)
-    columns, levels, floor = _checked(n2, depth, bottom, slowness.shape[1])
-    thickness, n = _cut(columns, levels, floor, 2 * LAYERS_PER_INTERVAL)
+    columns, levels, floor = checked_columns(n2, depth, bottom, slowness.shape[1])
+    thickness, n = thin_layers(columns, levels, floor, 2 * LAYERS_PER_INTERVAL)
     w, p, doubled = np.zeros_like(slowness), np.ones_like(slowness), np.zeros_like(slowness)
     for j in range(thickness.shape[1] - 1, -1, -1):  # from the bottom up
         d, k = thickness[:, j, None], n[:, j, None] * slowness
@@ -197,10 +195,12 @@ def vertical_modes(
     InputError
         As `phase_speeds`.
     """
-    columns, levels, floor = _checked(np.atleast_2d(n2), depth, np.atleast_1d(bottom), count)
+    columns, levels, floor = checked_columns(np.atleast_2d(n2), depth, np.atleast_1d(bottom), count)
     number = np.arange(1 if rigid_lid else 0, count + 1)
-    rough = _slowness(*_cut(columns, levels, floor, LAYERS_PER_INTERVAL), number, rigid_lid)[0]
-    thickness, n = _cut(columns, levels, floor, 2 * LAYERS_PER_INTERVAL)
+    rough = _slowness(*thin_layers(columns, levels, floor, LAYERS_PER_INTERVAL), number, rigid_lid)[
+        0
+    ]
+    thickness, n = thin_layers(columns, levels, floor, 2 * LAYERS_PER_INTERVAL)
     slowness = _slowness(thickness, n, number, rigid_lid, start=rough)[0]
     wet = thickness[0] > 0.0
     d, n = thickness[0, wet], n[0, wet]
@@ -264,70 +264,6 @@ def _square(first: Array, last: Array) -> Array:
 def _extrapolated_speed(coarse: Array, fine: Array) -> Array:
     """Speed from the slowness on layers of thickness d and d/2, without the error in d²."""
     return 3.0 / (4.0 * fine - coarse)
-
-
-def _checked(
-    n2: ArrayLike, depth: ArrayLike, bottom: ArrayLike, count: int
-) -> tuple[Array, Array, Array]:
-    """Arrays of float, or one InputError that lists every problem."""
-    columns = np.asarray(n2, dtype=float)
-    levels = np.asarray(depth, dtype=float)
-    floor = np.asarray(bottom, dtype=float)
-    shapes_fit = columns.ndim == 2 and columns.shape == (floor.size, levels.size)
-    if not shapes_fit or levels.ndim != 1 or floor.ndim != 1 or columns.size == 0:
-        raise InputError(
-            f"n2 has shape {columns.shape}, depth {levels.shape}, bottom {floor.shape}: "
-            "n2 must have one row for each bottom and one column for each depth"
-        )
-    problems = []
-    if count < 1:
-        problems.append(f"count is {count}: ask for at least one mode")
-    holes = int(np.isnan(columns).any(axis=1).sum())
-    if holes:
-        problems.append(
-            f"n2 has missing values in {holes} of {floor.size} columns: fill them, or repeat the "
-            "deepest known value down to the last depth"
-        )
-    if np.any(columns < 0.0):
-        problems.append(
-            f"n2 reaches {np.nanmin(columns):.3g} 1/s²: stratification must be stable; sort or "
-            "smooth the density profile, or set negative values to 0"
-        )
-    if not np.all(np.diff(levels) > 0.0) or not levels[0] >= 0.0:
-        problems.append("depth must increase downward from 0 or more, without duplicates or holes")
-    if not np.all((floor > 0.0) & np.isfinite(floor)):
-        problems.append("bottom must be positive and finite: water depth is positive down, in m")
-    if not np.all(np.nan_to_num(columns, nan=1.0).max(axis=1) > LEAST_N2):
-        problems.append("n2 is 0 throughout a column: without stratification only mode 0 exists")
-    if problems:
-        raise InputError(problems)
-    return columns, levels, floor
-
-
-def _layer_edges(levels: Array, floor: Array, parts: int) -> Array:
-    """Edges of thin layers from the surface to each bottom (m), shape (ncolumn, nlayer + 1).
-
-    All `levels` above the bottom are edges; the intervals below it have no thickness.
-    """
-    marks = np.minimum(np.append(np.union1d(0.0, levels), np.inf), floor[:, None])
-    inner = marks[:, :-1, None] + np.diff(marks)[:, :, None] * (np.arange(parts) / parts)
-    return np.append(inner.reshape(floor.size, -1), marks[:, -1:], axis=1)
-
-
-def _cut(columns: Array, levels: Array, floor: Array, parts: int) -> tuple[Array, Array]:
-    """Thickness (m) and N (1/s) of the thin layers, cut at the bottom, shape (ncolumn, nlayer).
-
-    N² is linear across a thin layer, so its mean is the mean of the two ends.
-    """
-    z = _layer_edges(levels, floor, parts)
-    at = np.clip(z, levels[0], levels[-1])
-    i = np.clip(np.searchsorted(levels, at, side="right") - 1, 0, max(levels.size - 2, 0))
-    upper = np.take_along_axis(columns, i, axis=1)
-    if levels.size > 1:
-        lower = np.take_along_axis(columns, i + 1, axis=1)
-        upper = upper + (lower - upper) * (at - levels[i]) / (levels[i + 1] - levels[i])
-    mean = 0.5 * (upper[:, 1:] + upper[:, :-1])
-    return np.diff(z, axis=1), np.sqrt(np.maximum(mean, LEAST_N2))
 
 
 def _surface_angle(thickness: Array, n: Array, slowness: Array) -> tuple[Array, Array]:
