@@ -14,6 +14,9 @@ from pathlib import Path
 from waveguide.errors import DataError
 
 PACKAGE = Path(__file__).resolve().parents[1]
+WIND_RECORD = "monthly_winds.nc"
+"""The packaged wind, on which only forced responses rest."""
+
 WAY_OUT = (
     "reinstall the package (pip install --force-reinstall waveguide), or in a clone restore the "
     "file with `git checkout -- coastlines`"
@@ -98,7 +101,7 @@ def checked_file(name: str, folder: Path, manifest: Path) -> Path:
 
 
 def used_files() -> dict[str, str]:
-    """SHA-256 of every data file of the manifest, by name.
+    """SHA-256 of every data file that any answer rests on, by name.
 
     Returns
     -------
@@ -106,4 +109,5 @@ def used_files() -> dict[str, str]:
     """
     _, manifest = locations()
     built = tomllib.loads(manifest.read_text("utf-8")).get("built", {})
-    return {name: entry["sha256"] for name, entry in built.items() if name.endswith(".nc")}
+    return {name: entry["sha256"] for name, entry in built.items()
+            if name.endswith(".nc") and name != WIND_RECORD}
