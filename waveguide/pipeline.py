@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -13,7 +14,8 @@ from waveguide.network.attach import distance_to_water
 from waveguide.network.packaged import family_of, packaged_network
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import used_files
-from waveguide.propagation.answers import mode_answer
+from waveguide.ocean.stratification import Climatology, packaged_climatology
+from waveguide.propagation.answers import ModeAnswer, mode_answer
 from waveguide.propagation.arrivals import REACHED, Arrival, mode_arrivals
 from waveguide.propagation.dispersion import interior_damping_rate
 from waveguide.propagation.modes import atlas_mode, friction_of_steps, uniform_mode
@@ -36,9 +38,34 @@ if TYPE_CHECKING:
 
     from waveguide.network.attach import Box
     from waveguide.network.graph import Network
-    from waveguide.propagation.losses import ModeAtNodes
+    from waveguide.propagation.modes import ModeAtNodes
 
 Progress = Callable[[str], None]
+
+
+@dataclass(frozen=True)
+class Study:
+    """Arrivals and what they were computed from.
+
+    Attributes
+    ----------
+    source : SourceFunction
+    omega : float
+        Dominant angular frequency (rad/s).
+    networks : dict of int to Network
+        By mode, like the next two.
+    answers : dict of int to ModeAnswer
+    conditions : dict of int to Conditions
+    dataset : xarray.Dataset
+        As declared in :data:`waveguide.schema.ARRIVALS`.
+    """
+
+    source: SourceFunction
+    omega: float
+    networks: dict[int, Network]
+    answers: dict[int, ModeAnswer]
+    conditions: dict[int, Conditions]
+    dataset: xr.Dataset
 
 
 def arrivals(scenario: Scenario, progress: Progress | None = None) -> xr.Dataset:
@@ -61,6 +88,27 @@ def arrivals(scenario: Scenario, progress: Progress | None = None) -> xr.Dataset
         If a position is far inland, the user's own files do not cover a route, or no target is
         reached in any mode.
     """
+    return study(scenario, progress).dataset
+
+
+def study(scenario: Scenario, progress: Progress | None = None) -> Study:
+    """Arrivals together with what they were computed from.
+
+    Parameters
+    ----------
+    scenario : Scenario
+    progress : callable, optional
+        Told the name of each stage as it begins.
+
+    Returns
+    -------
+    Study
+
+    Raises
+    ------
+    InputError
+        As `arrivals`.
+    """
     say = progress or (lambda stage: None)
     say("reading depths")
     check_positions(scenario)
@@ -73,14 +121,16 @@ def arrivals(scenario: Scenario, progress: Progress | None = None) -> xr.Dataset
     source = source_function(scenario)
     window = _window(scenario, found, source)
     omega = _omega(scenario)
-    answers = {}
+    answers, conditions = {}, {}
     for mode, (network, carried) in guides.items():
         say(f"waveforms of mode {mode}")
+        conditions[mode] = _conditions(scenario, network, carried)
         answers[mode] = mode_answer(
-            network, carried, found[mode], source, window, omega,
-            _conditions(scenario, network, carried),
+            network, carried, found[mode], source, window, omega, conditions[mode]
         )
-    return arrivals_dataset(scenario, answers, arrivals_attributes(scenario, used_files()))
+    dataset = arrivals_dataset(scenario, answers, arrivals_attributes(scenario, used_files()))
+    networks = {mode: network for mode, (network, _) in guides.items()}
+    return Study(source, omega, networks, answers, conditions, dataset)
 
 
 def _omega(scenario: Scenario) -> float:
@@ -158,8 +208,14 @@ def _answers(scenario: Scenario, network: Network, mode: ModeAtNodes) -> list[Ar
         network, mode, packaged_bathymetry(), source_box(scenario), scenario.event.centre,
         [target.position for target in scenario.targets],
         _omega(scenario), damping_rate(scenario.waves.damping_days, mode),
-        scenario.waves.drag_m_s,
+        scenario.waves.drag_m_s, _annual_mean(scenario),
     )
+
+
+def _annual_mean(scenario: Scenario) -> Climatology | None:
+    """The packaged climatology, where the phase speeds are from it."""
+    own = scenario.ocean.phase_speed_m_s is not None or scenario.ocean.climatology is not None
+    return None if own else packaged_climatology()
 
 
 def _mode(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAtNodes]:

@@ -120,6 +120,26 @@ ARRIVALS: dict[str, Variable] = {
         _ROW, "distance from the target to the guide in deformation radii", "1"
     ),
     "target_factor": _number(_ROW, "amplitude factor for the target's distance", "1"),
+    "frequency_over_f": _number(_ROW, "largest ω/|f| on the coasts of the route", "1"),
+    "coast_radius_radii": _number(
+        _ROW, "radius of curvature of the coast in deformation radii, smaller on 5 % of it", "1"
+    ),
+    "basin_width_radii": _number(
+        _ROW, "width of the water beside the coast in deformation radii (5 at most), less on 5 %",
+        "1",
+    ),
+    "speed_change": _number(
+        _ROW, "relative change of the phase speed over a wavelength/2π, more on 5 % of the way", "1"
+    ),
+    "critical_share": _number(
+        _ROW, "share of the coastal way that is poleward and below the critical frequency", "1"
+    ),
+    "narrowest_strait_km": _number(_ROW, "width of the narrowest strait of the route", "km"),
+    "northernmost_latitude": _number(_ROW, "northernmost latitude of the route", "degrees_north"),
+    "southernmost_latitude": _number(_ROW, "southernmost latitude of the route", "degrees_north"),
+    "upper_ocean_share": _number(
+        _ROW, "share of the phase speed from the upper 100 m, which seasons change", "1"
+    ),
     "caution": Variable(_ROW, "text", "cautions, separated by '; '"),
     "route_target": Variable(_ROUTE, "integer", "index of the route's target"),
     "route_mode": Variable(_ROUTE, "integer", "index of the route's mode along mode"),

@@ -11,11 +11,13 @@ from waveguide.network.attach import Box, Ties, point_box, tie
 from waveguide.network.graph import Network
 from waveguide.network.search import Searcher
 from waveguide.ocean.bathymetry import Bathymetry
+from waveguide.ocean.stratification import Climatology
 from waveguide.propagation.cautions import route_cautions
 from waveguide.propagation.legs import Leg, legs_of_route
 from waveguide.propagation.losses import step_physics
 from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.routes import Route, RouteFinder
+from waveguide.propagation.validity import Survey, Validity
 
 Array = NDArray[np.float64]
 Position = tuple[float, float]
@@ -40,6 +42,8 @@ class Arrival:
     legs : list of list of Leg
         For each route.
     cautions : list of str
+    validity : Validity or None
+        Of the headline route.
     """
 
     status: str
@@ -48,12 +52,13 @@ class Arrival:
     routes: list[Route]
     legs: list[list[Leg]]
     cautions: list[str]
+    validity: Validity | None = None
 
 
 def mode_arrivals(
     network: Network, mode: ModeAtNodes, depths: Bathymetry, source: Box,
     source_place: Position, targets: list[Position], omega: float, damping: float = 0.0,
-    drag: float = 0.0,
+    drag: float = 0.0, climatology: Climatology | None = None,
 ) -> list[Arrival]:
     """Arrivals of one mode at every target.
 
@@ -74,6 +79,8 @@ def mode_arrivals(
         Interior damping (1/s).
     drag : float
         Coefficient of the linear bottom stress (m/s).
+    climatology : Climatology, optional
+        That the phase speeds are from, to say what the season may change.
 
     Returns
     -------
@@ -82,6 +89,7 @@ def mode_arrivals(
     """
     physics = step_physics(network, mode, omega, damping, drag)
     ties = tie(network, mode.speed, source, depths)
+    survey = Survey(network, mode, omega, depths, climatology)
     finder = RouteFinder(Searcher.of(network), physics, ties) if ties.node.size else None
     arrivals = []
     for place in targets:
@@ -91,15 +99,16 @@ def mode_arrivals(
             arrivals.append(Arrival(status, ties, target, [], [], []))
             continue
         routes = finder.routes(target)
+        if not routes:
+            arrivals.append(Arrival(NO_ROUTE, ties, target, [], [], []))
+            continue
         legs = [
             legs_of_route(network, physics, route, source_place, ties, place, target)
             for route in routes
         ]
-        cautions = (
-            route_cautions(network, mode, omega, routes[0], ties, target) if routes else []
-        )
-        status = REACHED if routes else NO_ROUTE
-        arrivals.append(Arrival(status, ties, target, routes, legs, cautions))
+        validity = survey.of(routes[0].steps)
+        cautions = route_cautions(validity, omega, routes[0], ties, target)
+        arrivals.append(Arrival(REACHED, ties, target, routes, legs, cautions, validity))
     return arrivals
 
 

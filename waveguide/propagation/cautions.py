@@ -3,37 +3,45 @@
 from __future__ import annotations
 
 import numpy as np
-from numpy.typing import NDArray
 
-from waveguide.constants import SECONDS_PER_DAY, coriolis
+from waveguide.constants import SECONDS_PER_DAY
 from waveguide.network.attach import Ties
-from waveguide.network.graph import Network, StepKind
-from waveguide.propagation.equator import equatorial_radius
-from waveguide.propagation.losses import critical_share
-from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.routes import Route
-
-Array = NDArray[np.float64]
+from waveguide.propagation.validity import UPPER_OCEAN, Validity
 
 FASTEST_SHARE_OF_F = 0.3
 """ω/|f| above which a wave is not "low-frequency": the error of the long-wave limit is ω²/f²."""
 
+SHARPEST_COAST = 1.0
+"""Radius of curvature in R below which a coast is not straight for the wave."""
+
+NARROWEST_BASIN = 3.0
+"""Width in R below which the other shore is felt: there e^(−3) = 5 % of the amplitude is left."""
+
+LARGEST_CHANGE = 1.0 / 3.0
+"""Change of ln c over one wavelength/2π above which it is not slow."""
+
 RESOLVED_STRAIT = 20e3
 """Straits narrower than two cells of the 0.1° bathymetry are not resolved by it (m)."""
 
+UPPER_SHARE = 0.15
+"""Share of c₁ from the upper ocean above which the season matters (our choice: if seasons change
+N there by a third, c₁ changes by a twentieth)."""
+
 FAINT = 0.01
-ICE_LATITUDE = 65.0
+NORTHERN_ICE, SOUTHERN_ICE = 65.0, -60.0
+"""Latitudes poleward of which sea ice is common in winter (MEMORY)."""
 
 
 def route_cautions(
-    network: Network, mode: ModeAtNodes, omega: float, route: Route, source: Ties, target: Ties
+    validity: Validity, omega: float, route: Route, source: Ties, target: Ties
 ) -> list[str]:
     """Cautions that belong to one target and mode.
 
     Parameters
     ----------
-    network : Network
-    mode : ModeAtNodes
+    validity : Validity
+        Of the route.
     omega : float
         Dominant angular frequency (rad/s).
     route : Route
@@ -43,59 +51,47 @@ def route_cautions(
     -------
     list of str
     """
-    found = [
-        _fast(network, mode, omega, route),
-        _simultaneous(network, mode, omega, route),
-        _unresolved(network, route),
-        _icy(network, route),
-        _tied("source", source, route.start),
-        _tied("target", target, route.end),
-    ]
-    if route.amplitude < FAINT:
-        found.append(f"amplitude ratio {route.amplitude:.2g}: too faint to be told from noise")
-    return [caution for caution in found if caution]
-
-
-def _fast(network: Network, mode: ModeAtNodes, omega: float, route: Route) -> str:
-    coast = route.steps[network.kind[route.steps] == StepKind.COAST]
-    f = np.abs(coriolis(network.step_lat[coast]))
-    trapped = f > 2.0e-11 * equatorial_radius(mode.speed[network.tail[coast]])
-    ratio = float(omega / f[trapped].min()) if trapped.any() else 0.0
-    if ratio <= FASTEST_SHARE_OF_F:
-        return ""
-    return (
-        f"ω/|f| reaches {ratio:.2f} on the route: the wave is not slow beside the earth's rotation"
-    )
-
-
-def _simultaneous(network: Network, mode: ModeAtNodes, omega: float, route: Route) -> str:
-    share = critical_share(network, route.steps, mode.speed, omega)
-    if share < 0.1:
-        return ""
     days = 2.0 * np.pi / omega / SECONDS_PER_DAY
-    return (
-        f"{100 * share:.0f} % of the coastal way is below the critical frequency at {days:g} days: "
-        "sea level rises there almost at once, fed from the equator, and leaks Rossby waves"
-    )
+    icy = _icy(validity)
+    found = [
+        (validity.frequency_over_f > FASTEST_SHARE_OF_F,
+         f"ω/|f| reaches {validity.frequency_over_f:.2f} on the route: the wave is not slow beside "
+         "the earth's rotation"),
+        (validity.critical_share >= 0.1,
+         f"{100 * validity.critical_share:.0f} % of the coastal way is below the critical "
+         f"frequency at {days:g} days: sea level rises there almost at once, fed from the equator, "
+         "and leaks Rossby waves"),
+        (validity.coast_radius < SHARPEST_COAST,
+         f"the coast bends within {validity.coast_radius:.1f} R on a twentieth of the way: bends "
+         "shift the phase"),
+        (validity.basin_width < NARROWEST_BASIN,
+         f"the water beside the coast is {validity.basin_width:.1f} R wide on a twentieth of the "
+         "way: the other shore is felt"),
+        (validity.speed_change > LARGEST_CHANGE,
+         f"the phase speed changes by {100 * validity.speed_change:.0f} % over a wavelength/2π: it "
+         "does not vary slowly, and some of the wave is reflected or scattered"),
+        (validity.narrowest_strait < RESOLVED_STRAIT,
+         f"a strait {validity.narrowest_strait / 1e3:.0f} km wide on the route is not resolved by "
+         "the 0.1° bathymetry"),
+        (bool(icy), f"the route reaches {icy}: sea ice is not accounted for"),
+        (validity.upper_share > UPPER_SHARE,
+         f"{100 * validity.upper_share:.0f} % of the speed comes from the upper {UPPER_OCEAN:.0f} "
+         "m, and the stratification is that of the annual mean, whatever the season"),
+        (route.amplitude < FAINT,
+         f"amplitude ratio {route.amplitude:.2g}: too faint to be told from noise"),
+    ]  # fmt: skip
+    told = [text for raised, text in found if raised]
+    ends = [_tied("source", source, route.start), _tied("target", target, route.end)]
+    return told + [text for text in ends if text]
 
 
-def _unresolved(network: Network, route: Route) -> str:
-    gap = network.gap[route.steps]
-    gap = gap[(gap >= 0) & (network.kind[route.steps] == StepKind.STRAIT)]
-    narrow = network.gap_width[gap] < RESOLVED_STRAIT
-    if not narrow.any():
-        return ""
-    width = network.gap_width[gap][narrow].min() / 1e3
-    return f"a strait {width:.0f} km wide on the route is not resolved by the 0.1° bathymetry"
-
-
-def _icy(network: Network, route: Route) -> str:
-    if not route.steps.size:
-        return ""
-    highest = float(np.abs(network.lat[network.head[route.steps]]).max())
-    if highest < ICE_LATITUDE:
-        return ""
-    return f"the route reaches {highest:.0f}° of latitude: sea ice is not accounted for"
+def _icy(validity: Validity) -> str:
+    """The latitude that a route reaches where there is ice in winter, or nothing."""
+    if validity.northernmost > NORTHERN_ICE:
+        return f"{validity.northernmost:.0f}°N"
+    if validity.southernmost < SOUTHERN_ICE:
+        return f"{-validity.southernmost:.0f}°S"
+    return ""
 
 
 def _tied(what: str, ties: Ties, at: int) -> str:

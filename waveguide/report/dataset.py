@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import fields
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -13,6 +14,7 @@ from waveguide.propagation.arrivals import REACHED, Arrival
 from waveguide.propagation.legs import Leg
 from waveguide.propagation.routes import Route
 from waveguide.propagation.transfer import LegBudget
+from waveguide.propagation.validity import Validity
 from waveguide.propagation.waveform import ArrivalTimes, mode_shares
 from waveguide.schema import ARRIVALS, assemble, check
 
@@ -89,6 +91,7 @@ def _row(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
         "target_distance_radii": arrival.target.nearest_radii,
         "target_factor": nan,
         "caution": "; ".join(arrival.cautions),
+        **_validity(arrival),
     }
     for name in ("source", "target"):
         for unit in ("km", "radii"):
@@ -97,6 +100,22 @@ def _row(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
     if arrival.status == REACHED:
         row.update(_reached(scenario, arrival))
     return row
+
+
+def _validity(arrival: Arrival) -> dict[str, float]:
+    """How far the headline route is from what the theory assumes."""
+    found = arrival.validity or Validity(*([float("nan")] * len(fields(Validity))))
+    return {
+        "frequency_over_f": found.frequency_over_f,
+        "coast_radius_radii": found.coast_radius,
+        "basin_width_radii": found.basin_width,
+        "speed_change": found.speed_change,
+        "critical_share": found.critical_share,
+        "narrowest_strait_km": found.narrowest_strait / 1e3,
+        "northernmost_latitude": found.northernmost,
+        "southernmost_latitude": found.southernmost,
+        "upper_ocean_share": found.upper_share,
+    }
 
 
 def _wave_row(answer: ModeAnswer, target: int, height: float | None) -> dict[str, float]:
