@@ -33,7 +33,6 @@ def integrate_basin(
     water = np.ones((rows, columns), bool)
     water[:, [0, -1]] = False
     domain = Domain(water, 0.0, -40.0, step)
-    middle = edge_sponge(domain, 6.0, 4e-5)[:, columns // 2]
 
     def burst(t: float) -> float:
         day = t / SECONDS_PER_DAY
@@ -41,7 +40,8 @@ def integrate_basin(
 
     gauges = whole_route(
         domain, speed, patch(domain, 1.5 * step, 26.0, 1.0), burst, GAUGES,
-        days * SECONDS_PER_DAY, sponge=middle[:, None], viscosity=viscosity, sample=21600.0,
+        days * SECONDS_PER_DAY, sponge=edge_sponge(domain, 6.0, 4e-5, "NS"),
+        viscosity=viscosity, sample=21600.0,
     )
     return domain, gauges
 

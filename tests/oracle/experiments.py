@@ -80,25 +80,27 @@ def eastern(
     omega, north = np.asarray(frequency, float), np.asarray(latitude, float)
     sine, cosine = np.sin(np.radians(angle)), np.cos(np.radians(angle))
     step, off, along = 1.0 / cells, 12.0, 8.0 / cosine
+    start = max(5.0, 4.0 * sine / cosine)  # west of where the coast meets ŷ = −4
     nx, ny = round(off * cells), 2 * round(along * cells)
 
     def pulse(di: float, dj: float, shape: tuple[int, int]) -> tuple[Array, Array, Array]:
         across = ((np.arange(shape[1]) + di) * step - off)[None, :]
         upward = ((np.arange(shape[0]) + dj - ny / 2) * step)[:, None]
         x, y = across * cosine + upward * sine, upward * cosine - across * sine
-        return x, y, np.exp(-(((x + 5.0) / 0.8) ** 2) / 2.0 - y**2 / 2.0)
+        return x, y, np.exp(-(((x + start) / 0.8) ** 2) / 2.0 - y**2 / 2.0)
 
     x, y, sea_level = pulse(0.5, 0.5, (ny, nx))
     current = [pulse(0.0, 0.5, (ny, nx + 1))[2] * cosine, pulse(0.5, 0.0, (ny + 1, nx))[2] * sine]
     edge = np.abs((np.arange(ny) + 0.5 - ny / 2) * step)[:, None]
-    sponge = ramp(np.abs(y), 6.0, 2.0, 1.5) + ramp(-x, 8.0, 4.0, 1.0) + ramp(edge, along - 1, 1, 1)
+    sponge = ramp(np.abs(y), 6.0, 2.0, 1.5) + ramp(-x, start + 3.0, 4.0, 1.0)
+    sponge += ramp(edge, along - 1.0, 1.0, 1.0)
     grid = plane_grid(np.ones((ny, nx), bool), step, y)
     rows = np.round(north / cosine * cells).astype(int) + ny // 2
     record = integrate(
         grid, 1.0, duration, gauges_east(rows, nx), initial=(sea_level, *current),
         sponge=sponge, gravity=1.0, sample=SAMPLE,
     )
-    arriving = np.sqrt(2 * np.pi) * 0.8 * np.exp(-((omega * 0.8) ** 2) / 2 + 5j * omega)
+    arriving = np.sqrt(2 * np.pi) * 0.8 * np.exp(-((omega * 0.8) ** 2) / 2 + 1j * omega * start)
     series = wall_series(record, north.size)
     if first_cell:
         series = record.sea_level.reshape(-1, north.size, 2, 3).mean(axis=2)[..., 0]

@@ -40,7 +40,7 @@ def main() -> None:
     """Run everything and write the file."""
     cases = [entry("eastern", eastern(FREQUENCY, EAST, 20), cells=20, duration=200.0)]
     cases.append(entry("western", western(FREQUENCY, WEST, 20), cells=20, duration=150.0))
-    for angle in (15.0, 30.0, 45.0, 60.0):
+    for angle in (15.0, 30.0, 45.0, 60.0, 70.0):
         result = eastern(LEAN_FREQUENCY, LEAN, 16, angle, 130.0)
         cases.append(entry("leaning", result, cells=16, duration=130.0, angle=angle))
     for width, length, cells in STRAITS:

@@ -91,20 +91,25 @@ def test_western_coast_and_junction() -> None:
     assert_allclose(np.degrees(np.angle(found[:, -1] / kelvin)), 0.0, atol=3.0)
 
 
-@pytest.mark.parametrize("angle", [15.0, 30.0, 45.0, 60.0])
-def test_leaning_coast(angle: float) -> None:
-    # The favoured coast within 9 %. The other one, in per cent of the incident wave's own
-    # meridional amplitude, within 12 %: a small rest of a first-order theory at 60°.
+@pytest.mark.parametrize(
+    ("angle", "degrees", "other"),
+    [(15.0, 5.0, 0.08), (30.0, 10.0, 0.12), (45.0, 18.0, 0.09), (60.0, 35.0, 0.11),
+     (70.0, 47.0, 0.27)],
+)
+def test_leaning_coast(angle: float, degrees: float, other: float) -> None:
+    # A first-order theory. Favoured coast: amplitude within 9 % and phase within `degrees`;
+    # other coast: within `other` of its amplitude without lean.
     frequency, found = stored("leaning", angle=angle)
     along = 2.0 / np.cos(np.radians(angle))
     leg = np.exp(segment_exponent(frequency, 1.0, 2.0, 4.0, along))
     north = eastern_junction(frequency * RATE, C, 2.0, angle, -angle).amplitude * leg
     south = eastern_junction(frequency * RATE, C, 2.0, -angle, angle).amplitude * leg
     assert_allclose(np.abs(north), np.abs(found[:, 1]), rtol=0.09)
+    assert_allclose(np.degrees(np.angle(found[:, 1] / north)), 0.0, atol=degrees)
     error = (np.abs(south) - np.abs(found[:, 3])) / np.abs(eastern_wall(frequency, 4.0))
-    assert_allclose(error, 0.0, atol=0.12)
-    slow = frequency <= 0.3  # phases are not corrected for the asymmetry: up to 22° late at 60°
-    assert_allclose(np.degrees(np.angle(found[slow, 1] / north[slow])), 0.0, atol=22.1)
+    assert_allclose(error, 0.0, atol=other)
+    if angle <= 60.0:
+        assert_allclose(np.degrees(np.angle(found[:, 3] / south)), 0.0, atol=30.0)
 
 
 def test_half_each_would_be_wrong_on_a_leaning_coast() -> None:

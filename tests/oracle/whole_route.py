@@ -86,12 +86,18 @@ def patch(domain: Domain, lon: float, lat: float, radius: float) -> tuple[Cells,
     return cells, np.exp(-0.5 * square[cells[:, 0], cells[:, 1]])
 
 
-def edge_sponge(domain: Domain, width: float, rate: float) -> Array:
-    """Damping that rises to `rate` (1/s) over `width` degrees at all four edges."""
+def edge_sponge(domain: Domain, width: float, rate: float, sides: str) -> Array:
+    """Damping that rises to `rate` (1/s) over `width` degrees at sides out of "NESW".
+
+    Leave out a side where a coast in use comes closer than `width`.
+    """
     rows, columns = domain.water.shape
     row, column = np.arange(rows)[:, None] + 0.5, np.arange(columns)[None, :] + 0.5
-    inward = np.minimum(np.minimum(row, rows - row), np.minimum(column, columns - column))
-    return rate * np.clip(1.0 - inward * domain.step / width, 0.0, 1.0) ** 2
+    inward = {"N": rows - row, "E": columns - column, "S": row, "W": column}
+    depth = np.full(domain.water.shape, np.inf)
+    for side in sides:
+        depth = np.minimum(depth, inward[side] * domain.step)
+    return np.asarray(rate * np.clip(1.0 - depth / width, 0.0, 1.0) ** 2)
 
 
 def whole_route(
