@@ -15,6 +15,7 @@ from waveguide.geodesy import arc, positions, unit_vectors
 Array = NDArray[np.float64]
 
 _QUIET = 5.0  # radii beyond which a patch (e^−25) is nothing
+_FADED = 40.0  # radii beyond which a storm's wind (a sixth of its greatest) is left out
 INFLOW = 20.0
 """Angle by which a storm's wind blows inward of its circles (degrees), usual at sea.
 
@@ -119,6 +120,42 @@ def event_start(event: Event) -> np.datetime64:
     return np.datetime64(event.time[0], "ns") if isinstance(event, Storm) else event.start
 
 
+def within_reach(event: Event, lon: Array, lat: Array) -> NDArray[np.int64]:
+    """Places that an event may reach while it lasts.
+
+    Parameters
+    ----------
+    event : Patch or Storm
+    lon, lat : ndarray, shape (p,)
+        Degrees.
+
+    Returns
+    -------
+    ndarray of int, shape (k,)
+    """
+    if isinstance(event, Patch):
+        half = 0.5 * event.speed * event.duration
+        heading = np.radians(event.heading)
+        lon0, lat0 = _ahead(event, heading, np.array([half]))
+        reach = half + _QUIET * max(event.length, event.width)
+    else:
+        lon0, lat0, reach = event.lon, event.lat, _FADED * event.radius
+        hops = arc(np.linalg.norm(np.diff(unit_vectors(event.lon, event.lat), axis=0), axis=1))
+        reach += 0.5 * float(hops.max())
+    centre, place = unit_vectors(lon0, lat0), unit_vectors(lon, lat)
+    away = arc(np.sqrt(np.maximum(2.0 - 2.0 * centre @ place.T, 0.0)))
+    return np.nonzero(away.min(axis=0) <= reach)[0]
+
+
+def _ahead(event: Patch, heading: float, distance: Array) -> tuple[Array, Array]:
+    """Places at distances (m) from the start of a patch along a great circle."""
+    origin = unit_vectors(event.lon, event.lat)
+    east, north = _frame(np.array(event.lon), np.array(event.lat))
+    ahead = np.sin(heading) * east + np.cos(heading) * north
+    angle = np.asarray(distance)[:, None] / EARTH_RADIUS
+    return positions(np.cos(angle) * origin + np.sin(angle) * ahead)
+
+
 def _offsets(lon: Array, lat: Array, lon0: Array, lat0: Array) -> tuple[Array, Array]:
     """East and north components (m) of the way from centres (nt,) to places (p,)."""
     east, north = _frame(lon0, lat0)
@@ -142,12 +179,7 @@ def _patch_stress(event: Patch, lon: Array, lat: Array, time: Times) -> tuple[Ar
     elapsed = seconds(time - event.start)
     during = (elapsed > 0.0) & (elapsed < event.duration)
     strength = np.where(during, np.sin(np.pi * elapsed / event.duration) ** 2, 0.0) * event.stress
-    # The centre moves along a great circle.
-    origin = unit_vectors(event.lon, event.lat)
-    east, north = _frame(np.array(event.lon), np.array(event.lat))
-    heading, angle = np.radians(event.heading), event.speed * elapsed[:, None] / EARTH_RADIUS
-    ahead = np.sin(heading) * east + np.cos(heading) * north
-    centre = positions(np.cos(angle) * origin + np.sin(angle) * ahead)
+    centre = _ahead(event, float(np.radians(event.heading)), event.speed * elapsed)
     x, y = _offsets(lon, lat, *centre)
     towards = np.radians(event.towards)
     along = (x * np.sin(towards) + y * np.cos(towards)) / event.length
@@ -164,7 +196,7 @@ def _storm_stress(event: Storm, lon: Array, lat: Array, time: Times) -> tuple[Ar
     x, y = _offsets(lon, lat, lon0, lat0)
     r = np.maximum(np.hypot(x, y), 1.0)
     there = ((at >= since[0]) & (at <= since[-1]))[:, None]
-    inside = np.minimum(r / event.radius, np.sqrt(event.radius / r))
+    inside = np.minimum(r / event.radius, np.sqrt(event.radius / r)) * (r < _FADED * event.radius)
     speed = np.where(there, event.wind * inside, 0.0)
     # Anticlockwise in the north, clockwise in the south, and somewhat inward.
     turn = np.where(lat0 >= 0.0, 1.0, -1.0)[:, None]

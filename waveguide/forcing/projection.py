@@ -12,7 +12,13 @@ from scipy.sparse import csr_array
 
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
-from waveguide.forcing.events import Event, event_stress
+from waveguide.forcing.events import (
+    Event,
+    event_end,
+    event_start,
+    event_stress,
+    within_reach,
+)
 from waveguide.forcing.samples import Samples
 from waveguide.forcing.time_axis import Times, day, longest_gap, seconds, uniform_times
 from waveguide.forcing.wind_file import WindFile, sampling_matrix, stress_chunks
@@ -135,14 +141,15 @@ def event_forcing(
     Forcing
     """
     stress = np.zeros((steps.size, time.size), dtype=np.float32)
-    size = max(1, EVENT_POINTS // max(samples.lon.size, 1))
-    for begin in range(0, time.size, size):
-        where = slice(begin, begin + size)
-        for event in events:
-            x, y = event_stress(event, samples.lon, samples.lat, time[where])
-            pushed = samples.eastward * x + samples.northward * y
-            for row, values in enumerate(pushed, start=begin):
-                stress[:, row] += np.bincount(samples.row, values, minlength=steps.size)
+    for event in events:
+        near = within_reach(event, samples.lon, samples.lat)
+        active = np.nonzero((time >= event_start(event)) & (time <= event_end(event)))[0]
+        size = max(1, EVENT_POINTS // max(near.size, 1))
+        for when in np.array_split(active, max(1, -(-active.size // size))):
+            x, y = event_stress(event, samples.lon[near], samples.lat[near], time[when])
+            pushed = samples.eastward[near] * x + samples.northward[near] * y
+            for column, values in zip(when.tolist(), pushed, strict=True):
+                stress[:, column] += np.bincount(samples.row[near], values, minlength=steps.size)
     return Forcing(steps, time, step, stress, np.ones(steps.size))
 
 

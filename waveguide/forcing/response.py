@@ -150,10 +150,31 @@ def covered_share(influence: Influence, forcing: Forcing) -> float:
     -------
     float
     """
-    rows = influence.weight > 0.0
-    weight = influence.weight[rows]
-    at = np.searchsorted(forcing.steps, influence.step[rows])
-    return float((weight * forcing.covered[at]).sum() / max(weight.sum(), 1e-300))
+    one = np.zeros(influence.step.size, dtype=np.int64)
+    return float(covered_by_group(influence, forcing, one, 1)[0])
+
+
+def covered_by_group(influence: Influence, forcing: Forcing, group: Index, count: int) -> Array:
+    """The same for groups of steps, shape (count,).
+
+    Parameters
+    ----------
+    influence : Influence
+        k rows.
+    forcing : Forcing
+    group : ndarray of int, shape (k,)
+        Group of each row, −1 for none.
+    count : int
+
+    Returns
+    -------
+    ndarray, shape (count,)
+    """
+    rows = np.nonzero((influence.weight > 0.0) & (group >= 0))[0]
+    weight, at = influence.weight[rows], np.searchsorted(forcing.steps, influence.step[rows])
+    total = np.bincount(group[rows], weight, minlength=count)
+    found = np.bincount(group[rows], weight * forcing.covered[at], minlength=count)
+    return np.asarray(found / np.maximum(total, 1e-300))
 
 
 def main_way(influence: Influence) -> Index:

@@ -1,0 +1,189 @@
+"""Forced response of one mode at all targets."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from waveguide.constants import SECONDS_PER_DAY
+from waveguide.forcing.influence import Influence, influence
+from waveguide.forcing.projection import Forcing
+from waveguide.forcing.response import (
+    RouteResponse,
+    contributions,
+    covered_by_group,
+    covered_share,
+    main_way,
+    route_response,
+    spin_up,
+)
+from waveguide.forcing.stretches import Stretch, cut_into_stretches
+from waveguide.network.attach import Ties, point_box, tie
+from waveguide.network.graph import Network, StepKind
+from waveguide.ocean.bathymetry import Bathymetry
+from waveguide.propagation.losses import StepPhysics, critical_share
+from waveguide.propagation.modes import ModeAtNodes
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+Forcer = Callable[[Network, Array, Index], Forcing]
+"""What makes the forcing of steps: network, phase speed at its nodes, rising steps."""
+
+RESPONDS = "responds"
+OFF_GUIDE = "target off the guide"
+NOT_CARRIED = "mode not carried here"
+NO_WIND = "no wind acts upstream"
+
+LONGEST_MEMORY = 3.0 * 365.0 * SECONDS_PER_DAY
+"""Wind longer ago than this is forgotten (s)."""
+
+
+@dataclass(frozen=True)
+class TargetResponse:
+    """Response of one mode at one target.
+
+    Attributes
+    ----------
+    status : str
+    node : int
+        Node the target is tied to, −1 if none.
+    factor : float
+        Share of the node's amplitude that the target feels.
+    distance : float
+        From the target to the guide (m).
+    sea_level : ndarray, shape (nt,)
+        m; NaN unless the target responds.
+    stretches : list of Stretch
+        Upstream, nearest first.
+    by_stretch : ndarray, shape (stretches, nt)
+        Their parts of `sea_level`.
+    stretch_covered : ndarray, shape (stretches,)
+        Share of each that the wind record covers.
+    way : RouteResponse or None
+        Along the main way.
+    spin_up : float
+        Delay within which 95 % of the influence lies (s).
+    covered : float
+        Share of the influence that the wind record covers.
+    critical : float
+        Share of the coastal way below the critical frequency.
+    """
+
+    status: str
+    node: int
+    factor: float
+    distance: float
+    sea_level: Array
+    stretches: list[Stretch]
+    by_stretch: Array
+    stretch_covered: Array
+    way: RouteResponse | None
+    spin_up: float
+    covered: float
+    critical: float
+
+
+@dataclass(frozen=True)
+class ModeResponse:
+    """Responses of one mode.
+
+    Attributes
+    ----------
+    forcing : Forcing
+        Of all steps upstream of the targets.
+    targets : list of TargetResponse
+    """
+
+    forcing: Forcing
+    targets: list[TargetResponse]
+
+
+def mode_response(
+    network: Network, mode: ModeAtNodes, physics: StepPhysics, depths: Bathymetry,
+    targets: Sequence[tuple[float, float]], omega: float, forcer: Forcer,
+) -> ModeResponse:
+    """Response of one mode at every target.
+
+    Parameters
+    ----------
+    network : Network
+    mode : ModeAtNodes
+    physics : StepPhysics
+        At the dominant frequency.
+    depths : Bathymetry
+    targets : sequence of (lon, lat)
+        Degrees.
+    omega : float
+        Dominant angular frequency (rad/s).
+    forcer : Forcer
+
+    Returns
+    -------
+    ModeResponse
+    """
+    ties = [tie(network, mode.speed, point_box(*place), depths) for place in targets]
+    reach = [_influence(network, mode, physics, tied) for tied in ties]
+    asked = [found.step[found.weight > 0.0] for found in reach if found is not None]
+    steps = np.unique(np.concatenate([np.zeros(0, np.int64), *asked]))
+    forcing = forcer(network, mode.speed, steps)
+    answers = [
+        _answer(network, mode, tied, found, forcing, omega)
+        for tied, found in zip(ties, reach, strict=True)
+    ]
+    return ModeResponse(forcing, answers)
+
+
+def _best(tied: Ties) -> int:
+    """Of several stretches of guide the one whose wave the target feels most, then the nearest."""
+    return int(np.lexsort((tied.distance, -tied.factor))[0])
+
+
+def _influence(
+    network: Network, mode: ModeAtNodes, physics: StepPhysics, tied: Ties
+) -> Influence | None:
+    if not tied.node.size:
+        return None
+    best = _best(tied)
+    node, factor = int(tied.node[best]), float(tied.factor[best])
+    beyond = float(tied.along[best] / mode.speed[node])
+    return influence(network, mode, physics, node, factor, LONGEST_MEMORY, beyond)
+
+
+def _answer(
+    network: Network, mode: ModeAtNodes, tied: Ties, found: Influence | None, forcing: Forcing,
+    omega: float,
+) -> TargetResponse:
+    """Sum up what lies upstream of one target."""
+    if found is None or not found.weight.any():
+        return _silent(tied, found, forcing.time.size)
+    stretches, of_row = cut_into_stretches(network, found)
+    parts = contributions(found, forcing, of_row, len(stretches))
+    best = _best(tied)
+    way = found.step[main_way(found)]
+    return TargetResponse(
+        status=RESPONDS, node=int(tied.node[best]), factor=float(tied.factor[best]),
+        distance=float(tied.distance[best]), sea_level=parts.sum(axis=0),
+        stretches=stretches, by_stretch=parts,
+        stretch_covered=covered_by_group(found, forcing, of_row, len(stretches)),
+        way=route_response(network, found, forcing),
+        spin_up=spin_up(found), covered=covered_share(found, forcing),
+        critical=critical_share(network, way[_on_coast(network, way)], mode.speed, omega),
+    )  # fmt: skip
+
+
+def _on_coast(network: Network, steps: Index) -> NDArray[np.bool_]:
+    return np.asarray(network.kind[steps] == StepKind.COAST)
+
+
+def _silent(tied: Ties, found: Influence | None, count: int) -> TargetResponse:
+    """The answer where there is none."""
+    status = NO_WIND
+    if found is None:
+        status = OFF_GUIDE if np.isfinite(tied.nearest) else NOT_CARRIED
+    return TargetResponse(
+        status, -1, float("nan"), tied.nearest, np.full(count, np.nan), [],
+        np.zeros((0, count)), np.zeros(0), None, float("nan"), float("nan"), float("nan"),
+    )
