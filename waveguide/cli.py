@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
+from waveguide.cli_planning import plan
 from waveguide.cli_records import compare
 from waveguide.progress import Progress
 
@@ -35,6 +36,7 @@ app = typer.Typer(
 
 
 app.command()(compare)
+app.command()(plan)
 
 
 def main() -> None:
