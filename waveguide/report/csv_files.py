@@ -44,10 +44,11 @@ def _write(path: Path, header: Sequence[str], rows: Iterator[list[Any]]) -> None
     with path.open("w", encoding="utf-8", newline="") as file:
         writer = csv.writer(file, lineterminator="\n")
         writer.writerow(header)
-        writer.writerows([_cell(value) for value in row] for row in rows)
+        writer.writerows([cell(value) for value in row] for row in rows)
 
 
-def _cell(value: Any) -> Any:
+def cell(value: Any) -> Any:
+    """A value as a spreadsheet reads it: empty where missing, no text that runs as a formula."""
     value = plain_value(value)
     if not isinstance(value, str):
         return "" if value is None else value
