@@ -1,0 +1,264 @@
+"""Figures of a forced response: the series, and for each target which wind made its peak."""
+
+from __future__ import annotations
+
+import re
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from waveguide.constants import SECONDS_PER_DAY
+from waveguide.forcing.answers import RESPONDS, TargetResponse
+from waveguide.network.graph import Network, StepKind
+from waveguide.report.colours import MODE_COLOURS
+from waveguide.report.response_text import place
+from waveguide.report.text import plain
+
+if TYPE_CHECKING:
+    import xarray as xr
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+    from waveguide.forcing.result import ResponseResult
+
+Array = NDArray[np.float64]
+
+MOST_TARGETS = 12
+"""Targets drawn; the files have them all."""
+
+_BARS = 10
+_NOTE = "#6a6a6a"
+
+
+def write_response_figures(result: ResponseResult, dataset: xr.Dataset, folder: Path) -> None:
+    """Write ``sea_level.png`` and a ``cause_….png`` for each target.
+
+    Parameters
+    ----------
+    result : ResponseResult
+    dataset : xarray.Dataset
+        As declared in `RESPONSE`.
+    folder : Path
+    """
+    draw_series(dataset).savefig(folder / "sea_level.png")
+    for target, name in enumerate(result.target[:MOST_TARGETS]):
+        figure = draw_cause(result, dataset, target)
+        if figure is not None:
+            slug = re.sub(r"[^\w-]+", "-", plain(name, 60)).strip("-").lower() or "target"
+            figure.savefig(folder / f"cause_{target + 1:02d}_{slug}.png")
+
+
+def _figure(size: tuple[float, float], title: str, note: str) -> Figure:
+    from matplotlib.backends.backend_agg import FigureCanvasAgg
+    from matplotlib.figure import Figure
+
+    figure = Figure(figsize=size, dpi=130, layout="constrained")
+    FigureCanvasAgg(figure)
+    figure.suptitle(title, fontsize=12, fontweight="bold", parse_math=False)
+    figure.supxlabel(note, fontsize=7, color=_NOTE, parse_math=False)
+    return figure
+
+
+def _caution(dataset: xr.Dataset) -> str:
+    return str(dataset.attrs["caution"]).split(": ")[0] + "."
+
+
+def draw_series(dataset: xr.Dataset) -> Figure:
+    """Sea level at every target, each mode and the sum.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+
+    Returns
+    -------
+    matplotlib.figure.Figure
+    """
+    count = min(dataset.sizes["target"], MOST_TARGETS)
+    figure = _figure(
+        (9.5, 1.2 + 1.35 * count), plain(dataset.attrs["title"], 85), _caution(dataset)
+    )
+    axes = figure.subplots(count, 1, sharex=True, squeeze=False)[:, 0]
+    for target, axis in enumerate(axes):
+        _draw_target(axis, dataset, target)
+    handles, labels = axes[0].get_legend_handles_labels()
+    figure.legend(handles, labels, loc="outside upper right", ncols=len(labels), fontsize=8,
+                  frameon=False)
+    return figure
+
+
+def _draw_target(axis: Axes, dataset: xr.Dataset, target: int) -> None:
+    time = dataset["time"].values
+    for m, mode in enumerate(dataset["mode"].values.tolist()):
+        level = 100.0 * dataset["sea_level"].values[target, m]
+        axis.plot(time, level, color=MODE_COLOURS[mode], lw=1.0, label=f"mode {mode}")
+    total = 100.0 * dataset["total_sea_level"].values[target]
+    if dataset.sizes["mode"] > 1:
+        axis.plot(time, total, color="black", lw=1.3, label="sum")
+    moment = dataset["total_peak_date"].values[target]
+    if not np.isnat(moment):
+        axis.plot(moment, 100.0 * dataset["total_peak"].values[target], "v", ms=5, color="#c22f2f",
+                  label="peak")
+    axis.axhline(0.0, color="#b0b0b0", lw=0.6, zorder=0)
+    axis.set_ylabel("cm", fontsize=8)
+    axis.set_title(plain(dataset["target"].values[target], 40), loc="left", fontsize=9,
+                   parse_math=False)
+    axis.tick_params(labelsize=8)
+    axis.margins(x=0.01)
+
+
+def draw_cause(result: ResponseResult, dataset: xr.Dataset, target: int) -> Figure | None:
+    """Forcing and response along the main way to a target, and the stretches behind its peak.
+
+    Parameters
+    ----------
+    result : ResponseResult
+    dataset : xarray.Dataset
+    target : int
+
+    Returns
+    -------
+    matplotlib.figure.Figure or None
+        None where the target does not respond.
+    """
+    mode = _leading_mode(result, target)
+    if mode is None:
+        return None
+    answer, network = result.answers[mode].targets[target], result.networks[mode]
+    peak = dataset["total_peak_date"].values[target]
+    title = (
+        f"{plain(result.target[target], 40)}: which wind made the "
+        f"{100.0 * float(dataset['total_peak'].values[target]):+.1f} cm of "
+        f"{np.datetime_as_string(peak, unit='D')}"
+    )
+    figure = _figure((9.5, 8.2), title, _caution(dataset))
+    grid = figure.add_gridspec(2, 2, height_ratios=(1.6, 1.0))
+    left, right = figure.add_subplot(grid[0, 0]), figure.add_subplot(grid[0, 1])
+    shown = _Shown(answer, network, result.time, peak)
+    for axis, values, what in (
+        (left, shown.stress, f"Stress in the direction of travel (Pa), mode {mode}"),
+        (right, 100.0 * shown.level, f"Sea level (cm), mode {mode}"),
+    ):
+        _draw_hovmoller(figure, axis, shown, values)
+        axis.set_title(what, fontsize=9)
+    right.tick_params(labelleft=False)
+    _draw_bars(figure.add_subplot(grid[1, :]), dataset, target)
+    return figure
+
+
+def _leading_mode(result: ResponseResult, target: int) -> int | None:
+    """The mode with the largest response."""
+    spread = {
+        mode: float(answer.targets[target].sea_level.std())
+        for mode, answer in result.answers.items()
+        if answer.targets[target].status == RESPONDS
+    }
+    return max(spread, key=lambda mode: spread[mode]) if spread else None
+
+
+class _Shown:
+    """The part of the way, and of time, that is drawn.
+
+    Upstream as far as 95 % of the influence lies, in time from before the wind that made the
+    peak to somewhat after it.
+    """
+
+    def __init__(
+        self, answer: TargetResponse, network: Network, time: NDArray[np.datetime64],
+        peak: np.datetime64,
+    ) -> None:
+        way = answer.way
+        assert way is not None  # the target responds
+        near = way.delay <= 1.05 * answer.spin_up
+        span = max(answer.spin_up, 30.0 * SECONDS_PER_DAY)
+        first = peak - np.timedelta64(round(1.3 * span), "s")
+        last = peak + np.timedelta64(round(0.5 * span), "s")
+        when = (time >= first) & (time <= last)
+        self.distance = -way.distance[near] / 1e6
+        self.node, self.network, self.peak = way.node[near], network, peak
+        self.time = time[when]
+        self.stress, self.level = way.stress[near][:, when], way.sea_level[near][:, when]
+        self.path = peak - (way.delay[near] * 1e9).astype("timedelta64[ns]")
+
+
+def _draw_hovmoller(figure: Figure, axis: Axes, shown: _Shown, values: Array) -> None:
+    """Distance to the target across, time upward, the characteristic that ends at the peak."""
+    from matplotlib.dates import AutoDateLocator, ConciseDateFormatter
+
+    limit = float(np.nanpercentile(np.abs(values), 99.0)) if np.isfinite(values).any() else 1.0
+    style: dict[str, Any] = {"cmap": "RdBu_r", "shading": "nearest", "rasterized": True}
+    mesh = axis.pcolormesh(
+        shown.distance, shown.time, values.T, vmin=-max(limit, 1e-6), vmax=max(limit, 1e-6), **style
+    )
+    figure.colorbar(mesh, ax=axis, location="bottom", shrink=0.9, pad=0.02).ax.tick_params(
+        labelsize=7
+    )
+    axis.set_facecolor("#e6e3dc")  # straits and hops, where no wind counts
+    axis.plot(shown.distance, shown.path, color="black", lw=1.2, ls="--")
+    axis.plot(0.0, shown.peak, "v", ms=6, color="#c22f2f", clip_on=False)
+    axis.set_ylim(shown.time[0], shown.time[-1])
+    locator = AutoDateLocator()
+    axis.yaxis.set_major_locator(locator)
+    axis.yaxis.set_major_formatter(ConciseDateFormatter(locator))
+    axis.set_xlabel("Distance to the target (1000 km)", fontsize=8)
+    axis.tick_params(labelsize=8)
+    _mark_kinds(axis, shown)
+
+
+def _mark_kinds(axis: Axes, shown: _Shown) -> None:
+    """Lines where coast and equator meet, with their names along the top."""
+    network = shown.network
+    into = {int(head): int(kind) for head, kind in zip(network.head, network.kind, strict=True)}
+    kind = np.array([
+        int(StepKind.EQUATOR) if network.equatorial[node] else into.get(int(node), 0)
+        for node in shown.node
+    ])
+    bounds = np.concatenate([[0], np.nonzero(np.diff(kind))[0] + 1, [kind.size]])
+    extent = float(np.ptp(shown.distance)) if shown.distance.size > 1 else 1.0
+    for a, b in zip(bounds[:-1], bounds[1:], strict=True):
+        start, end = shown.distance[a], shown.distance[b - 1]
+        if a > 0:
+            axis.axvline(start, color="#3b3b3b", lw=0.6, ls=":")
+        if end - start > 0.15 * extent:
+            label = StepKind(int(kind[a])).label
+            axis.text(0.5 * (start + end), shown.time[-1], label, fontsize=7, ha="center",
+                      va="top", bbox={"fc": "white", "ec": "none", "pad": 1.0, "alpha": 0.7})
+
+
+def _draw_bars(axis: Axes, dataset: xr.Dataset, target: int) -> None:
+    """The stretches that made the peak, the strongest first, coloured by mode."""
+    rows = np.nonzero(dataset["stretch_target"].values == target)[0]
+    part = 100.0 * dataset["stretch_at_peak"].values[rows]
+    order = np.argsort(-np.abs(part), kind="stable")[:_BARS]
+    modes = dataset["mode"].values[dataset["stretch_mode"].values[rows[order]]].tolist()
+    height = np.arange(order.size)
+    axis.barh(height, part[order], color=[MODE_COLOURS[mode] for mode in modes], height=0.7)
+    axis.set_yticks(height, [_bar_label(dataset, int(rows[k])) for k in order], fontsize=7)
+    axis.invert_yaxis()
+    axis.axvline(0.0, color="#3b3b3b", lw=0.6)
+    axis.set_xlabel("Part of the peak (cm)", fontsize=8)
+    axis.tick_params(axis="x", labelsize=8)
+    for mode in sorted(set(modes)):
+        axis.bar(0.0, 0.0, color=MODE_COLOURS[mode], label=f"mode {mode}")
+    axis.legend(fontsize=7, frameon=False, loc="best")
+
+
+def _bar_label(dataset: xr.Dataset, row: int) -> str:
+    """Kind and ends of a stretch, with the dates of its wind."""
+    kind = str(dataset["stretch_kind"].values[row])
+    if kind == "elsewhere":
+        return "all other stretches"
+    ends = [
+        place(*(float(dataset[f"stretch_{which}_{axis}"].values[row])
+                for axis in ("longitude", "latitude")))
+        for which in ("from", "to")
+    ]
+    if kind == "equator":
+        ends = [end.split(" ")[1] for end in ends]
+    dates = [
+        np.datetime_as_string(dataset[f"stretch_wind_{which}"].values[row], unit="D")
+        for which in ("start", "end")
+    ]
+    return f"{kind} {ends[0]} to {ends[1]}, {dates[0]} to {dates[1]}"
