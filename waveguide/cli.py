@@ -16,6 +16,7 @@ import typer
 
 from waveguide.cli_planning import plan
 from waveguide.cli_records import compare
+from waveguide.cli_wind import response
 from waveguide.progress import Progress
 
 if TYPE_CHECKING:
@@ -36,6 +37,7 @@ app = typer.Typer(
 
 
 app.command()(compare)
+app.command()(response)
 app.command()(plan)
 
 
@@ -107,12 +109,12 @@ def arrivals(
 @app.command()
 def scenarios() -> None:
     """List the shipped scenarios."""
-    from waveguide.scenario import read_scenario, shipped_scenarios
+    from waveguide.scenario import scenario_title, shipped_scenarios
 
     shipped = shipped_scenarios()
     width = max(map(len, shipped), default=0)
     for name, path in shipped.items():
-        print(f"{name:{width}}  {read_scenario(path).title}")
+        print(f"{name:{width}}  {scenario_title(path)}")
 
 
 @app.command(context_settings={"ignore_unknown_options": True, "allow_extra_args": True})
