@@ -135,6 +135,9 @@ def section(
     drag: Annotated[float, typer.Option(help="Linear bottom drag (m/s) of the decay length.")]
     = 5e-4,
     modes: Annotated[int, typer.Option(help="Highest mode number.")] = 3,
+    period: Annotated[
+        float | None, typer.Option(help="Period (days) of phase and group speed.")
+    ] = None,
     json: Annotated[bool, typer.Option("--json", help="Print one JSON document.")] = False,
 ) -> None:
     """Cross-shelf section at a coast, and the speed and shape of its coastal-trapped modes."""
@@ -148,7 +151,8 @@ def section(
         with Progress() as progress:
             progress("section and modes")
             answer = compute(
-                x, y, profile=profile, stratification=stratification, drag=drag, modes=modes
+                x, y, profile=profile, stratification=stratification, drag=drag, modes=modes,
+                period_days=period,
             )
         if folder is not None:
             write_section(answer, folder)

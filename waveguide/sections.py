@@ -10,7 +10,7 @@ import numpy as np
 from waveguide.coast.own_section import own_section
 from waveguide.coast.profile_files import read_profile, read_stratification
 from waveguide.coast.section_modes import Column, SectionModes, check_latitude, section_modes
-from waveguide.constants import REFERENCE_DENSITY
+from waveguide.constants import REFERENCE_DENSITY, SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.network.packaged import packaged_network
 from waveguide.network.section_query import (
@@ -39,6 +39,7 @@ def section(
     stratification: Path | None = None,
     drag: float = DRAG,
     modes: int = 3,
+    period_days: float | None = None,
 ) -> xr.Dataset:
     """The cross-shelf section at a coast and its coastal-trapped modes.
 
@@ -55,6 +56,8 @@ def section(
         Linear bottom drag r (m/s) of the decay length.
     modes : int
         Highest mode number, 1 to 10.
+    period_days : float, optional
+        Period of phase and group speed at finite frequency; it must exceed the inertial one.
 
     Returns
     -------
@@ -69,10 +72,11 @@ def section(
     """
     check_numbers(lon, lat, drag, modes)
     check_latitude(lat)
+    period = float("nan") if period_days is None else _period(period_days)
     if profile is None:
-        place, result = _at_coast(lon, lat, stratification, modes)
+        place, result = _at_coast(lon, lat, stratification, modes, period)
     else:
-        place, result = _of_profile(lon, lat, profile, stratification, modes)
+        place, result = _of_profile(lon, lat, profile, stratification, modes, period)
     data = {
         "depths": packaged_bathymetry().source if profile is None else str(profile),
         "stratification": result.column.source,
@@ -111,26 +115,32 @@ def check_numbers(lon: float, lat: float, drag: float, modes: int) -> None:
         raise InputError(problems)
 
 
+def _period(days: float) -> float:
+    if not 0.0 < days < np.inf:
+        raise InputError(f"period {days:g}: give a period in days, such as 5")
+    return days * SECONDS_PER_DAY
+
+
 def _at_coast(
-    lon: float, lat: float, stratification: Path | None, modes: int
+    lon: float, lat: float, stratification: Path | None, modes: int, period: float
 ) -> tuple[Place, SectionModes]:
     """The section of the packaged bathymetry through the closest coast of the guide."""
     network, flat = packaged_network("baroclinic")
     snap = snap_to_coast(network, flat, lon, lat)
     column = _column(stratification, snap.lon, snap.lat)
-    result = coast_section(snap, packaged_bathymetry(), column, modes)
+    result = coast_section(snap, packaged_bathymetry(), column, modes, period)
     return Place((lon, lat), (snap.lon, snap.lat), snap.distance, snap.azimuth), result
 
 
 def _of_profile(
-    lon: float, lat: float, profile: Path, stratification: Path | None, modes: int
+    lon: float, lat: float, profile: Path, stratification: Path | None, modes: int, period: float
 ) -> tuple[Place, SectionModes]:
     """The section that a person brings, at the position as it stands."""
     offshore, depth = read_profile(profile)
     own = own_section(offshore, depth, lon, lat, f"profile {profile}")
     column = _column(stratification, lon, lat)
     check_reach(column, own)
-    result = section_modes(own, column, lat, modes)
+    result = section_modes(own, column, lat, modes, period)
     return Place((lon, lat), (lon, lat), 0.0, float(np.nan)), result
 
 

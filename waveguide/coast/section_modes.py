@@ -11,6 +11,7 @@ from waveguide.coast.section import Sections
 from waveguide.coast.section_quality import SLOPE_FOOT, QualityFlag
 from waveguide.constants import coriolis, deformation_radius
 from waveguide.errors import InputError, WaveguideError
+from waveguide.modes.finite_frequency import cutoff, dispersion, stratified_guide
 from waveguide.modes.modeset import ModeSet
 from waveguide.modes.profile import make_profile
 from waveguide.modes.trapped import TOLERANCE, trapped_modes
@@ -19,6 +20,10 @@ Array = NDArray[np.float64]
 
 LEAST_LATITUDE = 0.05
 """Closer to the equator (degrees) the trapping scale c/f is wider than any ocean."""
+
+
+CUT_OFF_TOLERANCE = 0.02
+"""Relative accuracy of the long waves on the mesh that cut-off periods are sought on."""
 
 
 @dataclass(frozen=True)
@@ -45,6 +50,27 @@ class Column:
 
 
 @dataclass(frozen=True)
+class FrequencyLimits:
+    """How the modes depart from long waves.
+
+    Attributes
+    ----------
+    cut_off : ndarray, shape (nmode,)
+        Period (s) below which a mode does not travel downstream; NaN where it does at all periods
+        longer than the inertial one, and for mode 0.
+    period : float
+        Period of the following (s), NaN if none was asked for.
+    phase_speed, group_speed : ndarray, shape (nmode,)
+        At that period (m/s), NaN where the mode has stopped.
+    """
+
+    cut_off: Array
+    period: float
+    phase_speed: Array
+    group_speed: Array
+
+
+@dataclass(frozen=True)
 class SectionModes:
     """Modes of one section.
 
@@ -65,6 +91,8 @@ class SectionModes:
     burger : float
         (∫N dz)²/(f L)², L the width of shelf and slope.
     flags : QualityFlag
+    limits : FrequencyLimits
+        What holds at periods that are not long.
     """
 
     section: Sections
@@ -75,9 +103,16 @@ class SectionModes:
     raw_reverse_speed: float
     burger: float
     flags: QualityFlag
+    limits: FrequencyLimits
 
 
-def section_modes(section: Sections, column: Column, lat: float, count: int = 3) -> SectionModes:
+def section_modes(
+    section: Sections,
+    column: Column,
+    lat: float,
+    count: int = 3,
+    period: float = float("nan"),
+) -> SectionModes:
     """Modes 0 … `count` of a section.
 
     Parameters
@@ -89,6 +124,8 @@ def section_modes(section: Sections, column: Column, lat: float, count: int = 3)
         Latitude that f is taken at (degrees).
     count : int
         Highest mode number.
+    period : float
+        Period of phase and group speed at finite frequency (s); none if NaN.
 
     Returns
     -------
@@ -97,7 +134,8 @@ def section_modes(section: Sections, column: Column, lat: float, count: int = 3)
     Raises
     ------
     InputError
-        At the equator, without a section, or if the stratification cannot be used.
+        At the equator, for a period shorter than the inertial one, without a section, or if the
+        stratification cannot be used.
     """
     check_latitude(lat)
     flags = QualityFlag(int(section.flags[0]))
@@ -113,8 +151,10 @@ def section_modes(section: Sections, column: Column, lat: float, count: int = 3)
         flags |= QualityFlag.NOT_CONVERGED
     raw_speed, reverse = _raw_speeds(section, column, f, count, modes.mode)
     scale = limited_scale(modes.trapping_scale, modes.phase_speed, lat)
+    limits = frequency_limits(x, h, column, f, modes, period)
     return SectionModes(
-        section, column, modes, scale, raw_speed, reverse, burger_number(x, h, column, f), flags
+        section, column, modes, scale, raw_speed, reverse, burger_number(x, h, column, f), flags,
+        limits,
     )
 
 
@@ -136,6 +176,46 @@ def check_latitude(lat: float) -> None:
             f"must be {LEAST_LATITUDE} or more; on the equator the guide is the equator itself, "
             "and its modes are the vertical modes of the deep water, which `arrivals` uses there"
         )
+
+
+def frequency_limits(
+    offshore: Array, depth: Array, column: Column, f: float, modes: ModeSet, period: float
+) -> FrequencyLimits:
+    """Cut-off periods, and speeds at one period.
+
+    Parameters
+    ----------
+    offshore, depth : ndarray, shape (n,)
+        Monotonic section (m).
+    column : Column
+    f : float
+        Coriolis parameter (1/s).
+    modes : ModeSet
+        Its long waves.
+    period : float
+        Seconds, NaN for none.
+
+    Returns
+    -------
+    FrequencyLimits
+
+    Raises
+    ------
+    InputError
+        If the period is shorter than the inertial one.
+    """
+    problem, count = (offshore, depth, column.n2, column.depth, f), int(modes.mode[-1])
+    size = modes.mode.size
+    cut_off, phase, group = (np.full(size, np.nan) for _ in range(3))
+    if np.isfinite(period):
+        at = dispersion(stratified_guide(*problem, count=count), 2.0 * np.pi / period)
+        held = min(at.mode.size, size)
+        phase[:held], group[:held] = at.phase_speed[:held], at.group_speed[:held]
+    guide = stratified_guide(*problem, count=count, tolerance=CUT_OFF_TOLERANCE)
+    for n in np.flatnonzero(guide.mode[:size] > 0):
+        highest = cutoff(guide, int(n))[0]
+        cut_off[n] = 2.0 * np.pi / highest if highest < abs(f) else np.nan
+    return FrequencyLimits(cut_off, period, phase, group)
 
 
 def limited_scale(scale: Array, phase_speed: Array, lat: Array | float) -> Array:

@@ -153,7 +153,11 @@ def check_reach(column: Column, section: Sections, lowest_share: float = 0.5) ->
 
 
 def coast_section(
-    snap: Snap, depths: Bathymetry, column: Column, count: int = 3
+    snap: Snap,
+    depths: Bathymetry,
+    column: Column,
+    count: int = 3,
+    period: float = float("nan"),
 ) -> SectionModes:
     """The section through a place on the guide's coast and its modes.
 
@@ -164,6 +168,8 @@ def coast_section(
     column : Column
     count : int
         Highest mode number.
+    period : float
+        Period of phase and group speed at finite frequency (s); none if NaN.
 
     Returns
     -------
@@ -177,4 +183,4 @@ def coast_section(
     check_latitude(snap.lat)
     section = cross_shelf_sections(snap.lon, snap.lat, snap.azimuth, snap.radius, depths)
     check_reach(column, section)
-    return section_modes(section, column, snap.lat, count)
+    return section_modes(section, column, snap.lat, count, period)

@@ -52,6 +52,11 @@ SECTION: dict[str, Variable] = {
     "wind_response_cm_per_1000_km": _number(
         _MODE, "sea level per 1000 km of steady downstream wind stress of 0.1 Pa, no friction", "cm"
     ),
+    "cut_off_period_days": _number(
+        _MODE, "period below which the mode does not travel downstream", "day"
+    ),
+    "phase_speed_at_period_m_s": _number(_MODE, "phase speed at the stated period", "m s-1"),
+    "group_speed_at_period_m_s": _number(_MODE, "group speed at the stated period", "m s-1"),
     "pressure": _number(_FIELD, "pressure relative to that at the coast's surface", "1"),
     "alongshore_velocity": _number(
         _FIELD, "downstream velocity per metre of coastal sea level", "s-1"
@@ -138,6 +143,9 @@ def section_dataset(
         # ∂s φ = F(0,0) τ/ρ₀ and η = F(0,0) φ/g
         "wind_response_cm_per_1000_km":
             100.0 * modes.coastal_value**2 * WIND_STRESS * FETCH / (density * GRAVITY),
+        "cut_off_period_days": result.limits.cut_off / SECONDS_PER_DAY,
+        "phase_speed_at_period_m_s": result.limits.phase_speed,
+        "group_speed_at_period_m_s": result.limits.group_speed,
         "pressure": modes.structure / coastal,
         "alongshore_velocity": alongshore_velocity(modes),
         "isopycnal_displacement": isopycnal_displacement(modes),
@@ -195,6 +203,8 @@ def _attributes(
         "notes": "; ".join(_notes(result)),
         "stratification_reaches_m": result.column.reached,
         "drag_m_s": drag,
+        "inertial_period_days": 2.0 * np.pi / abs(result.modes.f) / SECONDS_PER_DAY,
+        "period_days": result.limits.period / SECONDS_PER_DAY,
         "depths_from": data["depths"], "stratification_from": data["stratification"],
         "data_sha256": data["sha256"],
         "source": f"waveguide {software_version()}",

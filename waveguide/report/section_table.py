@@ -17,6 +17,12 @@ if TYPE_CHECKING:
 
 _WIDTH = 100
 
+_AT_PERIOD = (
+    ("Phase", "(m/s)", "phase_speed_at_period_m_s", ".2f"),
+    ("Group", "(m/s)", "group_speed_at_period_m_s", ".2f"),
+)
+"""Further columns where a period was asked for."""
+
 _COLUMNS = (
     ("Mode", "", "mode", "d"),
     ("Speed", "(m/s)", "phase_speed_m_s", ".2f"),
@@ -26,6 +32,7 @@ _COLUMNS = (
     ("Decay", "(km)", "decay_length_km", ".0f"),
     ("Coupling", "(m^-1/2)", "wind_coupling", ".4f"),
     ("Wind", "(cm)", "wind_response_cm_per_1000_km", ".1f"),
+    ("Cut-off", "(days)", "cut_off_period_days", ".2f"),
 )
 """Heading, unit, variable and format of the table's columns."""
 
@@ -79,7 +86,8 @@ def _position(lon: float, lat: float) -> str:
 def _rows(dataset: xr.Dataset) -> str:
     """The table, one line for each mode."""
     columns = []
-    for heading, unit, name, style in _COLUMNS:
+    asked = math.isfinite(dataset.attrs["period_days"])
+    for heading, unit, name, style in _COLUMNS + (_AT_PERIOD if asked else ()):
         values = dataset[name].values * (100.0 if name == "relative_error" else 1)
         cells = [format(v, style) if np.isfinite(v) else "–" for v in values]
         width = max(map(len, (heading, unit, *cells)))
@@ -92,8 +100,12 @@ def _remarks(dataset: xr.Dataset) -> str:
     a = dataset.attrs
     remarks = [
         f"Decay: distance of a loss by 1/e under a linear bottom drag of {a['drag_m_s']:g} m/s. "
-        "Wind: sea level per 1000 km of steady downstream stress of 0.1 Pa, without friction."
+        "Wind: sea level per 1000 km of steady downstream stress of 0.1 Pa, without friction. "
+        "Cut-off: period below which the mode does not travel downstream; – where it does at all "
+        f"periods longer than the inertial one of {a['inertial_period_days']:.2f} days."
     ]
+    if math.isfinite(a["period_days"]):
+        remarks.append(f"Phase and group: speeds at a period of {a['period_days']:g} days.")
     raw = dataset["raw_phase_speed_m_s"].values
     if np.isfinite(raw).any():
         speeds = ", ".join(f"{v:.2f}" if np.isfinite(v) else "–" for v in raw)
