@@ -33,6 +33,9 @@ ROUTES = [
         ("coast", [(-80.5, 0.0), (-78.0, 7.0), (-99.9, 16.8)], 2.7),
     ]),
 ]  # fmt: skip
+FATES = ["Rossby waves", "bottom friction", "interior damping", "scattered", "other ways"]
+LOST = ["leg_lost_rossby", "leg_lost_friction", "leg_lost_damping", "leg_lost_scattering",
+        "leg_other_ways"]  # fmt: skip
 NAMES = ["Callao", "Acapulco", "=Lima\n$x_1$ \u202eevil"]
 PLACES = [(-77.15, -12.05), (-99.92, 16.82), (-60.0, -10.0)]
 
@@ -42,32 +45,35 @@ def _ragged() -> dict[str, list[object]]:
     from waveguide.geodesy import geodesic_length
 
     table: dict[str, list[object]] = {
-        n: [] for n, v in ARRIVALS.items() if v.dims in (("route",), ("leg",), ("vertex",))
+        n: [] for n, v in ARRIVALS.items() if v.dims[0] in ("route", "leg", "vertex")
     }
     for route, (target, mode, kind, via, legs) in enumerate(ROUTES):
-        distance = time = 0.0
+        distance, time, energy, taken = 0.0, 0.0, 1.0, np.zeros(len(FATES))
         for leg_kind, line, speed in legs:
             leg = len(table["leg_kind"])
             lon, lat = np.transpose(line)
             steps = geodesic_length(lon[:-1], lat[:-1], lon[1:], lat[1:]) / 1e3
             along = distance + np.concatenate([[0.0], np.cumsum(steps)])
             days = time + (along - distance) * 1e3 / speed / 86400.0
+            lost = energy * np.array([0.2, 0.1, 0.0, 0.0, 0.06])
+            energy -= lost.sum()
             for column, value in {
                 "leg_route": route, "leg_kind": leg_kind, "leg_length_km": steps.sum(),
                 "leg_from_longitude": lon[0], "leg_from_latitude": lat[0],
                 "leg_to_longitude": lon[-1], "leg_to_latitude": lat[-1],
                 "leg_time_days": days[-1] - time, "leg_phase_speed_m_s": speed,
-                "leg_amplitude_factor": 0.8, "leg_energy_share": 0.64, "leg_lost_rossby": 0.2,
-                "leg_lost_friction": 0.1, "leg_lost_damping": 0.0, "leg_lost_scattering": 0.0,
-                "leg_other_ways": 0.06, "leg_critical_period_days": 90.0,
+                "leg_amplitude_factor": 0.8, "leg_energy_share": energy,
+                **dict(zip(LOST, lost, strict=True)), "leg_critical_period_days": 90.0,
+                "leg_quasi_simultaneous": int(leg_kind == "coast" and speed < 2.0),
             }.items():  # fmt: skip
                 table[column].append(value)
             for column, values in {
                 "vertex_leg": [leg] * len(lon), "vertex_longitude": lon, "vertex_latitude": lat,
                 "vertex_distance_km": along, "vertex_time_days": days,
+                "vertex_taken": taken + np.linspace(0.0, 1.0, len(lon))[:, None] * lost,
             }.items():  # fmt: skip
                 table[column].extend(values)
-            distance, time = float(along[-1]), float(days[-1])
+            distance, time, taken = float(along[-1]), float(days[-1]), taken + lost
         for column, value in {
             "route_target": target, "route_mode": mode, "route_kind": kind, "route_via": via,
             "route_front_time_days": time, "route_amplitude_ratio": 0.8 ** len(legs),
@@ -113,6 +119,7 @@ def build_arrivals() -> xr.Dataset:
     values = {
         "target": NAMES, "mode": [1, 2], "target_longitude": lon, "target_latitude": lat,
         "status": status, "caution": caution, "front_date": date, **rows,
+        "fate_name": FATES,
         **{name: column for name, column in table.items() if name not in ("target", "mode")
            and not name.startswith("target_")},
     }  # fmt: skip

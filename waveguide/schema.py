@@ -95,7 +95,7 @@ ARRIVALS: dict[str, Variable] = {
     "front_time_days": _number(_ROW, "time from the start of the event to the front", "day"),
     "front_date": Variable(_ROW, "date", "date of the front (UTC)", None, "time"),
     "half_height_time_days": _number(
-        _ROW, "time from the start of the event until sea level first reaches half of its peak", "day"
+        _ROW, "time from the start of the event until half of the peak is first reached", "day"
     ),
     "peak_time_days": _number(_ROW, "time from the start of the event to the peak", "day"),
     "centroid_time_days": _number(
@@ -169,13 +169,20 @@ ARRIVALS: dict[str, Variable] = {
         _LEG, "share of the source's energy that goes other ways at junctions and gaps", "1"
     ),
     "leg_critical_period_days": _number(
-        _LEG, "median critical period of the poleward part of the leg", "day"
+        _LEG, "typical critical period of the poleward part of the leg", "day"
+    ),
+    "leg_quasi_simultaneous": Variable(
+        _LEG, "integer", "1 where most of the leg is below its critical frequency, else 0", "1"
     ),
     "vertex_leg": Variable(_VERTEX, "integer", "index of the vertex's leg"),
     "vertex_longitude": _longitude("vertex", "the vertex"),
     "vertex_latitude": _latitude("vertex", "the vertex"),
     "vertex_distance_km": _number(_VERTEX, "distance from the source along the route", "km"),
     "vertex_time_days": _number(_VERTEX, "time of the front at the vertex", "day"),
+    "vertex_taken": _number(
+        ("vertex", "fate"), "share of the source's energy taken up to the vertex, by fate", "1"
+    ),
+    "fate_name": Variable(("fate",), "text", "what becomes of energy on the way", coordinate=True),
     "time": Variable(("time",), "date", "date of the waveforms (UTC)", None, "time", True),
     "time_days": _number(("time",), "time from the start of the event", "day"),
     "source_waveform": _number(("time",), "sea level at the source over its peak", "1"),

@@ -10,11 +10,12 @@ from numpy.typing import NDArray
 
 from waveguide.network.graph import Network
 from waveguide.propagation.arrivals import Arrival
-from waveguide.propagation.frequency_limits import leg_criticality
+from waveguide.propagation.budgets import budget_of_legs, step_budgets, taken_up_to
+from waveguide.propagation.frequency_limits import Criticality, leg_criticality
 from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.sources import SourceFunction
 from waveguide.propagation.step_response import Conditions
-from waveguide.propagation.transfer import LegBudget, leg_budget
+from waveguide.propagation.transfer import LegBudget, paths_of_arrival
 from waveguide.propagation.waveform import (
     ArrivalTimes,
     ModeWaveforms,
@@ -39,9 +40,11 @@ class ModeAnswer:
         For each target, NaN where it is not reached.
     budgets : list of list of LegBudget
         For each target and route.
-    critical_periods : list of list of ndarray
-        For each target and route, the critical period of every leg along the guide (s), NaN for
-        legs that nowhere lead poleward along a coast.
+    vertex_taken : list of list of ndarray, shape (vertices, 5)
+        For each target and route, the energy taken between the source and every vertex of its
+        legs, by fate.
+    criticality : list of list of list of Criticality
+        For each target, route and leg along the guide that has steps.
     """
 
     mode: ModeAtNodes
@@ -49,7 +52,8 @@ class ModeAnswer:
     waveforms: ModeWaveforms
     times: list[ArrivalTimes]
     budgets: list[list[LegBudget]]
-    critical_periods: list[list[Array]]
+    vertex_taken: list[list[Array]]
+    criticality: list[list[list[Criticality]]]
 
 
 def mode_answer(
@@ -81,19 +85,42 @@ def mode_answer(
         else ArrivalTimes(np.nan, np.nan, np.nan)
         for arrival, level in zip(arrivals, waves.sea_level, strict=True)
     ]
-    budgets = [[leg_budget(route, waves.power) for route in target] for target in waves.transfers]
-    periods = [
-        [_leg_periods(network, mode, arrival, rank, omega) for rank in range(len(arrival.routes))]
-        for arrival in arrivals
-    ]
-    return ModeAnswer(mode, arrivals, waves, times, budgets, periods)
+    steps = iter(step_budgets(
+        network, mode, [path for arrival in arrivals for path in paths_of_arrival(arrival)],
+        waves.omega, waves.power, conditions,
+    ))
+    budgets, taken, critical = [], [], []
+    for arrival in arrivals:
+        mine = [next(steps) for _ in arrival.routes]
+        ends = [path.leg_ends for path in paths_of_arrival(arrival)]
+        budgets.append([budget_of_legs(*pair) for pair in zip(mine, ends, strict=True)])
+        ranks = range(len(arrival.routes))
+        taken.append([_taken_at_vertices(network, arrival, rank, mine[rank]) for rank in ranks])
+        critical.append([_criticality(network, mode, arrival, rank, omega) for rank in ranks])
+    return ModeAnswer(mode, arrivals, waves, times, budgets, taken, critical)
 
 
-def _leg_periods(
-    network: Network, mode: ModeAtNodes, arrival: Arrival, rank: int, omega: float
+def _taken_at_vertices(
+    network: Network, arrival: Arrival, rank: int, steps: LegBudget
 ) -> Array:
-    """Geometric mean of the range of critical periods of every leg with steps (s)."""
+    """Energy taken up to the vertices of a route, whose first and last are feet of ties."""
+    route, legs = arrival.routes[rank], arrival.legs[rank]
+    along = np.concatenate([[0.0], np.cumsum(network.length[route.steps])])
+    along -= arrival.source.along[route.start]
+    place, reached = [], 0.0
+    for leg in legs:
+        guided = leg.kind != "attachment"
+        place.append(reached + leg.distance * guided)
+        reached = float(place[-1][-1])
+    taken = taken_up_to(steps)
+    where = np.concatenate(place) if place else np.zeros(0)
+    return np.stack([np.interp(where, along, fate) for fate in taken.T], axis=1)
+
+
+def _criticality(
+    network: Network, mode: ModeAtNodes, arrival: Arrival, rank: int, omega: float
+) -> list[Criticality]:
+    """Critical periods of every leg with steps."""
     ends = np.cumsum([leg.step_count for leg in arrival.legs[rank] if leg.step_count])
     runs = np.split(arrival.routes[rank].steps, ends[:-1]) if ends.size else []
-    found = [leg_criticality(network, mode, run, omega) for run in runs]
-    return np.array([np.sqrt(c.shortest * c.longest) for c in found])
+    return [leg_criticality(network, mode, run, omega) for run in runs]

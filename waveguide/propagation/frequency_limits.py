@@ -49,6 +49,11 @@ class Criticality(NamedTuple):
     share: float
 
     @property
+    def typical(self) -> float:
+        """Geometric mean of the shortest and the longest (s)."""
+        return float(np.sqrt(self.shortest * self.longest))
+
+    @property
     def quasi_simultaneous(self) -> bool:
         """Whether sea level rises along most of the leg almost at once."""
         return self.share > 0.5

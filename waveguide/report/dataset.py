@@ -11,8 +11,10 @@ import numpy as np
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.propagation.answers import ModeAnswer
 from waveguide.propagation.arrivals import REACHED, Arrival
+from waveguide.propagation.frequency_limits import Criticality
 from waveguide.propagation.legs import Leg
 from waveguide.propagation.routes import Route
+from waveguide.propagation.step_response import FATES
 from waveguide.propagation.transfer import LegBudget
 from waveguide.propagation.validity import Validity
 from waveguide.propagation.waveform import ArrivalTimes, mode_shares
@@ -60,14 +62,17 @@ def arrivals_dataset(
                 rows[name].append(value)
             for rank, route in enumerate(arrival.routes):
                 _add_route(values, target, column, arrival, rank, route)
+                values["vertex_taken"].extend(answer.vertex_taken[target][rank].tolist())
                 _add_budgets(
                     values, arrival.legs[rank], answer.budgets[target][rank],
-                    answer.critical_periods[target][rank],
+                    answer.criticality[target][rank],
                 )
     shape = (len(scenario.targets), len(modes))
     values.update({name: np.array(row).reshape(shape) for name, row in rows.items()})
     start = np.datetime64(scenario.event.start.replace(tzinfo=None), "ns")
     values.update(_waveforms(list(answers.values()), start))
+    values["fate_name"] = FATES
+    values["vertex_taken"] = np.reshape(values["vertex_taken"], (-1, len(FATES)))
     dataset = assemble(values, attributes)
     check(dataset)
     return dataset
@@ -159,17 +164,18 @@ def _value_at_source(answer: ModeAnswer) -> float:
 
 
 def _add_budgets(
-    values: dict[str, Any], legs: list[Leg], budget: LegBudget, critical: Any
+    values: dict[str, Any], legs: list[Leg], budget: LegBudget, criticality: list[Criticality]
 ) -> None:
     """Append the energy budget of the legs of one route; attachments take nothing."""
-    row, before = 0, 1.0
+    guided, run, before = 0, 0, 1.0
     for leg in legs:
-        taken = np.zeros(5)
-        period = float("nan")
+        taken, critical = np.zeros(len(FATES)), Criticality(np.nan, np.nan, 0.0)
+        if leg.kind != "attachment":
+            taken, before = budget.taken[guided], float(budget.arrives[guided])
+            guided += 1
         if leg.step_count:
-            taken, before = budget.taken[row], float(budget.arrives[row])
-            period = float(critical[row]) / SECONDS_PER_DAY
-            row += 1
+            critical = criticality[run]
+            run += 1
         _append(values, {
             "leg_energy_share": before,
             "leg_lost_rossby": taken[0],
@@ -177,7 +183,8 @@ def _add_budgets(
             "leg_lost_damping": taken[2],
             "leg_lost_scattering": taken[3],
             "leg_other_ways": taken[4],
-            "leg_critical_period_days": period,
+            "leg_critical_period_days": critical.typical / SECONDS_PER_DAY,
+            "leg_quasi_simultaneous": int(critical.quasi_simultaneous),
         })
 
 
