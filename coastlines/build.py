@@ -3,6 +3,7 @@
     python coastlines/build.py fetch     get the packages into coastlines/raw/
     python coastlines/build.py build     make coastlines/data/*.nc and the manifest
     python coastlines/build.py networks  make only the networks, from the other shipped files
+    python coastlines/build.py atlas     make only the modes of all sections, from those (minutes)
     python coastlines/build.py verify    check every file against the manifest
 
 Where the packages come from, what is done to them and why is told in SOURCES.md.
@@ -401,6 +402,7 @@ def build() -> None:
     build_winds()
     write_manifest()
     build_networks()
+    build_atlas()
 
 
 def build_networks() -> None:
@@ -411,10 +413,21 @@ def build_networks() -> None:
     write_manifest()
 
 
+def build_atlas() -> None:
+    """Make the atlas of section modes from the shipped bathymetry, stratification and network."""
+    from waveguide.network.trapped_build import atlas_file
+    from waveguide.progress import Bar
+
+    path, _ = atlas_file(DATA, report=Bar("atlas"))
+    print(f"{path.name}: {path.stat().st_size / 1e6:.2f} MB")
+    write_manifest()
+
+
 COMMANDS = {
     "fetch": fetch,
     "build": build,
     "networks": build_networks,
+    "atlas": build_atlas,
     "verify": verify,
     "manifest": write_manifest,
 }
