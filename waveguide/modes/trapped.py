@@ -57,6 +57,10 @@ depth in units of the tolerance (halved each time)."""
 
 _MOST_SOLUTIONS = 7
 
+_ASYMPTOTIC = 0.2
+"""Largest error of the fine mesh, in units of the square root of the tolerance: extrapolation
+leaves about its square, unless the mesh is too coarse to extrapolate from at all."""
+
 
 def trapped_modes(
     offshore: ArrayLike,
@@ -159,7 +163,8 @@ def converged_solutions(
         )
         last, speed = speed, extrapolated(coarse.phase_speed, fine.phase_speed)
         error = np.abs(last / speed - 1.0)
-        if np.all(error <= tolerance):
+        rough = np.abs(fine.phase_speed / speed - 1.0)
+        if np.all(error <= tolerance) and np.all(rough <= _ASYMPTOTIC * np.sqrt(tolerance)):
             break
         intervals, depth_error = intervals * _MORE_INTERVALS, 0.5 * depth_error
     return coarse, fine, error
