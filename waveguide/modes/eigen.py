@@ -21,13 +21,13 @@ from waveguide.modes.mesh import Indices
 
 Array = NDArray[np.float64]
 
-_RESIDUAL = 3e-5
+_RESIDUAL = 3e-4
 """Residual allowed, relative to the eigenvalue; the eigenvalue's own error goes as its square."""
 
 _ROUNDING = 1e-10
 """Residuals, directions and eigenvalues this small relative to the largest are rounding."""
 
-_FIRST_CHECK, _CHECK_EVERY, _MOST_STEPS = 11, 3, 300
+_FIRST_CHECK, _CHECK_EVERY, _MOST_STEPS = 8, 2, 300
 
 
 class _Solver:
