@@ -59,3 +59,26 @@ def forcing_of(network: Network, stress, step: float) -> Forcing:
         "timedelta64[ns]"
     )
     return Forcing(np.arange(network.tail.size), time, step, stress, np.ones(network.tail.size))
+
+
+def branched_coast() -> Network:
+    """A coast along 35°N that takes in another one and gives off a third; and a closed ring."""
+    parts = [
+        (np.linspace(0.0, 20.0, 61), np.full(61, 35.0), list(range(61))),
+        (np.linspace(3.0, 7.0, 21), np.linspace(30.0, 34.9, 21), [*range(61, 82), 25]),
+        (np.linspace(14.0, 16.0, 15), np.linspace(35.2, 39.0, 15), [40, *range(82, 97)]),
+        (np.linspace(30.0, 33.0, 10), np.full(10, 35.0), [*range(97, 107), 97]),
+    ]
+    lon, lat = (np.concatenate([part[k] for part in parts]) for k in (0, 1))
+    chains = [np.array(part[2]) for part in parts]
+    tail = np.concatenate([chain[:-1] for chain in chains])
+    head = np.concatenate([chain[1:] for chain in chains])
+    none, m = np.zeros(0), tail.size
+    return Network(
+        lon=lon, lat=lat, line=np.repeat(np.arange(4), [61, 21, 15, 10]),
+        equatorial=np.zeros(lon.size, bool), offshore=np.zeros(lon.size),
+        basin=np.ones(lon.size, np.int64), tail=tail, head=head,
+        kind=np.full(m, int(StepKind.COAST)),
+        length=geodesic_length(lon[tail], lat[tail], lon[head], lat[head]),
+        gap=np.full(m, -1), passes=np.full(m, -1), gap_width=none, gap_length=none, gap_sill=none,
+    )  # fmt: skip

@@ -44,6 +44,7 @@ from __future__ import annotations
 
 import heapq
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -162,7 +163,10 @@ def influence(
     -------
     Influence
     """
-    step, parent, loss, delay, distance = _search(network, physics, node, longest, faintest)
+    step, parent, loss, delay, distance = search_upstream(
+        network.tail, network.head, physics.time, physics.loss, network.length, node, longest,
+        faintest,
+    )
     at_target = physics.potential[node] * factor * np.exp(-loss)
     return Influence(
         step=step,
@@ -179,20 +183,52 @@ def _time_after_middle(network: Network, physics: StepPhysics) -> Array:
     return 0.5 * np.where(np.isfinite(physics.time), physics.time, 0.0)
 
 
-def _search(
-    network: Network, physics: StepPhysics, node: int, longest: float, faintest: float
-) -> tuple[Index, Index, Array, Array, Array]:
-    """Steps and their parents with loss, delay and distance from the end of the step, best first.
+class Upstream(NamedTuple):
+    """What lies upstream of a node, best ways first.
 
-    Dijkstra's method against the direction of travel. A row of the result is a step; a node is
-    done once the best way from it is known.
+    Attributes
+    ----------
+    step, parent : ndarray of int, shape (k,)
+        As in `Influence`.
+    loss, delay, distance : ndarray, shape (k,)
+        From the end of the step to the node (nepers, s, m).
     """
-    order = np.argsort(network.head, kind="stable")
-    first = np.searchsorted(network.head[order], np.arange(network.size + 1)).tolist()
-    into, tail = order.tolist(), network.tail.tolist()
-    time, cost, length = physics.time.tolist(), physics.loss.tolist(), network.length.tolist()
+
+    step: Index
+    parent: Index
+    loss: Array
+    delay: Array
+    distance: Array
+
+
+def search_upstream(
+    tail: Index, head: Index, time: Array, cost: Array, length: Array, node: int, longest: float,
+    faintest: float,
+) -> Upstream:
+    """Dijkstra's method against the direction of travel, by loss and then by time.
+
+    Parameters
+    ----------
+    tail, head : ndarray of int, shape (m,)
+        Nodes of the steps.
+    time, cost, length : ndarray, shape (m,)
+        Of each step (s, nepers, m).
+    node : int
+    longest, faintest : float
+        As for `influence`.
+
+    Returns
+    -------
+    Upstream
+        Every step once whose end leads to the node.
+    """
+    order = np.argsort(head, kind="stable")
+    count = int(max(tail.max(initial=0), head.max(initial=0), node)) + 1
+    first = np.searchsorted(head[order], np.arange(count + 1)).tolist()
+    into, tails = order.tolist(), tail.tolist()
+    times, costs, lengths = time.tolist(), cost.tolist(), length.tolist()
     most = float(-np.log(faintest))
-    done = bytearray(network.size)
+    done = bytearray(count)
     queue = [(0.0, 0.0, 0.0, node, -1)]
     rows: list[tuple[int, int, float, float, float]] = []
     while queue:
@@ -201,10 +237,12 @@ def _search(
             continue
         done[here] = True
         for step in into[first[here] : first[here + 1]]:
-            onward, later = loss + cost[step], delay + time[step]
+            onward, later = loss + costs[step], delay + times[step]
             if onward <= most and later <= longest:
                 rows.append((step, parent, loss, delay, distance))
-                way = distance + length[step]
-                heapq.heappush(queue, (onward, later, way, tail[step], len(rows) - 1))
+                way = distance + lengths[step]
+                heapq.heappush(queue, (onward, later, way, tails[step], len(rows) - 1))
     table = np.array(rows, dtype=float).reshape(-1, 5).T
-    return table[0].astype(np.int64), table[1].astype(np.int64), table[2], table[3], table[4]
+    return Upstream(
+        table[0].astype(np.int64), table[1].astype(np.int64), table[2], table[3], table[4]
+    )

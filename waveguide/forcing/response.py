@@ -39,7 +39,7 @@ class RouteResponse:
     stress : ndarray, shape (k, nt)
         Stress over the step that ends at the node (Pa), NaN where no wind counts.
     sea_level : ndarray, shape (k, nt)
-        m; NaN at the last time, which would need the wind after it.
+        m.
     """
 
     node: Index
@@ -227,15 +227,15 @@ def route_response(network: Network, influence: Influence, forcing: Forcing) -> 
     at = np.searchsorted(forcing.steps, influence.step[rows])
     for row, series in zip(rows.tolist(), at.tolist(), strict=True):
         lag = influence.delay[row] / forcing.step
-        add_delayed(longer[group[row]], forcing.stress[series], influence.weight[row], lag)
+        held = held_on(forcing.stress[series])
+        add_delayed(longer[group[row]], held, influence.weight[row], lag)
     upstream = np.cumsum(longer[::-1], axis=0)[::-1]
     level = [
-        _taken_back(series, influence.head_delay[row] / forcing.step, forcing.time.size)
+        taken_back(series, influence.head_delay[row] / forcing.step, forcing.time.size)
         / influence.gain[row]
         for series, row in zip(upstream, shown.tolist(), strict=True)
     ]
     sea_level = np.array(level).reshape(kept.size, -1)[::-1]
-    sea_level[:, -1:] = np.nan
     return RouteResponse(
         node=network.head[influence.step[shown]][::-1],
         distance=influence.distance[shown][::-1],
@@ -260,8 +260,35 @@ def _place_on_way(influence: Influence, way: Index) -> Index:
     return place
 
 
-def _taken_back(series: Array, lag: float, count: int) -> Array:
-    """Values of a series `lag` intervals later, the first `count` of them."""
+def held_on(series: NDArray[np.floating]) -> Array:
+    """A series with its last value once more, which an interpolation at its end needs.
+
+    Parameters
+    ----------
+    series : ndarray, shape (nt,)
+
+    Returns
+    -------
+    ndarray, shape (nt + 1,)
+    """
+    return np.append(series, series[-1:]).astype(float)
+
+
+def taken_back(series: Array, lag: float, count: int) -> Array:
+    """Values of a series `lag` intervals later, the first `count` of them.
+
+    Parameters
+    ----------
+    series : ndarray, shape (nt,)
+        With more than `count` + `lag` values.
+    lag : float
+        In intervals of time, ≥ 0.
+    count : int
+
+    Returns
+    -------
+    ndarray, shape (count,)
+    """
     whole = int(lag)
     share = lag - whole
     earlier, later = series[whole : whole + count], series[whole + 1 : whole + 1 + count]

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from itertools import pairwise
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -19,7 +20,7 @@ from waveguide.report.text import plain
 if TYPE_CHECKING:
     import xarray as xr
     from matplotlib.axes import Axes
-    from matplotlib.figure import Figure
+    from matplotlib.figure import Figure, SubFigure
 
     from waveguide.forcing.result import ResponseResult
 
@@ -29,6 +30,7 @@ MOST_TARGETS = 12
 """Targets drawn; the files have them all."""
 
 _BARS = 10
+_LEAST_BAR = 0.02  # of the longest
 _NOTE = "#6a6a6a"
 
 
@@ -57,7 +59,8 @@ def _figure(size: tuple[float, float], title: str, note: str) -> Figure:
     figure = Figure(figsize=size, dpi=130, layout="constrained")
     FigureCanvasAgg(figure)
     figure.suptitle(title, fontsize=12, fontweight="bold", parse_math=False)
-    figure.supxlabel(note, fontsize=7, color=_NOTE, parse_math=False)
+    if note:
+        figure.supxlabel(note, fontsize=7, color=_NOTE, parse_math=False)
     return figure
 
 
@@ -83,9 +86,8 @@ def draw_series(dataset: xr.Dataset) -> Figure:
     axes = figure.subplots(count, 1, sharex=True, squeeze=False)[:, 0]
     for target, axis in enumerate(axes):
         _draw_target(axis, dataset, target)
-    handles, labels = axes[0].get_legend_handles_labels()
-    figure.legend(handles, labels, loc="outside upper right", ncols=len(labels), fontsize=8,
-                  frameon=False)
+    axes[0].legend(loc="lower right", bbox_to_anchor=(1.0, 0.97), ncols=6, fontsize=8,
+                   frameon=False)
     return figure
 
 
@@ -133,18 +135,21 @@ def draw_cause(result: ResponseResult, dataset: xr.Dataset, target: int) -> Figu
         f"{100.0 * float(dataset['total_peak'].values[target]):+.1f} cm of "
         f"{np.datetime_as_string(peak, unit='D')}"
     )
-    figure = _figure((9.5, 8.2), title, _caution(dataset))
-    grid = figure.add_gridspec(2, 2, height_ratios=(1.6, 1.0))
-    left, right = figure.add_subplot(grid[0, 0]), figure.add_subplot(grid[0, 1])
+    figure = _figure((9.5, 8.2), title.replace(" -", " −"), "")
+    parts: Any = figure.subfigures(2, 1, height_ratios=(1.7, 1.0))
+    above, below = parts
+    left, right = above.subplots(1, 2, sharey=True)
     shown = _Shown(answer, network, result.time, peak)
     for axis, values, what in (
         (left, shown.stress, f"Stress in the direction of travel (Pa), mode {mode}"),
         (right, 100.0 * shown.level, f"Sea level (cm), mode {mode}"),
     ):
-        _draw_hovmoller(figure, axis, shown, values)
+        _draw_hovmoller(above, axis, shown, values)
         axis.set_title(what, fontsize=9)
-    right.tick_params(labelleft=False)
-    _draw_bars(figure.add_subplot(grid[1, :]), dataset, target)
+    years = np.unique(shown.time.astype("datetime64[Y]").astype(str))[[0, -1]]
+    left.set_ylabel("–".join(dict.fromkeys(years)), fontsize=8)
+    _draw_bars(below.subplots(), dataset, target)
+    below.supxlabel(_caution(dataset), fontsize=7, color=_NOTE)
     return figure
 
 
@@ -183,14 +188,14 @@ class _Shown:
         self.path = peak - (way.delay[near] * 1e9).astype("timedelta64[ns]")
 
 
-def _draw_hovmoller(figure: Figure, axis: Axes, shown: _Shown, values: Array) -> None:
+def _draw_hovmoller(figure: SubFigure, axis: Axes, shown: _Shown, values: Array) -> None:
     """Distance to the target across, time upward, the characteristic that ends at the peak."""
     from matplotlib.dates import AutoDateLocator, ConciseDateFormatter
 
-    limit = float(np.nanpercentile(np.abs(values), 99.0)) if np.isfinite(values).any() else 1.0
+    limit = _limit(values)
     style: dict[str, Any] = {"cmap": "RdBu_r", "shading": "nearest", "rasterized": True}
     mesh = axis.pcolormesh(
-        shown.distance, shown.time, values.T, vmin=-max(limit, 1e-6), vmax=max(limit, 1e-6), **style
+        shown.distance, shown.time, values.T, vmin=-limit, vmax=limit, **style
     )
     figure.colorbar(mesh, ax=axis, location="bottom", shrink=0.9, pad=0.02).ax.tick_params(
         labelsize=7
@@ -201,10 +206,18 @@ def _draw_hovmoller(figure: Figure, axis: Axes, shown: _Shown, values: Array) ->
     axis.set_ylim(shown.time[0], shown.time[-1])
     locator = AutoDateLocator()
     axis.yaxis.set_major_locator(locator)
-    axis.yaxis.set_major_formatter(ConciseDateFormatter(locator))
+    axis.yaxis.set_major_formatter(ConciseDateFormatter(locator, show_offset=False))
     axis.set_xlabel("Distance to the target (1000 km)", fontsize=8)
     axis.tick_params(labelsize=8)
     _mark_kinds(axis, shown)
+
+
+def _limit(values: Array) -> float:
+    """Ends of a colour scale: the largest value, or less where a few stand out."""
+    known = np.abs(values[np.isfinite(values)])
+    if not known.size:
+        return 1.0
+    return max(float(np.percentile(known, 99.5)), 0.6 * float(known.max()), 1e-6)
 
 
 def _mark_kinds(axis: Axes, shown: _Shown) -> None:
@@ -217,7 +230,7 @@ def _mark_kinds(axis: Axes, shown: _Shown) -> None:
     ])
     bounds = np.concatenate([[0], np.nonzero(np.diff(kind))[0] + 1, [kind.size]])
     extent = float(np.ptp(shown.distance)) if shown.distance.size > 1 else 1.0
-    for a, b in zip(bounds[:-1], bounds[1:], strict=True):
+    for a, b in pairwise(bounds.tolist()):
         start, end = shown.distance[a], shown.distance[b - 1]
         if a > 0:
             axis.axvline(start, color="#3b3b3b", lw=0.6, ls=":")
@@ -232,6 +245,7 @@ def _draw_bars(axis: Axes, dataset: xr.Dataset, target: int) -> None:
     rows = np.nonzero(dataset["stretch_target"].values == target)[0]
     part = 100.0 * dataset["stretch_at_peak"].values[rows]
     order = np.argsort(-np.abs(part), kind="stable")[:_BARS]
+    order = order[np.abs(part[order]) >= _LEAST_BAR * np.abs(part).max()]
     modes = dataset["mode"].values[dataset["stretch_mode"].values[rows[order]]].tolist()
     height = np.arange(order.size)
     axis.barh(height, part[order], color=[MODE_COLOURS[mode] for mode in modes], height=0.7)
