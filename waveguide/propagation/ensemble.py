@@ -128,7 +128,7 @@ def sensitivity(
     table = wave_table(
         [transfers[i] for i in waves.added[target]], transfers[0].front_time, source,
         float(waves.time[1]), float(waves.time[-1]),
-        np.expm1(_grid(spread, _ROWS)), _grid(priors.source_duration, _COLUMNS),
+        np.expm1(_grid(spread, _ROWS)), np.exp(_grid(priors.source_duration, _COLUMNS)),
     )
     lost = [FATES.index(fate) for fate in ("bottom friction", "interior damping")]
     at = int(np.argmin(np.abs(transfers[0].omega - omega)))
@@ -160,7 +160,8 @@ def members(given: Sensitivity, priors: Priors, sample: Array) -> Members:
     place = priors.source_position * given.slowness * error["source position"]
     start = priors.source_time * error["source time"]
     front = given.front * later + start + place
-    figures = given.table.at(later - 1.0, priors.source_duration * error["source duration"])
+    longer = np.exp(priors.source_duration * error["source duration"])
+    figures = given.table.at(later - 1.0, longer)
     upstream = given.box * ndtr(error["source position"])
     height = figures[:, 3] - given.nepers * np.expm1(priors.friction * error["friction"])
     for name, logs in given.gaps.items():

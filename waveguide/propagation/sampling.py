@@ -8,8 +8,9 @@ the sequences are independent, the scatter of a percentile between them tells it
 The split of the variance is by first-order Sobol' indices, Var(E[y|xᵢ])/Var(y): the share of the
 variance that would go if input i were known. E[y|xᵢ] is taken as a polynomial of third degree in
 xᵢ. Hermite polynomials being orthonormal for normal xᵢ, its coefficients are means of y Heⱼ(xᵢ)/√j!
-over the sample, and the index is the sum of their squares over the variance. What the indices lack
-of one is due to inputs acting together, and to sampling.
+over the sample, and the index is the sum of their squares over the variance, less what random
+numbers would give to an input without effect (a share of 1/members for each coefficient). What the
+indices lack of one is due to inputs acting together, and to sampling.
 
 References
 ----------
@@ -133,4 +134,5 @@ def first_order_shares(sample: Array, values: Array) -> Array:
     basis = (x, (x**2 - 1.0) / np.sqrt(2.0), (x**3 - 3.0 * x) / np.sqrt(6.0))
     explained = sum((away @ polynomial) ** 2 for polynomial in basis) / sample.shape[0]
     share = np.asarray(explained) / np.where(varies, variance, 1.0)[:, None]
+    share = share - len(basis) / sample.shape[0]
     return np.where(varies[:, None], np.clip(share, 0.0, 1.0), 0.0)

@@ -22,8 +22,7 @@ from waveguide.network.graph import Network, StepKind
 from waveguide.ocean.bathymetry import Bathymetry
 from waveguide.ocean.stratification import Climatology
 from waveguide.propagation.losses import critical_share
-from waveguide.propagation.modes import ModeAtNodes
-from waveguide.propagation.near_equator import scaled_distance
+from waveguide.propagation.modes import ModeAtNodes, scaled_distance
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]

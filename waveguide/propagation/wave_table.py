@@ -52,7 +52,7 @@ class WaveTable:
     stretch : ndarray, shape (p,)
         δ, rising.
     duration : ndarray, shape (q,)
-        ln of the factor of the duration, rising.
+        Factor of the duration, rising; times grow almost linearly with it.
     figures : ndarray, shape (p, q, 4)
         `FIGURES`.
     """
@@ -95,7 +95,7 @@ def wave_table(
     """
     figures = np.empty((stretch.size, duration.size, len(FIGURES)))
     logs = [_retarded_log(route) for route in routes]
-    for column, factor in enumerate(np.exp(duration)):
+    for column, factor in enumerate(duration):
         longer = lasting_longer(source, float(factor))
         spectrum = source_spectrum(longer, min(step, longer.finest), _period(longer, window))
         top = float(np.abs(longer.values(np.arange(0.0, window, spectrum.step))).max())
