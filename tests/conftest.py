@@ -55,7 +55,8 @@ def _ragged() -> dict[str, list[object]]:
             steps = geodesic_length(lon[:-1], lat[:-1], lon[1:], lat[1:]) / 1e3
             along = distance + np.concatenate([[0.0], np.cumsum(steps)])
             days = time + (along - distance) * 1e3 / speed / 86400.0
-            lost = energy * np.array([0.2, 0.1, 0.0, 0.0, 0.06])
+            share = 0.0 if leg_kind == "attachment" else energy  # an attachment takes nothing
+            lost = share * np.array([0.2, 0.1, 0.0, 0.0, 0.06])
             energy -= lost.sum()
             for column, value in {
                 "leg_route": route, "leg_kind": leg_kind, "leg_length_km": steps.sum(),

@@ -93,6 +93,9 @@ def arrivals(
         typer.Option(help="Also write the formats the scenario asks for to this folder."),
     ] = None,
     json: Annotated[bool, typer.Option("--json", help="Print one JSON document.")] = False,
+    budget: Annotated[
+        bool, typer.Option("--budget", help="Also print where the energy goes on every leg.")
+    ] = False,
 ) -> None:
     """When, by which route and how strongly a signal reaches each target."""
     from waveguide.report.files import output_folder, write_outputs
@@ -103,7 +106,7 @@ def arrivals(
         answer = _answer(question)
         if folder is not None:
             write_outputs(answer, folder, question.output.formats)
-    _show(answer, json)
+    _show(answer, json, budget)
     if out is not None:
         print(f"waveguide: outputs are in {out}", file=sys.stderr)
 
@@ -126,7 +129,7 @@ def _answer(question: Scenario) -> xr.Dataset:
         return compute(question, progress=progress)
 
 
-def _show(answer: xr.Dataset, as_json: bool) -> None:
+def _show(answer: xr.Dataset, as_json: bool, budget: bool) -> None:
     if as_json:
         import json
 
@@ -136,4 +139,4 @@ def _show(answer: xr.Dataset, as_json: bool) -> None:
     else:
         from waveguide.report.table import table
 
-        print(table(answer))
+        print(table(answer, budget))

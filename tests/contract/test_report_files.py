@@ -5,6 +5,7 @@ from __future__ import annotations
 import csv
 import json
 import os
+from typing import get_args
 
 import numpy as np
 import pytest
@@ -13,10 +14,15 @@ import xarray as xr
 
 from waveguide.errors import InputError
 from waveguide.report.files import output_folder, write_outputs
+from waveguide.scenario.fields import Format
 from waveguide.schema import check
 
-ALL = ("csv", "netcdf", "geojson", "map")
-FILES = ["arrivals.csv", "arrivals.nc", "legs.csv", "map.pdf", "map.png", "routes.geojson"]
+ALL = get_args(Format)
+FILES = [
+    "arrivals.csv", "arrivals.nc", "budget.csv", "distance_time.pdf", "distance_time.png",
+    "legs.csv", "map.pdf", "map.png", "routes.geojson", "waveforms.csv", "waveforms.pdf",
+    "waveforms.png",
+]  # fmt: skip
 
 
 def test_every_format_is_written(arrivals, tmp_path):
@@ -146,6 +152,6 @@ def test_geojson(arrivals, tmp_path):
 def test_outputs_are_the_same_bytes_each_time(arrivals, tmp_path):
     for name in ("a", "b"):
         (tmp_path / name).mkdir()
-        write_outputs(arrivals, tmp_path / name, ["csv", "geojson"])
-    for name in ("arrivals.csv", "legs.csv", "routes.geojson"):
+        write_outputs(arrivals, tmp_path / name, ["csv", "geojson", "budget"])
+    for name in ("arrivals.csv", "legs.csv", "routes.geojson", "budget.csv"):
         assert (tmp_path / "a" / name).read_bytes() == (tmp_path / "b" / name).read_bytes()

@@ -49,7 +49,9 @@ def test_a_good_file_is_read(scenario):
     assert result.event.centre == (-120.0, 30.0)
     assert result.waves.modes == (1, 2)
     assert result.ocean.source == "packaged"
-    assert result.output.formats == ("csv", "netcdf", "geojson", "map")
+    assert result.output.formats == (
+        "csv", "netcdf", "geojson", "map", "waveforms", "distance-time", "budget",
+    )  # fmt: skip
     assert [(t.name, t.position) for t in result.targets] == [("San Diego", (-117.28, 32.68))]
 
 

@@ -59,6 +59,8 @@ def test_out_writes_what_the_scenario_asks_for(run, tmp_path):
     names = {path.name for path in (tmp_path / "out").iterdir()}
     assert names == {
         "arrivals.csv", "legs.csv", "arrivals.nc", "routes.geojson", "map.png", "map.pdf",
+        "waveforms.csv", "waveforms.png", "waveforms.pdf", "distance_time.png",
+        "distance_time.pdf", "budget.csv",
     }  # fmt: skip
 
 

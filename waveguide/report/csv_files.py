@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import csv
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -36,14 +36,23 @@ def write_csv(dataset: xr.Dataset, folder: Path) -> None:
         Arrivals that pass :func:`waveguide.schema.check`.
     folder : Path
     """
-    _write(folder / "arrivals.csv", ["target", *_PLACE, "mode", *_ROW], _arrival_rows(dataset))
-    _write(folder / "legs.csv", ["target", "mode", *_ROUTE, "leg", *_LEG], _leg_rows(dataset))
+    write_rows(folder / "arrivals.csv", ["target", *_PLACE, "mode", *_ROW], _arrival_rows(dataset))
+    write_rows(folder / "legs.csv", ["target", "mode", *_ROUTE, "leg", *_LEG], _leg_rows(dataset))
 
 
-def _write(path: Path, header: Sequence[str], rows: Iterator[list[Any]]) -> None:
+def write_rows(path: Path, header: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:
+    """Write a heading and rows, made safe for a spreadsheet.
+
+    Parameters
+    ----------
+    path : Path
+    header : sequence of str
+    rows : iterable of sequence
+        Numbers, dates and texts.
+    """
     with path.open("w", encoding="utf-8", newline="") as file:
         writer = csv.writer(file, lineterminator="\n")
-        writer.writerow(header)
+        writer.writerow([cell(name) for name in header])
         writer.writerows([cell(value) for value in row] for row in rows)
 
 

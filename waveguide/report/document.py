@@ -14,6 +14,7 @@ if TYPE_CHECKING:
     import xarray as xr
 
 _ROW = [name for name, v in ARRIVALS.items() if v.dims == ("target", "mode")]
+_TAKEN = ("lost_rossby", "lost_friction", "lost_damping", "lost_scattering", "other_ways")
 _EVENT = ("event_name", "event_start", "event_duration_days", "event_amplitude_m")
 _HEAD = ("scenario", "title", "summary", "period_days", "ocean", "source", "data_sha256", "caution")
 
@@ -110,4 +111,8 @@ def _leg(dataset: xr.Dataset, leg: int) -> dict[str, Any]:
         "time_days": value("time_days"),
         "phase_speed_m_s": value("phase_speed_m_s"),
         "amplitude_factor": value("amplitude_factor"),
+        "critical_period_days": value("critical_period_days"),
+        "quasi_simultaneous": bool(value("quasi_simultaneous")),
+        "energy_share": value("energy_share"),
+        **{name: value(name) for name in _TAKEN},
     }

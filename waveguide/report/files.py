@@ -7,6 +7,7 @@ import shutil
 import tempfile
 from collections.abc import Callable, Iterable, Iterator
 from contextlib import contextmanager
+from importlib import import_module
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -25,7 +26,8 @@ def write_outputs(dataset: xr.Dataset, folder: Path, formats: Iterable[str]) -> 
         Arrivals that pass :func:`waveguide.schema.check`.
     folder : Path
         An existing folder; see :func:`output_folder` for outputs that are whole or absent.
-    formats : iterable of {"csv", "netcdf", "geojson", "map"}
+    formats : iterable of str
+        Out of the formats that a scenario may ask for.
 
     Raises
     ------
@@ -42,23 +44,25 @@ def write_outputs(dataset: xr.Dataset, folder: Path, formats: Iterable[str]) -> 
         ) from None
 
 
+_WRITERS = {
+    "csv": ("csv_files", "write_csv"),
+    "netcdf": ("netcdf", "write_netcdf"),
+    "geojson": ("geojson", "write_geojson"),
+    "map": ("map", "write_map"),
+    "waveforms": ("waveforms", "write_waveforms"),
+    "distance-time": ("distance_time", "write_distance_time"),
+    "budget": ("budget", "write_budget"),
+}
+"""Module of this package and function in it that write each format."""
+
+
 def _writer(name: str) -> Callable[[xr.Dataset, Path], None]:
     """The function that writes a format; each is imported only when it is asked for."""
-    if name == "csv":
-        from waveguide.report.csv_files import write_csv
-
-        return write_csv
-    if name == "netcdf":
-        from waveguide.report.netcdf import write_netcdf
-
-        return write_netcdf
-    if name == "geojson":
-        from waveguide.report.geojson import write_geojson
-
-        return write_geojson
-    from waveguide.report.map import write_map
-
-    return write_map
+    module, function = _WRITERS[name]
+    writer: Callable[[xr.Dataset, Path], None] = getattr(
+        import_module(f"waveguide.report.{module}"), function
+    )
+    return writer
 
 
 @contextmanager

@@ -4,31 +4,41 @@ from __future__ import annotations
 
 import itertools
 import math
-import textwrap
 from collections.abc import Callable, Iterable
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from waveguide.report.budget import budget_line, budget_text
+from waveguide.report.layout import WIDTH, filled
 from waveguide.report.routes import legs_of, routes_of
 from waveguide.report.text import columns, pad, plain
+from waveguide.report.ways import guided_legs
 
 if TYPE_CHECKING:
     import xarray as xr
 
-_WIDTH = 110
-"""Columns of the terminal that the running text keeps to."""
-
 _ABSENT = "–"
 
+_AT_ONCE = "at once"
+"""In place of a speed where most of the way is quasi-simultaneous."""
 
-def table(dataset: xr.Dataset) -> str:
+_NOTE = (
+    "at once: most of the way is quasi-simultaneous. Below its critical frequency a coast that "
+    "leads\n         poleward has no wave to follow; the front still has ∫ds/c, and little comes "
+    "with it."
+)
+
+
+def table(dataset: xr.Dataset, budget: bool = False) -> str:
     """What a person wants to read: rows, routes and cautions.
 
     Parameters
     ----------
     dataset : xarray.Dataset
         Arrivals that pass :func:`waveguide.schema.check`.
+    budget : bool
+        Also tell where the energy goes on every leg.
 
     Returns
     -------
@@ -37,6 +47,8 @@ def table(dataset: xr.Dataset) -> str:
     """
     rows = [(t, m) for t in range(dataset.sizes["target"]) for m in range(dataset.sizes["mode"])]
     parts = [_heading(dataset), _rows(dataset, rows), _routes(dataset, rows)]
+    if budget:
+        parts.append(budget_text(dataset))
     parts.append(_cautions(dataset, rows))
     return "\n\n".join(part for part in parts if part)
 
@@ -53,7 +65,7 @@ def _heading(dataset: xr.Dataset) -> str:
     )
     waves = f"Waves   dominant period {attributes['period_days']:g} days"
     ocean = f"Ocean   {attributes['ocean']}"
-    return "\n".join([plain(attributes["title"], _WIDTH), _filled(event, 8), waves, ocean])
+    return "\n".join([plain(attributes["title"], WIDTH), filled(event, 8), waves, ocean])
 
 
 def _position(lon: float, lat: float) -> str:
@@ -69,7 +81,7 @@ def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
         ("Half", "(days)", _column(dataset, "half_height_time_days", ".2f")),
         ("Peak", "(days)", _column(dataset, "peak_time_days", ".2f")),
         ("Front", "(UTC)", _date(dataset)),
-        ("Speed", "(m/s)", _column(dataset, "mean_speed_m_s", ".2f")),
+        ("Speed", "(m/s)", _speed(dataset)),
         ("Path", "(km)", _column(dataset, "path_length_km", ".0f")),
         ("Peak", "ratio", _column(dataset, "peak_ratio", ".3g")),
     ]
@@ -78,10 +90,26 @@ def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
     names = ["Target", ""] + [plain(dataset["target"].values[t], 28) for t, _ in rows]
     status = ["Status", ""] + [plain(dataset["status"].values[row], 28) for row in rows]
     middle = [[top, unit, *(cell(*row) for row in rows)] for top, unit, cell in show]
-    filled = [_filled_column(names), *(_filled_column(c, right=True) for c in middle), status]
-    lines = ["  ".join(cells).rstrip() for cells in zip(*filled, strict=True)]
+    padded = [_filled_column(names), *(_filled_column(c, right=True) for c in middle), status]
+    lines = ["  ".join(cells).rstrip() for cells in zip(*padded, strict=True)]
     rule = "─" * max(columns(line) for line in lines)
-    return "\n".join([*lines[:2], rule, *lines[2:]])
+    note = [_NOTE] if any(_quasi_simultaneous(dataset, *row) for row in rows) else []
+    return "\n".join([*lines[:2], rule, *lines[2:], *note])
+
+
+def _speed(dataset: xr.Dataset) -> Callable[[int, int], str]:
+    """The mean speed, or that there is none to speak of."""
+    number = _column(dataset, "mean_speed_m_s", ".2f")
+    return lambda t, m: _AT_ONCE if _quasi_simultaneous(dataset, t, m) else number(t, m)
+
+
+def _quasi_simultaneous(dataset: xr.Dataset, target: int, mode: int) -> bool:
+    """Whether legs of which most is below the critical frequency are most of the way."""
+    routes = routes_of(dataset, target, mode)
+    legs = guided_legs(dataset, routes[0]) if routes else []
+    length = dataset["leg_length_km"].values[legs]
+    at_once = dataset["leg_quasi_simultaneous"].values[legs] > 0
+    return bool(length[at_once].sum() > 0.5 * length.sum())
 
 
 def _column(dataset: xr.Dataset, name: str, style: str) -> Callable[[int, int], str]:
@@ -109,7 +137,7 @@ def _filled_column(cells: list[str], right: bool = False) -> list[str]:
 def _routes(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
     """By which legs the front comes, one paragraph for each route."""
     lines = [
-        _filled(f"  {_row_name(dataset, *row)}, {_route(dataset, route)}", 6)
+        filled(f"  {_row_name(dataset, *row)}, {_route(dataset, route)}", 6)
         for row in rows
         for route in routes_of(dataset, *row)
     ]
@@ -122,16 +150,29 @@ def _route(dataset: xr.Dataset, route: int) -> str:
     time = float(dataset["route_front_time_days"].values[route])
     ratio = float(dataset["route_amplitude_ratio"].values[route])
     head = f"{kind} via {via}" if via else kind
-    return f"{head}: {_legs(dataset, route)} ({time:.2f} days, amplitude ratio {ratio:.3g})"
+    return (
+        f"{head}: {_legs(dataset, route)} ({time:.2f} days, amplitude ratio {ratio:.3g}; "
+        f"{budget_line(dataset, route)})"
+    )
 
 
 def _legs(dataset: xr.Dataset, route: int) -> str:
     """Legs of one kind that follow each other are told as one."""
-    length = dataset["leg_length_km"].values
     kinds = itertools.groupby(legs_of(dataset, route), key=lambda i: dataset["leg_kind"].values[i])
-    return " → ".join(
-        f"{plain(kind)} {sum(length[i] for i in legs):.0f} km" for kind, legs in kinds
-    )
+    return " → ".join(_run(dataset, kind, list(legs)) for kind, legs in kinds)
+
+
+def _run(dataset: xr.Dataset, kind: str, legs: list[int]) -> str:
+    """Legs of one kind, with their critical periods where most of them is quasi-simultaneous."""
+    length = dataset["leg_length_km"].values[legs]
+    text = f"{plain(kind)} {length.sum():.0f} km"
+    at_once = dataset["leg_quasi_simultaneous"].values[legs] > 0
+    if not length[at_once].sum() > 0.5 * length.sum():
+        return text
+    periods = dataset["leg_critical_period_days"].values[legs][at_once]
+    low, high = f"{periods.min():.0f}", f"{periods.max():.0f}"
+    days = low if low == high else f"{low} to {high}"
+    return f"{text} (quasi-simultaneous, critical period {days} days)"
 
 
 def _cautions(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
@@ -140,14 +181,10 @@ def _cautions(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
     for row in rows:
         for caution in filter(None, str(dataset["caution"].values[row]).split("; ")):
             found.setdefault(plain(caution, 300), []).append(_row_name(dataset, *row))
-    lines = [_filled(f"  {caution} ({', '.join(where)})", 4) for caution, where in found.items()]
-    return "\n".join(["Cautions", *lines, _filled(f"  {dataset.attrs['caution']}", 4)])
+    lines = [filled(f"  {caution} ({', '.join(where)})", 4) for caution, where in found.items()]
+    return "\n".join(["Cautions", *lines, filled(f"  {dataset.attrs['caution']}", 4)])
 
 
 def _row_name(dataset: xr.Dataset, target: int, mode: int) -> str:
     name: Any = dataset["target"].values[target]
     return f"{plain(name, 28)} mode {int(dataset['mode'].values[mode])}"
-
-
-def _filled(text: str, indent: int) -> str:
-    return textwrap.fill(text, _WIDTH, subsequent_indent=" " * indent, break_on_hyphens=False)

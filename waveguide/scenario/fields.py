@@ -32,7 +32,7 @@ FASTEST_BAROCLINIC = 10.0
 FASTEST_BAROTROPIC = 350.0
 """√(gH) over the deepest trench, 11 km, is 329 m/s."""
 
-Format = Literal["csv", "netcdf", "geojson", "map"]
+Format = Literal["csv", "netcdf", "geojson", "map", "waveforms", "distance-time", "budget"]
 
 
 def _longitude(value: float) -> float:

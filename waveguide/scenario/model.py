@@ -6,7 +6,7 @@ the sentences a person reads when one is broken are in :mod:`.problems`.
 
 from __future__ import annotations
 
-from typing import Annotated, Literal
+from typing import Annotated, Literal, get_args
 
 from pydantic import AfterValidator, Field, model_validator
 
@@ -164,15 +164,11 @@ class Output(Table):
 
     Attributes
     ----------
-    formats : tuple of {"csv", "netcdf", "geojson", "map"}
+    formats : tuple of str
+        Out of `Format`; all unless told otherwise.
     """
 
-    formats: Annotated[tuple[Format, ...], AfterValidator(not_empty)] = (
-        "csv",
-        "netcdf",
-        "geojson",
-        "map",
-    )
+    formats: Annotated[tuple[Format, ...], AfterValidator(not_empty)] = get_args(Format)
 
 
 class Scenario(Table):

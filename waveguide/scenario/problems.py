@@ -8,8 +8,9 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from datetime import date
 from difflib import get_close_matches
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, get_args
 
+from waveguide.scenario.fields import Format
 from waveguide.scenario.model import Event, Ocean, Output, Scenario, Target, Waves
 from waveguide.scenario.observed import Compare, Lookout, Observation
 from waveguide.scenario.uncertainty import Planning, Uncertainty
@@ -58,7 +59,7 @@ _WAY_OUT = {
     "ocean.temperature": 'write "in-situ", "potential" or "conservative"',
     "ocean.phase_speed_m_s": "write a speed in m/s, as in phase_speed_m_s = 2.5",
     "output": "write an [output] table, or leave it out to get every format",
-    "output.formats": 'write a list of "csv", "netcdf", "geojson" and "map"',
+    "output.formats": "write a list of " + ", ".join(f'"{word}"' for word in get_args(Format)),
     "observations": "write an [[observations]] table for each record",
     "observations.name": 'write a name of 1 to 120 characters, as in name = "Callao"',
     "observations.position": "write position = [longitude, latitude], in degrees east and north",
