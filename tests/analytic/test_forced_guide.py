@@ -25,46 +25,12 @@ from forced_wave import integrate_guide, shallow_water_wind
 
 DAY = 86400.0
 WEIGHT = REFERENCE_DENSITY * GRAVITY
-# The shelf of section E of the notes: h₀ 20, h_L 4000 m, L 80 km, f 8.2e-5, r 5e-4 m/s, mode 1.
-# DERIVED from Gill & Schumann (1974), J. Phys. Oceanogr. 4, 83 and Brink & Allen (1978),
-# J. Phys. Oceanogr. 8, 1008: c (m/s), b = F(0,0) (m^-1/2), friction 1/a (m).
-SHELF_SPEED, SHELF_VALUE, SHELF_DECAY = 2.7154, 0.124465, 1.0 / 482.3e3
 
 
 def respond(network, mode, physics, stress, step, node=None, longest=np.inf):
     node = network.size - 1 if node is None else node
     reach = influence(network, mode, physics, node, 1.0, longest)
     return target_response(reach, forcing_of(network, stress, step))
-
-
-def test_steady_uniform_wind_without_friction_gives_1541_cm_per_1000_km():
-    # DERIVED, Gill & Schumann (1974): b² τ/(ρ g) per metre.
-    coast = zonal_coast(2000.0, 201)
-    mode = mode_of(coast, SHELF_SPEED, SHELF_VALUE)
-    physics = physics_of(coast, mode)
-    stress = np.full((200, 30), 0.1)
-    half = respond(coast, mode, physics, stress, DAY, node=100)[-1]
-    whole = respond(coast, mode, physics, stress, DAY)[-1]
-    assert half == pytest.approx(0.1541, rel=1e-3)  # the value has four digits
-    assert whole == pytest.approx(2.0 * half, rel=1e-9)
-
-
-def test_steady_uniform_wind_with_friction_gives_7431_cm_far_downstream():
-    # DERIVED, Brink & Allen (1978): the slope above times the decay length.
-    coast = zonal_coast(8000.0, 801)
-    mode = mode_of(coast, SHELF_SPEED, SHELF_VALUE)
-    physics = physics_of(coast, mode, decay=SHELF_DECAY)
-    level = respond(coast, mode, physics, np.full((800, 60), 0.1), DAY)[-1]
-    assert level == pytest.approx(0.07431, rel=1.5e-3)  # ways below 0.1 % are not followed
-
-
-def test_barotropic_flat_bottom_is_gill_and_schumann():
-    # (1/c) η_t + η_s = τ/(ρ g H); READ physics of Gill & Schumann (1974), F(0,0)² = 1/H.
-    depth = 4000.0
-    coast = zonal_coast(4000.0, 81)
-    mode = mode_of(coast, np.sqrt(GRAVITY * depth), depth**-0.5, number=0)
-    level = respond(coast, mode, physics_of(coast, mode), np.full((80, 20), 0.1), 0.25 * DAY)[-1]
-    assert level == pytest.approx(0.1 * coast.length.sum() / (WEIGHT * depth), rel=1e-6)
 
 
 def test_wind_sets_up_over_the_time_the_wave_takes():
