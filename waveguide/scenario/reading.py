@@ -112,9 +112,20 @@ def _read(scenario: str | Path, model: type[Model]) -> Model:
     return result
 
 
-def shipped_scenarios() -> dict[str, Path]:
-    """The scenarios that come with the package: name to path, in alphabetical order."""
-    return {path.stem: path for path in sorted(_scenario_folder().glob("*.toml"))}
+def shipped_scenarios(table: str | None = None) -> dict[str, Path]:
+    """The scenarios that come with the package: name to path, in alphabetical order.
+
+    Parameters
+    ----------
+    table : str or None
+        Only those whose file has this table, such as "event" or "wind".
+
+    Returns
+    -------
+    dict of Path
+    """
+    found = {path.stem: path for path in sorted(_scenario_folder().glob("*.toml"))}
+    return {name: path for name, path in found.items() if table is None or table in _parse(path)}
 
 
 def find_scenario(scenario: str | Path) -> Path:
