@@ -10,7 +10,7 @@ from waveguide.coast.shoreline import shoreline
 from waveguide.geodesy import arc, unit_vectors
 from waveguide.scenario import read_scenario, shipped_scenarios
 
-SHIPPED = shipped_scenarios()
+SHIPPED = shipped_scenarios("event")
 
 
 @pytest.fixture(scope="module")
@@ -37,6 +37,8 @@ def test_targets_lie_at_a_shore(name, shore):
         if target.name == "Kapingamarangi":
             assert abs(target.position[1]) < 1.5
             continue
+        if target.position[1] == 0.0 and target.name.startswith("0N"):
+            continue  # a mooring on the equator
         distance = float(arc(shore.query(unit_vectors(*target.position))[0])) / 1e3
         assert distance < 15.0, target.name
 
