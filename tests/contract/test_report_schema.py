@@ -60,7 +60,7 @@ def test_values_must_match_the_table():
         assemble({"depth": [1.0]}, {})
 
 
-@pytest.mark.parametrize("name", shipped_scenarios())
+@pytest.mark.parametrize("name", shipped_scenarios("event"))
 def test_attributes_of_a_scenario(name):
     attributes = arrivals_attributes(read_scenario(name), {"bathymetry.nc": "0" * 64})
     assert tuple(attributes)[: len(ARRIVALS_ATTRIBUTES)] == ARRIVALS_ATTRIBUTES
