@@ -52,7 +52,7 @@ def shell(*arguments: object) -> subprocess.CompletedProcess[str]:
     )  # fmt: skip
 
 
-@pytest.mark.parametrize("name", sorted(shipped_scenarios()))
+@pytest.mark.parametrize("name", sorted(shipped_scenarios("event")))
 def test_every_shipped_scenario_runs_and_reaches_most_of_its_targets(name):
     arrivals = waveguide.arrivals(read_scenario(name))
     check(arrivals)
