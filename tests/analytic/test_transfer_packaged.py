@@ -14,10 +14,11 @@ from waveguide.propagation.modes import atlas_mode
 from waveguide.propagation.step_response import Conditions
 from waveguide.propagation.transfer import leg_budget, paths_of_arrival, route_transfers
 
-# Ways that hold straits, facing coasts, both junctions and both sides of an ocean.
+# Ways that hold straits, facing coasts, both junctions, leaning coasts and both sides of an ocean.
 CASES = [
     (1, 40.0, (126.7, 8.6), [(-157.5, 2.0), (-77.2, -12.1), (-122.4, 37.8)]),
     (2, 60.0, (165.0, 0.0), [(-90.3, -0.8), (-71.6, -33.0)]),
+    (1, 25.0, (-36.9, -11.2), [(-40.8, -2.1), (9.0, 0.5), (11.5, -5.1), (3.5, 6.1)]),
     (0, 5.0, (-65.0, -45.0), [(-38.5, -13.0), (13.2, -8.8), (-5.5, 50.1)]),
 ]
 

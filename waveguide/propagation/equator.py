@@ -37,10 +37,8 @@ the meridian as it leaves the equator (eastward at an eastern boundary). Two thi
 Against shallow-water integrations along straight coasts leaning up to 70° the amplitude on
 the favoured coast is within 9 % and its phase within 10° up to 30°, 18° at 45°, 35° at 60°
 and 47° at 70°. What the other coast gets is within 12 % of what it would have without lean
-(27 % at 70°), with a phase that fails beyond 60°. A coast that bends within reach of the
-equator is neither meridional nor straight: off north-east Brazil, zonal from 5° S on, the
-wave leaves the cape by itself and reaches Africa five days before theory says
-(tests/oracle/test_oracle_atlantic.py).
+(27 % at 70°), with a phase that fails beyond 60°. What lean a real coast has is said in
+:mod:`waveguide.propagation.junctions`.
 
 References
 ----------
@@ -76,9 +74,11 @@ MATCHING_DISTANCE = 2.0
 """Default distance (in L_e) at which the coast takes over: beyond it the local
 relation of coasts follows the wall solution within 3 % in amplitude and 2° in phase for ω̂ ≤ 1.4."""
 
+STEEPEST_LEAN = 70.0
+"""Largest lean of a coast (degrees) that has been checked by integration."""
+
 _FAR = 6.0  # ŷ where the local relation has become exact, used to fix the junction factor
 _FASTEST = 3.0  # ω̂ beyond which less than 0.2 % of the energy follows the coast
-_STEEPEST = 70.0  # degrees; the largest lean that has been checked by integration
 _THRESHOLD = 0.4  # ω̂ above which the asymmetry of a leaning coast is that of first order
 
 
@@ -182,13 +182,15 @@ def eastern_junction(
     Moore (1968); Clarke (1983), J. Phys. Oceanogr. 13, 1193.
     """
     frequency = scaled_frequency(omega, phase_speed)
-    here, there = (np.clip(np.asarray(v, float), -_STEEPEST, _STEEPEST) for v in (lean, other_lean))
+    here, there = (
+        np.clip(np.asarray(v, float), -STEEPEST_LEAN, STEEPEST_LEAN) for v in (lean, other_lean)
+    )
     frequency, here, there = np.broadcast_arrays(frequency, here, there)
     speed = np.broadcast_to(np.asarray(phase_speed, float), frequency.shape)
     latitude = _matching_latitude(speed, matching)
-    amplitude = _coastal_amplitude(frequency, matching, here, there)
+    amplitude = coastal_amplitude(frequency, matching, here, there)
     alike = np.array_equal(here, there)
-    other = amplitude if alike else _coastal_amplitude(frequency, matching, there, here)
+    other = amplitude if alike else coastal_amplitude(frequency, matching, there, here)
     energy, spent = (np.abs(a) ** 2 / (2.0 * np.sqrt(np.pi) * matching) for a in (amplitude, other))
     return JunctionResponse(amplitude, latitude, energy, 1.0 - energy - spent)
 
@@ -226,6 +228,38 @@ def western_junction(
     east = eastern_junction(omega, phase_speed, matching, lean, other_lean)
     amplitude = east.amplitude / (2.0 * np.sqrt(np.pi) * matching)
     return JunctionResponse(amplitude, east.latitude, east.energy_out, 1.0 - east.energy_out)
+
+
+def coastal_amplitude(
+    frequency: ArrayLike, matching: float, lean: ArrayLike, other_lean: ArrayLike
+) -> ComplexArray:
+    """Sea level on an eastern coast at the matching distance per unit equatorial amplitude.
+
+    Parameters
+    ----------
+    frequency : array_like
+        ω̂ ≥ 0.
+    matching : float
+        ŷ, 1 to 4.
+    lean, other_lean : array_like
+        As for `eastern_junction`, within ±70°; all broadcast.
+
+    Returns
+    -------
+    ndarray of complex
+    """
+    frequency, here, there = (np.asarray(v, float) for v in (frequency, lean, other_lean))
+    cosine = np.cos(np.radians(here))
+    along = np.minimum(frequency, _FASTEST) / cosine
+    used = np.clip(np.minimum(along, np.maximum(frequency, 1.0)), SLOWEST, _FASTEST)
+    onward = segment_exponent(used, 1.0, matching, _FAR, _FAR - matching)
+    near = [segment_exponent(w, 1.0, 0.0, matching, matching).imag for w in (along, used)]
+    upright = eastern_wall(used, np.array(_FAR)) * np.exp(1j * (near[0] - near[1]) - onward)
+    tangent = 0.5 * (np.tan(np.radians(here)) - np.tan(np.radians(there)))
+    kappa = _asymmetry(frequency)
+    favour = np.sqrt(2.0 / (1.0 + np.exp(-2.0 * kappa.real * tangent)))
+    lag = 0.5 * kappa.imag * tangent * cosine ** np.sign(tangent)
+    return np.asarray(np.where(frequency > _FASTEST, 0.0, favour * upright * np.exp(1j * lag)))
 
 
 def eastern_wall(frequency: ArrayLike, distance: ArrayLike) -> ComplexArray:
@@ -342,23 +376,6 @@ def _matching_latitude(speed: Array, matching: float) -> Array:
             "1 to 4 and end short of the pole. Use 1 for the barotropic mode."
         )
     return np.asarray(np.degrees(np.arcsin(sine)))
-
-
-def _coastal_amplitude(
-    frequency: Array, matching: float, here: Array, there: Array
-) -> ComplexArray:
-    """Amplitude at the matching latitude on the coast that leans by `here` degrees."""
-    cosine = np.cos(np.radians(here))
-    along = np.minimum(frequency, _FASTEST) / cosine
-    used = np.clip(np.minimum(along, np.maximum(frequency, 1.0)), SLOWEST, _FASTEST)
-    onward = segment_exponent(used, 1.0, matching, _FAR, _FAR - matching)
-    near = [segment_exponent(w, 1.0, 0.0, matching, matching).imag for w in (along, used)]
-    upright = eastern_wall(used, np.array(_FAR)) * np.exp(1j * (near[0] - near[1]) - onward)
-    tangent = 0.5 * (np.tan(np.radians(here)) - np.tan(np.radians(there)))
-    kappa = _asymmetry(frequency)
-    favour = np.sqrt(2.0 / (1.0 + np.exp(-2.0 * kappa.real * tangent)))
-    lag = 0.5 * kappa.imag * tangent * cosine ** np.sign(tangent)
-    return np.asarray(np.where(frequency > _FASTEST, 0.0, favour * upright * np.exp(1j * lag)))
 
 
 def _asymmetry(frequency: Array) -> ComplexArray:

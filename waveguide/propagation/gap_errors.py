@@ -54,7 +54,8 @@ def gap_logs(
     if not at.size or error == 0.0:
         return {name: np.zeros(GRID.size) for name in GAPS}
     frequency = np.array([omega])
-    table = network_wall_table(network, mode, frequency)
+    ends = np.append(network.tail[at], network.head[at])
+    table = network_wall_table(network, mode, frequency, ends)
     sigma = np.minimum(error / network.gap_width, _WIDEST_ERROR)
     kept = np.array([
         -step_response(_widened(network, sigma * x), mode, at, frequency, table)

@@ -82,11 +82,11 @@ def step_physics(
     time, loss = np.full(along.size, np.inf), np.zeros(along.size)
     time[carried] = network.length[carried] * along[carried]
     frequency = np.array([omega])
-    table = network_wall_table(network, mode, frequency)
+    nodes = np.arange(network.size)
+    table = network_wall_table(network, mode, frequency, nodes)
     conditions = Conditions(friction=friction_of_steps(network, mode, drag), damping=damping)
     response = step_response(network, mode, carried, frequency, table, conditions)
     loss[carried] = response.nepers.sum(axis=0)[:, 0]
-    nodes = np.arange(network.size)
     return StepPhysics(time, loss, slowness, potential(network, mode, nodes, table)[:, 0])
 
 

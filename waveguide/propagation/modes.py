@@ -7,10 +7,12 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from waveguide.constants import BETA_EQUATOR, coriolis
 from waveguide.network.atlas import Atlas
 from waveguide.network.graph import Network, StepKind
 
 Array = NDArray[np.float64]
+Index = NDArray[np.int64]
 
 MATCHING = 2.0
 """Distance from the equator, in L_e, where a coast takes over from a junction."""
@@ -72,6 +74,23 @@ def stretch_lengths(network: Network) -> Array:
     return np.where(line >= 0, total[line + 1], np.where(equator, network.length, 0.0))
 
 
+def scaled_distance(network: Network, mode: ModeAtNodes, nodes: Index) -> Array:
+    """Distance of nodes from the equator, ŷ = |f|/√(βc).
+
+    Parameters
+    ----------
+    network : Network
+    mode : ModeAtNodes
+    nodes : ndarray of int, shape (k,)
+
+    Returns
+    -------
+    ndarray, shape (k,)
+    """
+    c = known_speed(mode)[nodes]
+    return np.asarray(np.abs(coriolis(network.lat[nodes])) / np.sqrt(BETA_EQUATOR * c))
+
+
 def poleward_nodes(network: Network) -> NDArray[np.bool_]:
     """Coast nodes from which the signal travels towards the pole: an eastern boundary."""
     coast = network.kind == StepKind.COAST
@@ -79,6 +98,11 @@ def poleward_nodes(network: Network) -> NDArray[np.bool_]:
     poleward = np.zeros(network.size, dtype=bool)
     poleward[tail] = np.abs(network.lat[head]) > np.abs(network.lat[tail])
     return poleward
+
+
+def known_speed(mode: ModeAtNodes) -> Array:
+    """Phase speed at nodes (m/s), 1 where the mode does not exist, so that arrays stay finite."""
+    return np.where(np.isfinite(mode.speed), mode.speed, 1.0)
 
 
 def atlas_mode(atlas: Atlas, mode: int) -> ModeAtNodes:

@@ -7,7 +7,8 @@ lag between two latitudes is that of the eastern one read backwards (reciprocity
 from ŷ = 0.5 outwards.
 
 The wall of that solution is meridional. A real coast between two latitudes is longer; what is in
-excess of its extent in latitude adds the lag of a wave that runs along it with speed c.
+excess of its extent in latitude adds the lag of a wave that runs along it with speed c. What its
+lean does besides is that of :mod:`waveguide.propagation.junctions`.
 """
 
 from __future__ import annotations
@@ -20,7 +21,19 @@ from numpy.typing import NDArray
 from waveguide.constants import BETA_EQUATOR, coriolis
 from waveguide.network.graph import Network
 from waveguide.propagation.equator import eastern_wall, scaled_frequency, western_wall
-from waveguide.propagation.modes import HIGHEST_SCALED_FREQUENCY, ModeAtNodes, poleward_nodes
+from waveguide.propagation.junctions import (
+    JunctionTable,
+    junction_table,
+    leaning_shape,
+    network_junctions,
+)
+from waveguide.propagation.modes import (
+    HIGHEST_SCALED_FREQUENCY,
+    ModeAtNodes,
+    known_speed,
+    poleward_nodes,
+    scaled_distance,
+)
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -40,16 +53,21 @@ class WallTable:
         |W(ŷ)|/|W(matching)| at g equidistant ŷ from 0 to `matching`.
     lag : ndarray, shape (g, nω)
         arg W(ŷ) − arg W(0) (rad).
+    junctions : JunctionTable
+        What the lean of the coasts changes.
     """
 
     matching: float
     eastern: Array
     western: Array
     lag: Array
+    junctions: JunctionTable
 
 
-def wall_table(omega: Array, speed: float, matching: float) -> WallTable:
-    """Tabulate the eastern wall solution.
+def wall_table(
+    omega: Array, speed: float, matching: float, junctions: JunctionTable
+) -> WallTable:
+    """Tabulate the wall solutions.
 
     Parameters
     ----------
@@ -59,6 +77,8 @@ def wall_table(omega: Array, speed: float, matching: float) -> WallTable:
         Phase speed (m/s) typical of the walls.
     matching : float
         Matching distance in L_e.
+    junctions : JunctionTable
+        At the same frequencies.
 
     Returns
     -------
@@ -73,28 +93,14 @@ def wall_table(omega: Array, speed: float, matching: float) -> WallTable:
     lag = np.unwrap(np.angle(wall), axis=0)
     beyond = np.maximum(frequency / HIGHEST_SCALED_FREQUENCY, 1.0)
     return WallTable(
-        matching, np.abs(wall / wall[-1]), np.abs(back / back[-1]), (lag - lag[0]) * beyond
-    )
+        matching, np.abs(wall / wall[-1]), np.abs(back / back[-1]), (lag - lag[0]) * beyond,
+        junctions,
+    )  # fmt: skip
 
 
-def scaled_distance(network: Network, mode: ModeAtNodes, nodes: Index) -> Array:
-    """Distance of nodes from the equator, ŷ = |f|/√(βc).
-
-    Parameters
-    ----------
-    network : Network
-    mode : ModeAtNodes
-    nodes : ndarray of int, shape (k,)
-
-    Returns
-    -------
-    ndarray, shape (k,)
-    """
-    c = _known_speed(mode)[nodes]
-    return np.asarray(np.abs(coriolis(network.lat[nodes])) / np.sqrt(BETA_EQUATOR * c))
-
-
-def network_wall_table(network: Network, mode: ModeAtNodes, omega: Array) -> WallTable:
+def network_wall_table(
+    network: Network, mode: ModeAtNodes, omega: Array, nodes: Index
+) -> WallTable:
     """Wall table for the median speed of the coast nodes within the matching distance.
 
     Parameters
@@ -103,16 +109,18 @@ def network_wall_table(network: Network, mode: ModeAtNodes, omega: Array) -> Wal
     mode : ModeAtNodes
     omega : ndarray, shape (nω,)
         Angular frequency (rad/s).
+    nodes : ndarray of int
+        Where it will be used.
 
     Returns
     -------
     WallTable
     """
-    nodes = np.arange(network.size)
     near = np.isfinite(network.offshore)
-    near &= scaled_distance(network, mode, nodes) < mode.matching
-    speed = float(np.median(_known_speed(mode)[near])) if near.any() else 1.0
-    return wall_table(omega, speed, mode.matching)
+    near &= scaled_distance(network, mode, np.arange(network.size)) < mode.matching
+    speed = float(np.median(known_speed(mode)[near])) if near.any() else 1.0
+    junctions = junction_table(network_junctions(network, mode), mode, omega, nodes)
+    return wall_table(omega, speed, mode.matching, junctions)
 
 
 def potential(network: Network, mode: ModeAtNodes, nodes: Index, table: WallTable) -> Array:
@@ -130,7 +138,7 @@ def potential(network: Network, mode: ModeAtNodes, nodes: Index, table: WallTabl
     ndarray, shape (k, nω)
         P (m^-1/2 s^-1/2).
     """
-    c = _known_speed(mode)[nodes]
+    c = known_speed(mode)[nodes]
     f = floored_coriolis(network.lat[nodes], c, mode.matching)
     flux = np.where(
         network.equatorial[nodes], (BETA_EQUATOR * c / np.pi) ** 0.25, np.sqrt(2.0 * f)
@@ -176,22 +184,22 @@ def wall_lag(table: WallTable, first: Array, last: Array) -> Array:
     return _at(table.lag, far / table.matching) - _at(table.lag, near / table.matching)
 
 
-def _known_speed(mode: ModeAtNodes) -> Array:
-    """Phase speed, 1 m/s where the mode does not exist, so that arrays stay finite."""
-    return np.where(np.isfinite(mode.speed), mode.speed, 1.0)
-
-
 def _shape(network: Network, mode: ModeAtNodes, nodes: Index, table: WallTable) -> Array:
     """Sea level along the wall of a junction over that at the matching distance."""
     distance = scaled_distance(network, mode, nodes)
     shape = np.ones((nodes.size, table.eastern.shape[1]))
     near = np.nonzero(np.isfinite(network.offshore[nodes]) & (distance < table.matching))[0]
     place = distance[near] / table.matching
-    eastward = poleward_nodes(network)[nodes[near]]
+    found = table.junctions.junctions
+    coast = found.coast[nodes[near]]  # a bend on the way to a junction does not change its sides
+    ours = np.append(found.eastern, False)[coast // 2]
+    eastward = np.where(coast >= 0, ours, poleward_nodes(network)[nodes[near]])
     shape[near] = np.where(
         eastward[:, None], _at(table.eastern, place), _at(table.western, place)
     )
+    shape[near] *= leaning_shape(table.junctions, nodes[near], place)
     return shape
+
 
 def _at(values: Array, position: Array) -> Array:
     """Linear interpolation between the rows of a table; position 0 to 1."""

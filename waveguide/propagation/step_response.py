@@ -9,8 +9,10 @@ is a delay and the nepers n ≥ 0 tell by their kind (`FATES`) where the energy 
 - coast within the matching distance of the equator: the lag of the wall solution
   (:mod:`waveguide.propagation.near_equator`); its losses are those of the junction;
 - equator: φ = ωs/c, the Kelvin wave having no dispersion;
-- junctions: the amplitude of :mod:`waveguide.propagation.equator`. The lag of the wall solution
-  between the equator and the matching latitude is that of the coast, the rest is the junction's;
+- junctions: the amplitude of :mod:`waveguide.propagation.equator`, with the lean of either coast
+  (:mod:`waveguide.propagation.junctions`). The step of the equator keeps the share of the coast
+  that gets, or gives, more; that of the other coast at the junction loses the rest. The lag
+  between the equator and the matching latitude is that of the coast, the rest is the equator's;
 - gaps: the complex factors of :mod:`waveguide.propagation.gaps`. The lag that they hold for the
   length of the passage is taken out, since the steps of the network have it: so the phase at
   high frequency is ω times the travel time of the front, and the modulus is untouched;
@@ -29,16 +31,14 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from waveguide.constants import BETA_EQUATOR, coriolis
 from waveguide.network.graph import Network, StepKind
 from waveguide.propagation.dispersion import segment_exponent, segment_growth
-from waveguide.propagation.equator import eastern_junction, equatorial_radius
 from waveguide.propagation.gaps import facing_coast_share, passage
-from waveguide.propagation.modes import ModeAtNodes, stretch_lengths
+from waveguide.propagation.junctions import JunctionTable, coasts_of_steps, excess_lengths
+from waveguide.propagation.modes import ModeAtNodes, scaled_distance
 from waveguide.propagation.near_equator import (
     WallTable,
     floored_coriolis,
-    scaled_distance,
     wall_lag,
 )
 
@@ -189,7 +189,7 @@ def step_response(
     friction = _of_steps(conditions.friction, steps) * network.length[steps]
     nepers[_FRICTION] = friction[:, None]
     nepers[_SCATTERED] = _nepers(_of_steps(conditions.overlap, steps))[:, None]
-    _add_junctions(network, mode, steps, omega, table, lag, nepers)
+    _add_junctions(network, steps, table, lag, nepers)
     _add_gaps(network, mode, steps, omega, lag, nepers)
     return StepResponse(lag, nepers)
 
@@ -238,36 +238,64 @@ def _near_equator(
         scaled_distance(network, mode, node[steps]) for node in (network.tail, network.head)
     )
     near = np.nonzero(np.maximum(first, last) < mode.matching)[0]
-    f = np.abs(coriolis(network.lat))
-    rise = np.abs(f[network.head[steps[near]]] - f[network.tail[steps[near]]]) / BETA_EQUATOR
-    excess = np.maximum(network.length[steps[near]] - rise, 0.0) / speed[near]
-    lag[near] = wall_lag(table, first[near], last[near]) + excess[:, None] * omega
+    excess = excess_lengths(network, mode, steps[near])
+    lag[near] = wall_lag(table, first[near], last[near]) + (excess / speed[near])[:, None] * omega
+    return lag + _eastern_lag(network, mode, steps, table)
+
+
+def _eastern_lag(network: Network, mode: ModeAtNodes, steps: Index, table: WallTable) -> Array:
+    """What lean does to the lag along the coasts of eastern junctions."""
+    found = table.junctions.junctions
+    lag = np.zeros((steps.size, table.lag.shape[1]))
+    coast = coasts_of_steps(network, found.coast, steps)
+    at = np.nonzero((coast >= 0) & np.append(found.eastern, False)[coast // 2])[0]
+    owner, side = coast[at] // 2, coast[at] % 2
+    excess = excess_lengths(network, mode, steps[at]) / np.maximum(found.excess[owner, side], 1.0)
+    lag[at] = excess[:, None] * table.junctions.lag[owner, side]
     return lag
 
 
 def _add_junctions(
-    network: Network, mode: ModeAtNodes, steps: Index, omega: Array, table: WallTable,
-    lag: Array, nepers: Array,
+    network: Network, steps: Index, table: WallTable, lag: Array, nepers: Array
 ) -> None:
-    """Add what happens where a step of the equator starts or ends at a coast.
+    """Add what happens where the equator meets its coasts.
 
-    Water shorter than L_e along the equator is no ocean with waves of its own: it passes.
+    One coast delivers to the equator the share that it gets from it (reciprocity). Of the two
+    shares the step of the equator keeps the larger, so no step of a coast ever gains.
     """
-    c = step_speeds(network, mode, steps)[0]
-    ocean = stretch_lengths(network)[steps] >= equatorial_radius(c)
-    ocean &= network.kind[steps] == StepKind.EQUATOR
-    ends = ocean & ~network.equatorial[network.head[steps]]
-    starts = ocean & ~network.equatorial[network.tail[steps]]
-    for touches, coasts in ((ends, 2.0), (starts, 1.0)):
-        at = np.nonzero(touches)[0]
-        junction = eastern_junction(omega, c[at, None], table.matching)
-        # One coast delivers to the equator the share that it gets from it (reciprocity).
-        share = junction.energy_out
-        lost = _nepers(np.sqrt(share))
-        elsewhere = (coasts - 1.0) * share / np.maximum(1.0 - share, share)
+    found = table.junctions
+    equator, coast = (network.kind[steps] == k for k in (StepKind.EQUATOR, StepKind.COAST))
+    inner, outer = network.head[steps], network.tail[steps]
+    for eastern in (True, False):
+        at, row = _touching(found, equator, inner, eastern)
+        lost, elsewhere = _equator_losses(found.energy[row], eastern)
         nepers[_OTHER, at] += elsewhere * lost
         nepers[_ROSSBY, at] += (1.0 - elsewhere) * lost
-        lag[at] += np.angle(junction.amplitude) - table.lag[-1]
+        lag[at] += found.upright[row] - table.lag[-1]
+        at, row = _touching(found, coast, outer, eastern)
+        side = (network.lat[inner[at]] < 0.0).astype(np.int64)
+        most = found.energy[row].max(axis=1)
+        share = np.divide(found.energy[row, side], most, out=np.ones_like(most), where=most > 0.0)
+        nepers[_OTHER if eastern else _ROSSBY, at] += _nepers(np.sqrt(share))
+        lag[at] += 0.0 if eastern else found.lag[row, side]
+        inner, outer = outer, inner
+
+
+def _touching(
+    table: JunctionTable, along: NDArray[np.bool_], ends: Index, eastern: bool
+) -> tuple[Index, Index]:
+    """Which of some steps end at a junction of an eastern or a western coast, and at which."""
+    row = table.junctions.at[ends]
+    of_kind = np.append(table.junctions.eastern == eastern, False)
+    at = np.nonzero(along & of_kind[row])[0]
+    return at, row[at]
+
+
+def _equator_losses(energy: Array, eastern: bool) -> tuple[Array, Array]:
+    """Nepers at the equator's end of junctions and the share of them that is other coasts'."""
+    most, least = energy.max(axis=1), energy.min(axis=1)
+    given = least if eastern else np.zeros_like(least)
+    return _nepers(np.sqrt(most)), given / np.maximum(1.0 - most, np.maximum(given, 1e-300))
 
 
 def _add_gaps(

@@ -265,7 +265,8 @@ def _leg_sums(
 ) -> tuple[Array, Array, Array]:
     """Lag and nepers of every leg of every path, and the potential at `nodes`."""
     steps, column = np.unique(np.concatenate([path.steps for path in paths]), return_inverse=True)
-    table = network_wall_table(network, mode, omega)
+    ends = np.concatenate([nodes, network.tail[steps], network.head[steps]])
+    table = network_wall_table(network, mode, omega, ends)
     response = step_response(network, mode, steps, omega, table, conditions)
     sizes = np.concatenate([np.diff(path.leg_ends, prepend=0) for path in paths])
     bounds = np.concatenate([[0], np.cumsum(sizes)])
