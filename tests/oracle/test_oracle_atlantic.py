@@ -5,16 +5,22 @@ atlantic_results.json holds what a shallow-water integration over the real mask 
 network finds and its transfer function, so the strength of the source plays no part.
 
 What is found. Along Brazil and along south-west Africa half-height and amplitude agree (half
-a day, a few per cent): the effective coast has the right length. The whole crossing misses:
-north-east Brazil runs nearly zonal within 5° of the equator, so the wave leaves the coast at
-the cape before the line of the route does. The signal rises about five days early and 1.5
-times weaker than meridional junctions give. The lean of the coasts, measured on a map from
-the equator to 6°, explains the amplitude but not the time.
+a day, a few per cent): the effective coast has the right length. From the middle of the ocean to
+Gabon and Angola, over a junction whose coasts lean 26° and −38°, they agree within 0.2 days and
+6 %. Over the Brazilian junction, −57°, theory is 1.5 days late and 14 % high on the equator:
+north-east Brazil is no straight line but runs zonal within 5° of the equator and meridional
+beyond. The whole crossing is within 1.2 days of 29 to 40, and 12 %; with meridional junctions it
+would be 5 days late and 1.5 times too high.
+
+The Guinea coast, zonal at 4° to 6° N, is missed: the wave takes 4 days from Takoradi to Tabou
+where theory has 2.5. Between a zonal wall at 1.45 L_e and the equator long waves go at
+c/(2ν + 1) with D_ν(−1.45√2) = 0, which is 0.85 c, and so explains a third of it.
 """
 
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from functools import cache
 from pathlib import Path
 
@@ -23,11 +29,13 @@ import pytest
 from basin import half_height_and_peak
 from numpy.testing import assert_allclose
 
+from waveguide.network.graph import Network
 from waveguide.network.packaged import packaged_network
 from waveguide.ocean.bathymetry import packaged_bathymetry
+from waveguide.propagation import near_equator
 from waveguide.propagation.arrivals import mode_arrivals
-from waveguide.propagation.equator import eastern_junction, western_junction
-from waveguide.propagation.modes import uniform_mode
+from waveguide.propagation.junctions import Junctions, network_junctions
+from waveguide.propagation.modes import ModeAtNodes, uniform_mode
 from waveguide.propagation.transfer import independent_paths, paths_of_arrival, route_transfers
 
 RECORD = json.loads(
@@ -51,7 +59,7 @@ def place(name: str) -> tuple[float, float]:
 
 
 @cache
-def carried(start: str, names: tuple[str, ...], leaning: bool = False) -> np.ndarray:
+def carried(start: str, names: tuple[str, ...], upright: bool = False) -> np.ndarray:
     """Half-height time, peak time (days) and peak at gauges by theory (rows)."""
     time, first = series(start)
     padded = 4 * time.size
@@ -60,34 +68,28 @@ def carried(start: str, names: tuple[str, ...], leaning: bool = False) -> np.nda
     network, _ = packaged_network("baroclinic")
     mode = uniform_mode(network, 1, SPEED)
     here = place(start)
-    arrivals = mode_arrivals(
-        network, mode, packaged_bathymetry(), (*here, *here), here,
-        [place(name) for name in names], 2 * np.pi / PERIOD,
-    )
-    rows = []
-    for arrival in arrivals:
-        paths = paths_of_arrival(arrival)
-        kept = [paths[i] for i in independent_paths(paths)]
-        total = sum(t.response for t in route_transfers(network, mode, kept, omega))
-        total = total * (lean_factor(omega) if leaning else 1.0)
-        rows.append(half_height_and_peak(
-            time, np.fft.irfft((spectrum * total).conj(), padded)[: time.size]
-        ))
+    with pytest.MonkeyPatch.context() as patch:
+        if upright:
+            patch.setattr(near_equator, "network_junctions", meridional_junctions)
+        arrivals = mode_arrivals(
+            network, mode, packaged_bathymetry(), (*here, *here), here,
+            [place(name) for name in names], 2 * np.pi / PERIOD,
+        )
+        rows = []
+        for arrival in arrivals:
+            paths = paths_of_arrival(arrival)
+            kept = [paths[i] for i in independent_paths(paths)]
+            total = sum(t.response for t in route_transfers(network, mode, kept, omega))
+            rows.append(half_height_and_peak(
+                time, np.fft.irfft((spectrum * total).conj(), padded)[: time.size]
+            ))
     return np.array(rows)
 
 
-def lean_factor(omega: np.ndarray) -> np.ndarray:
-    """Junctions with the lean of these coasts over meridional ones, in amplitude.
-
-    Read off a map between the equator and 6°: Brazil −70° south and 49° north of it; Africa
-    26° south and −41° north.
-    """
-    factor = np.ones(omega.size)
-    for junction, lean, other in ((western_junction, -70, 49), (eastern_junction, 26, -41)):
-        leaning = np.abs(junction(omega, SPEED, 2.0, lean, other).amplitude)
-        upright = np.abs(junction(omega, SPEED).amplitude)
-        factor *= leaning / np.where(upright > 0, upright, 1.0)
-    return factor
+def meridional_junctions(network: Network, mode: ModeAtNodes) -> Junctions:
+    """The junctions of a network as if no coast leaned."""
+    found = network_junctions(network, mode)
+    return replace(found, lean=np.zeros_like(found.lean))
 
 
 def found(names: tuple[str, ...]) -> np.ndarray:
@@ -107,18 +109,44 @@ def test_coast_of_brazil() -> None:
     assert_allclose(theory[:, 2], record[:, 2], rtol=0.05)
 
 
-@pytest.mark.xfail(strict=True, reason="the wave leaves Brazil at the cape; see the module")
-def test_time_of_the_crossing() -> None:
+# 5 % of the travel time, or the half day of the record; 20 % of the amplitude.
+def test_crossing() -> None:
     theory, record = carried("Aracaju", CROSSING), found(CROSSING)
     travel = record[:, 0] - found(("Aracaju",))[0, 0]
-    assert np.all(np.abs(theory[:, 0] - record[:, 0]) < np.maximum(0.05 * travel, 0.5))
+    assert np.all(np.abs(theory[:, 0] - record[:, 0]) < 0.05 * travel)
+    assert_allclose(theory[:, 1], record[:, 1], atol=1.2)
+    assert_allclose(theory[:, 2], record[:, 2], rtol=0.12)
 
 
-@pytest.mark.xfail(strict=True, reason="meridional junctions overrate it; see the module")
-def test_amplitude_of_the_crossing() -> None:
-    assert_allclose(carried("Aracaju", CROSSING)[:, 2], found(CROSSING)[:, 2], rtol=0.2)
+def test_meridional_junctions_would_miss_the_crossing() -> None:
+    theory, record = carried("Aracaju", CROSSING, upright=True), found(CROSSING)
+    assert np.all(theory[:, 0] - record[:, 0] > 5.0)
+    assert np.all(theory[:, 2] > 1.45 * record[:, 2])
 
 
-def test_lean_explains_the_amplitude_of_the_crossing() -> None:
-    theory = carried("Aracaju", CROSSING, leaning=True)
-    assert_allclose(theory[:, 2], found(CROSSING)[:, 2], rtol=0.2)
+# Half-height within 5 % of the travel time would be 0.6 days on the equator: missed there.
+def test_junction_of_brazil() -> None:
+    places = ("Camocim", "20 W")
+    theory, record = carried("Natal", places), found(places)
+    assert_allclose(theory[:, 0], record[:, 0], atol=1.6)
+    assert_allclose(theory[:, 2], record[:, 2], rtol=0.2)
+
+
+def test_junction_of_africa() -> None:
+    names = ("Libreville", "Pointe-Noire", "Luanda")
+    theory, record = carried("5 W", names), found(names)
+    assert_allclose(theory[:, 0], record[:, 0], atol=0.25)
+    assert_allclose(theory[:, 2], record[:, 2], rtol=0.07)
+
+
+def test_amplitude_along_the_guinea_coast() -> None:
+    names = ("Takoradi", "Tabou", "Dakar")
+    assert_allclose(carried("Lagos", names)[:, 2], found(names)[:, 2], rtol=0.13)
+
+
+@pytest.mark.xfail(strict=True, reason="zonal within 2 L_e of the equator; see the module")
+def test_time_along_the_guinea_coast() -> None:
+    names = ("Takoradi", "Tabou", "Dakar")
+    travel = found(names)[:, 0] - found(("Lagos",))[0, 0]
+    assert np.all(np.abs(carried("Lagos", names)[:, 0] - found(names)[:, 0])
+                  < np.maximum(0.05 * travel, 0.5))

@@ -43,7 +43,7 @@ class Domain:
 
 @dataclass(frozen=True)
 class Gauges:
-    """What coastal gauges recorded.
+    """What gauges recorded.
 
     Attributes
     ----------
@@ -52,7 +52,7 @@ class Gauges:
     time : ndarray, shape (nt,)
         Seconds.
     sea_level : ndarray, shape (nt, n)
-        η carried half a cell to the coast by exp(|f| dx/2c).
+        η carried half a cell to the coast by exp(|f| dx/2c), on the equator η itself.
     steps : int
     cpu_seconds : float
     """
@@ -124,7 +124,7 @@ def whole_route(
     source_time : callable
         Time function of the source (1/s).
     gauges : list of (lon, lat)
-        The closest coastal cell is read.
+        The closest coastal cell is read; on the equator (lat = 0) the closest of all.
     duration : float
         Seconds.
     sponge : array (ny, nx) or float
@@ -138,8 +138,8 @@ def whole_route(
     -------
     Gauges
     """
-    coast = coastal_cells(domain)
-    read = np.array([nearest(domain, coast, *gauge) for gauge in gauges])
+    coast, water = coastal_cells(domain), np.argwhere(domain.water)
+    read = np.array([nearest(domain, coast if lat else water, lon, lat) for lon, lat in gauges])
     grid: Grid = sphere_grid(domain.water, domain.step, domain.south, domain.step)
     record = integrate(
         grid, speed, duration, read, source=source, source_time=source_time, sponge=sponge,
