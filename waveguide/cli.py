@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from waveguide.cli_planning import plan
-from waveguide.cli_records import compare
+from waveguide.cli_records import compare, lookout
 from waveguide.cli_sections import atlas, section
 from waveguide.cli_wind import response
 from waveguide.progress import Progress
@@ -36,6 +36,7 @@ app = typer.Typer(
 
 
 app.command()(compare)
+app.command()(lookout)
 app.command()(response)
 app.command()(plan)
 # A negative longitude looks like an option; `section` itself refuses what is neither.

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import sys
-from contextlib import nullcontext
+from contextlib import AbstractContextManager, nullcontext
 from pathlib import Path
 from typing import Annotated
 
@@ -46,6 +46,110 @@ def compare(
     else:
         print(comparison_table(result, dataset))
     say_where(out)
+
+
+def lookout(
+    scenario: SCENARIO,
+    files: Annotated[
+        list[Path] | None, typer.Argument(help="Further files of --model.", show_default=False)
+    ] = None,
+    model: Annotated[
+        Path | None, typer.Option(help="Model output: NetCDF files or a Zarr store.")
+    ] = None,
+    out: Annotated[
+        Path | None,
+        typer.Option(help="Also write windows, diagrams and the subset to this folder."),
+    ] = None,
+    json: JSON = False,
+    dask: Annotated[
+        str | None, typer.Option(help="Address of a dask cluster that does the work.")
+    ] = None,
+) -> None:
+    """Where and when to look: windows along the routes, and what model output shows there."""
+    from waveguide.report.files import output_folder
+    from waveguide.report.lookout_files import write_lookout
+    from waveguide.report.lookout_text import lookout_document, lookout_table
+    from waveguide.scenario import read_scenario
+
+    question = read_scenario(scenario)
+    paths = model_paths(model, files or [])
+    with nullcontext() if out is None else output_folder(out) as folder, cluster(dask):
+        from waveguide.compare.model_grid import open_model
+        from waveguide.lookout import lookout as look
+
+        with Progress() as progress:
+            result = look(question, open_model(paths) if paths else None, progress=progress)
+        if folder is not None:
+            write_lookout(result, folder, question.output.formats)
+    if json:
+        print_json(lookout_document(result))
+    else:
+        print(lookout_table(result))
+    say_where(out)
+
+
+def model_paths(model: Path | None, further: list[Path]) -> list[Path]:
+    """All files of --model, which a shell may have made many of one pattern.
+
+    Parameters
+    ----------
+    model : Path or None
+    further : list of Path
+
+    Returns
+    -------
+    list of Path
+
+    Raises
+    ------
+    InputError
+        If there are further files without --model.
+    """
+    from waveguide.errors import InputError
+
+    if model is None and further:
+        raise InputError(
+            f"{further[0]}: files of model output follow --model, as in --model {further[0]}"
+        )
+    return [] if model is None else [model, *further]
+
+
+def cluster(address: str | None) -> AbstractContextManager[object]:
+    """The connection to a dask cluster, which all work goes to while it is open.
+
+    Parameters
+    ----------
+    address : str or None
+        None for none.
+
+    Returns
+    -------
+    context manager
+
+    Raises
+    ------
+    InputError
+        If there is no such cluster, or dask's client is not installed.
+    """
+    from waveguide.errors import InputError
+
+    if address is None:
+        return nullcontext()
+    try:
+        from distributed import Client
+
+        client: AbstractContextManager[object] = Client(address, timeout="10s")
+    except ImportError:
+        raise InputError(
+            f"--dask {address}: the client of dask clusters is not installed; install it with "
+            'pip install "waveguide[large]"'
+        ) from None
+    except (OSError, ValueError) as error:
+        raise InputError(
+            f"--dask {address}: no cluster answers ({error}); give the address of a running "
+            "scheduler, as in tcp://127.0.0.1:8786"
+        ) from None
+    return client
 
 
 def print_json(document: object) -> None:

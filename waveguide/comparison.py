@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from waveguide import pipeline
+from waveguide.compare.columns import column_modes
 from waveguide.compare.events import EventResult, compare_event
 from waveguide.compare.moorings import (
     MooringResult,
@@ -24,9 +25,6 @@ from waveguide.compare.series import Series
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.geodesy import geodesic_length
-from waveguide.modes.vertical import VerticalModes, vertical_modes
-from waveguide.ocean.bathymetry import packaged_bathymetry
-from waveguide.ocean.stratification import packaged_climatology
 from waveguide.propagation.arrivals import REACHED
 from waveguide.propagation.cautions import FAINT
 from waveguide.propagation.transfer import paths_of_arrival, route_transfers
@@ -38,9 +36,6 @@ Position = tuple[float, float]
 
 ONE_PLACE = 5e3
 """Records within this distance of each other belong to one mooring (m)."""
-
-HIGHEST_SHELF = 200.0
-"""Positions in shallower water take the vertical structure of the nearest deeper column (m)."""
 
 FREQUENCIES = 256
 """Of the transfer function, from zero to the middle of the band, to count the turns of phase."""
@@ -232,40 +227,9 @@ def _factor(observation: Observation, mode: int) -> float:
     """What a record measures per metre of sea level in a mode."""
     if observation.quantity in ("sea level", "dynamic height"):
         return 1.0
-    modes, n2 = column_modes(observation.position)
+    modes, n2 = column_modes(*observation.position)
     gradient = observation.gradient_c_per_m
     if gradient is None:
         gradient = gradient_from_n2(float(np.interp(observation.depth_m, *n2)))
     row = responses(observation.quantity, observation.depth_m, modes, gradient)
     return float(row[list(modes.mode).index(mode)])
-
-
-def column_modes(position: Position) -> tuple[VerticalModes, tuple[Array, Array]]:
-    """Vertical modes 0 to 3 of the packaged ocean at a place, and its depths and N².
-
-    Parameters
-    ----------
-    position : (lon, lat)
-        Degrees.
-
-    Returns
-    -------
-    VerticalModes
-    (depth, n2) : pair of ndarray
-        m and 1/s².
-
-    Raises
-    ------
-    InputError
-        If no deep water is known there.
-    """
-    depth = float(packaged_bathymetry().sample(*np.atleast_2d(position).T)[0])
-    bottom = max(depth, HIGHEST_SHELF) if np.isfinite(depth) else HIGHEST_SHELF
-    profile = packaged_climatology().profiles(*position, minimum_depth=bottom / 2.0)
-    n2 = profile.n2[0]
-    if not np.isfinite(n2).all():
-        raise InputError(
-            f"position [{position[0]:g}, {position[1]:g}]: the packaged climatology has no water "
-            "there; move the record, or leave its vertical structure out"
-        )
-    return vertical_modes(n2, profile.depth, bottom, 3), (profile.depth, n2)
