@@ -84,6 +84,25 @@ def _ragged() -> dict[str, list[object]]:
     return table
 
 
+def _instruments() -> dict[str, list[object]]:
+    """The first target is a mooring with two instruments, the lower one on the bottom."""
+    return {
+        "instrument_target": [0, 0, 0, 0], "instrument_mode": [0, 0, 1, 1],
+        "instrument_depth_m": [100.0, 900.0] * 2, "instrument_offshore_km": [60.0] * 4,
+        "instrument_bottom_m": [800.0] * 4,
+        "instrument_structure": ["flat bottom", "flat bottom, below the bottom",
+                                 "section", "section, below the bottom"],
+        "instrument_displacement_m_per_cm": [-1.18, math.nan, -2.05, math.nan],
+        "instrument_displacement_lag_degrees": [9.0, math.nan, 0.0, math.nan],
+        "instrument_current_cm_s_per_cm": [3.03, math.nan, -2.25, math.nan],
+        "instrument_current_lag_degrees": [-41.0, math.nan, 0.0, math.nan],
+        "instrument_towards_degrees": [138.0] * 4,
+        "instrument_bottom_pressure_cm_per_cm": [0.65, 0.65, -0.24, -0.24],
+        "instrument_bottom_pressure_lag_degrees": [9.0, 9.0, 0.0, 0.0],
+        "instrument_best_depth_m": [400.0, 400.0, 342.0, 342.0],
+    }  # fmt: skip
+
+
 def build_arrivals() -> xr.Dataset:
     """Arrivals made by hand: Callao in two modes, Acapulco in the first, an inland target."""
     table = _ragged()
@@ -124,6 +143,7 @@ def build_arrivals() -> xr.Dataset:
         **{name: column for name, column in table.items() if name not in ("target", "mode")
            and not name.startswith("target_")},
     }  # fmt: skip
+    values |= _instruments()
     time = np.arange(0.0, 120.0, 0.5)
     peak = np.nan_to_num(rows["peak_time_days"])[..., None]
     wave = np.where(peak > 0.0, 0.5 * np.exp(-(((time - peak) / 3.0) ** 2)), 0.0)

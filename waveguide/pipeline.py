@@ -19,6 +19,7 @@ from waveguide.propagation.answers import ModeAnswer, mode_answer
 from waveguide.propagation.arrivals import REACHED, Arrival, mode_arrivals
 from waveguide.propagation.dispersion import interior_damping_rate
 from waveguide.propagation.modes import atlas_mode, friction_of_steps, uniform_mode
+from waveguide.propagation.moorings import UNIFORM, MooringAnswer, Water, mooring_answer
 from waveguide.propagation.sources import (
     SourceFunction,
     boxcar_burst,
@@ -128,7 +129,9 @@ def study(scenario: Scenario, progress: Progress | None = None) -> Study:
         answers[mode] = mode_answer(
             network, carried, found[mode], source, window, omega, conditions[mode]
         )
-    dataset = arrivals_dataset(scenario, answers, arrivals_attributes(scenario, used_files()))
+    moorings = _moorings(scenario, guides, found)
+    attributes = arrivals_attributes(scenario, used_files())
+    dataset = arrivals_dataset(scenario, answers, attributes, moorings)
     networks = {mode: network for mode, (network, _) in guides.items()}
     return Study(source, omega, networks, answers, conditions, dataset)
 
@@ -194,6 +197,47 @@ def _conditions(scenario: Scenario, network: Network, mode: ModeAtNodes) -> Cond
     friction = friction_of_steps(network, mode, scenario.waves.drag_m_s)
     damping = damping_rate(scenario.waves.damping_days, mode)
     return Conditions(friction=friction, damping=damping)
+
+
+def _moorings(
+    scenario: Scenario, guides: dict[int, tuple[Network, ModeAtNodes]],
+    found: dict[int, list[Arrival]],
+) -> dict[tuple[int, int], MooringAnswer]:
+    """What the targets that are moorings see, by the indices of target and mode."""
+    answers = {}
+    named = [(t, target) for t, target in enumerate(scenario.targets) if target.depth_m]
+    for column, (number, (network, mode)) in enumerate(guides.items() if named else ()):
+        water = _water(scenario, number)
+        for place, target in named:
+            if water is None:
+                answers[place, column] = MooringAnswer(UNIFORM, np.nan, np.nan, None)
+                continue
+            distance = None if target.offshore_km is None else 1e3 * target.offshore_km
+            answers[place, column] = mooring_answer(
+                network, mode, found[number][place], _omega(scenario), water, distance,
+                target.depth_m,
+            )
+    return answers
+
+
+def _water(scenario: Scenario, mode: int) -> Water | None:
+    """Depths and stratification below the network of a mode, None for a uniform speed."""
+    ocean = scenario.ocean
+    if ocean.phase_speed_m_s is not None:
+        return None
+    depths, columns = packaged_bathymetry(), packaged_climatology()
+    if ocean.source == "packaged":
+        return Water(depths, columns, packaged_network(family_of(mode))[1].depth)
+    from waveguide.network.own import own_atlas
+    from waveguide.ocean.bathymetry import read_bathymetry
+    from waveguide.ocean.hydrography import read_climatology
+
+    atlas = own_atlas(family_of(mode), ocean.bathymetry, ocean.climatology, ocean.temperature)
+    if ocean.bathymetry is not None:
+        depths = read_bathymetry(ocean.bathymetry)
+    if ocean.climatology is not None:
+        columns = read_climatology(ocean.climatology, temperature=ocean.temperature)
+    return Water(depths, columns, atlas.depth)
 
 
 def source_box(scenario: Scenario) -> Box:

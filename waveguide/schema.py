@@ -83,6 +83,7 @@ def _number(dims: tuple[str, ...], long_name: str, units: str) -> Variable:
 
 _ROW = ("target", "mode")
 _ROUTE, _LEG, _VERTEX = ("route",), ("leg",), ("vertex",)
+_INSTRUMENT = ("instrument",)
 
 ARRIVALS: dict[str, Variable] = {
     "target": Variable(("target",), "text", "name of the target", coordinate=True),
@@ -183,6 +184,40 @@ ARRIVALS: dict[str, Variable] = {
         ("vertex", "fate"), "share of the source's energy taken up to the vertex, by fate", "1"
     ),
     "fate_name": Variable(("fate",), "text", "what becomes of energy on the way", coordinate=True),
+    "instrument_target": Variable(_INSTRUMENT, "integer", "index of the instrument's target"),
+    "instrument_mode": Variable(_INSTRUMENT, "integer", "index of the mode along mode"),
+    "instrument_depth_m": _number(_INSTRUMENT, "depth of the instrument", "m"),
+    "instrument_offshore_km": _number(
+        _INSTRUMENT, "distance of the mooring from the shore, or from the equator", "km"
+    ),
+    "instrument_bottom_m": _number(_INSTRUMENT, "depth of the water at the mooring", "m"),
+    "instrument_structure": Variable(
+        _INSTRUMENT, "text", "section, flat bottom or equator, or why there is no structure"
+    ),
+    "instrument_displacement_m_per_cm": _number(
+        _INSTRUMENT, "rise of isopycnals per sea level on the guide", "m cm-1"
+    ),
+    "instrument_displacement_lag_degrees": _number(
+        _INSTRUMENT, "phase by which it lags sea level on the guide", "degree"
+    ),
+    "instrument_current_cm_s_per_cm": _number(
+        _INSTRUMENT, "current in the direction of travel per sea level on the guide", "cm s-1 cm-1"
+    ),
+    "instrument_current_lag_degrees": _number(
+        _INSTRUMENT, "phase by which it lags sea level on the guide", "degree"
+    ),
+    "instrument_towards_degrees": _number(
+        _INSTRUMENT, "azimuth of travel, to which a positive current flows", "degree"
+    ),
+    "instrument_bottom_pressure_cm_per_cm": _number(
+        _INSTRUMENT, "bottom pressure, as height of water, per sea level on the guide", "cm cm-1"
+    ),
+    "instrument_bottom_pressure_lag_degrees": _number(
+        _INSTRUMENT, "phase by which it lags sea level on the guide", "degree"
+    ),
+    "instrument_best_depth_m": _number(
+        _INSTRUMENT, "depth where the mode stands out most from internal waves", "m"
+    ),
     "time": Variable(("time",), "date", "date of the waveforms (UTC)", None, "time", True),
     "time_days": _number(("time",), "time from the start of the event", "day"),
     "source_waveform": _number(("time",), "sea level at the source over its peak", "1"),
@@ -226,6 +261,8 @@ _PARENTS = {
     "route_mode": "mode",
     "leg_route": "route",
     "vertex_leg": "leg",
+    "instrument_target": "target",
+    "instrument_mode": "mode",
 }
 
 

@@ -20,7 +20,7 @@ from waveguide.schema import check
 ALL = get_args(Format)
 FILES = [
     "arrivals.csv", "arrivals.nc", "budget.csv", "distance_time.pdf", "distance_time.png",
-    "legs.csv", "map.pdf", "map.png", "routes.geojson", "waveforms.csv", "waveforms.pdf",
+    "legs.csv", "map.pdf", "map.png", "moorings.csv", "routes.geojson", "waveforms.csv", "waveforms.pdf",
     "waveforms.png",
 ]  # fmt: skip
 
@@ -53,7 +53,8 @@ def test_a_second_run_replaces_its_files_and_keeps_others(arrivals, tmp_path):
     (tmp_path / "arrivals.csv").write_text("before", encoding="utf-8")
     with output_folder(tmp_path) as folder:
         write_outputs(arrivals, folder, ["csv"])
-    assert sorted(os.listdir(tmp_path)) == ["arrivals.csv", "legs.csv", "notes.txt"]
+    names = ["arrivals.csv", "legs.csv", "moorings.csv", "notes.txt"]
+    assert sorted(os.listdir(tmp_path)) == names
     assert (tmp_path / "arrivals.csv").read_text().startswith("target,")
 
 

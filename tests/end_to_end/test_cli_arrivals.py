@@ -60,7 +60,7 @@ def test_out_writes_what_the_scenario_asks_for(run, tmp_path):
     assert names == {
         "arrivals.csv", "legs.csv", "arrivals.nc", "routes.geojson", "map.png", "map.pdf",
         "waveforms.csv", "waveforms.png", "waveforms.pdf", "distance_time.png",
-        "distance_time.pdf", "budget.csv",
+        "distance_time.pdf", "budget.csv", "moorings.csv",
     }  # fmt: skip
 
 

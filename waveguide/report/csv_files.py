@@ -19,6 +19,10 @@ _ROW = [name for name, v in ARRIVALS.items() if v.dims == ("target", "mode")]
 _PLACE = ["target_longitude", "target_latitude"]
 _ROUTE = ["route_kind", "route_via"]
 _LEG = [name for name, v in ARRIVALS.items() if v.dims == ("leg",) and name != "leg_route"]
+_INSTRUMENT = [
+    name for name, v in ARRIVALS.items()
+    if v.dims == ("instrument",) and name not in ("instrument_target", "instrument_mode")
+]
 
 _FORMULA = ("=", "+", "-", "@")
 """First characters by which a spreadsheet takes a text for a formula."""
@@ -27,8 +31,8 @@ _FORMULA = ("=", "+", "-", "@")
 def write_csv(dataset: xr.Dataset, folder: Path) -> None:
     """Write ``arrivals.csv``, a line for each target and mode, and ``legs.csv``, one for each leg.
 
-    Missing numbers are empty; a text that a spreadsheet would run as a formula starts with an
-    apostrophe.
+    Where targets are moorings ``moorings.csv`` has a line for each instrument and mode. Missing
+    numbers are empty; a text that a spreadsheet would run as a formula starts with an apostrophe.
 
     Parameters
     ----------
@@ -38,6 +42,9 @@ def write_csv(dataset: xr.Dataset, folder: Path) -> None:
     """
     write_rows(folder / "arrivals.csv", ["target", *_PLACE, "mode", *_ROW], _arrival_rows(dataset))
     write_rows(folder / "legs.csv", ["target", "mode", *_ROUTE, "leg", *_LEG], _leg_rows(dataset))
+    if dataset.sizes["instrument"]:
+        header = ["target", "mode", *(name.removeprefix("instrument_") for name in _INSTRUMENT)]
+        write_rows(folder / "moorings.csv", header, _instrument_rows(dataset))
 
 
 def write_rows(path: Path, header: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:
@@ -80,3 +87,12 @@ def _leg_rows(dataset: xr.Dataset) -> Iterator[list[Any]]:
         head += [dataset[name].values[route] for name in _ROUTE]
         for number, leg in enumerate(legs_of(dataset, route), start=1):
             yield [*head, number, *(dataset[name].values[leg] for name in _LEG)]
+
+
+def _instrument_rows(dataset: xr.Dataset) -> Iterator[list[Any]]:
+    for i in range(dataset.sizes["instrument"]):
+        whose = [
+            dataset[dim].values[dataset[f"instrument_{dim}"].values[i]]
+            for dim in ("target", "mode")
+        ]
+        yield [*whose, *(dataset[name].values[i] for name in _INSTRUMENT)]

@@ -13,11 +13,13 @@ from waveguide.propagation.answers import ModeAnswer
 from waveguide.propagation.arrivals import REACHED, Arrival
 from waveguide.propagation.frequency_limits import Criticality
 from waveguide.propagation.legs import Leg
+from waveguide.propagation.moorings import MooringAnswer
 from waveguide.propagation.routes import Route
 from waveguide.propagation.step_response import FATES
 from waveguide.propagation.transfer import LegBudget
 from waveguide.propagation.validity import Validity
 from waveguide.propagation.waveform import ArrivalTimes, mode_shares
+from waveguide.report.instruments import instrument_columns
 from waveguide.schema import ARRIVALS, assemble, check
 
 if TYPE_CHECKING:
@@ -27,7 +29,8 @@ if TYPE_CHECKING:
 
 
 def arrivals_dataset(
-    scenario: Scenario, answers: Mapping[int, ModeAnswer], attributes: Mapping[str, Any]
+    scenario: Scenario, answers: Mapping[int, ModeAnswer], attributes: Mapping[str, Any],
+    moorings: Mapping[tuple[int, int], MooringAnswer],
 ) -> xr.Dataset:
     """Put arrivals into a Dataset that follows the schema.
 
@@ -38,6 +41,8 @@ def arrivals_dataset(
         With one arrival for each target of the scenario.
     attributes : mapping
         Global attributes.
+    moorings : mapping of (target, mode) to MooringAnswer
+        By index along both, for targets that are moorings.
 
     Returns
     -------
@@ -71,6 +76,7 @@ def arrivals_dataset(
     values.update({name: np.array(row).reshape(shape) for name, row in rows.items()})
     start = np.datetime64(scenario.event.start.replace(tzinfo=None), "ns")
     values.update(_waveforms(list(answers.values()), start))
+    values.update(instrument_columns(moorings, [target.depth_m for target in scenario.targets]))
     values["fate_name"] = FATES
     values["vertex_taken"] = np.reshape(values["vertex_taken"], (-1, len(FATES)))
     dataset = assemble(values, attributes)

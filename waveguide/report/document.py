@@ -14,6 +14,10 @@ if TYPE_CHECKING:
     import xarray as xr
 
 _ROW = [name for name, v in ARRIVALS.items() if v.dims == ("target", "mode")]
+_INSTRUMENT = [
+    name for name, v in ARRIVALS.items()
+    if v.dims == ("instrument",) and name not in ("instrument_target", "instrument_mode")
+]
 _TAKEN = ("lost_rossby", "lost_friction", "lost_damping", "lost_scattering", "other_ways")
 _EVENT = ("event_name", "event_start", "event_duration_days", "event_amplitude_m")
 _HEAD = ("scenario", "title", "summary", "period_days", "ocean", "source", "data_sha256", "caution")
@@ -68,7 +72,22 @@ def _arrival(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
         **_identity(dataset, target, mode),
         **{name: plain_value(dataset[name].values[target, mode]) for name in _ROW},
         "legs": _legs(dataset, routes[0]) if routes else [],
+        "at_depth": _at_depth(dataset, target, mode),
     }
+
+
+def _at_depth(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, Any]]:
+    """What the instruments of a mooring see of a mode, one entry for each depth."""
+    mine = (dataset["instrument_target"].values == target) & (
+        dataset["instrument_mode"].values == mode
+    )
+    return [
+        {
+            name.removeprefix("instrument_"): plain_value(dataset[name].values[i])
+            for name in _INSTRUMENT
+        }
+        for i in np.flatnonzero(mine)
+    ]
 
 
 def _alternative(dataset: xr.Dataset, route: int) -> dict[str, Any]:

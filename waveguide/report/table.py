@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.report.budget import budget_line, budget_text
+from waveguide.report.instruments import instruments_text
 from waveguide.report.layout import WIDTH, filled
 from waveguide.report.routes import legs_of, routes_of
 from waveguide.report.text import columns, pad, plain
@@ -47,6 +48,7 @@ def table(dataset: xr.Dataset, budget: bool = False) -> str:
     """
     rows = [(t, m) for t in range(dataset.sizes["target"]) for m in range(dataset.sizes["mode"])]
     parts = [_heading(dataset), _rows(dataset, rows), _routes(dataset, rows)]
+    parts.append(instruments_text(dataset))
     if budget:
         parts.append(budget_text(dataset))
     parts.append(_cautions(dataset, rows))

@@ -32,6 +32,9 @@ FASTEST_BAROCLINIC = 10.0
 FASTEST_BAROTROPIC = 350.0
 """√(gH) over the deepest trench, 11 km, is 329 m/s."""
 
+DEEPEST = 11000.0
+"""Depth of the deepest trench (m)."""
+
 Format = Literal["csv", "netcdf", "geojson", "map", "waveforms", "distance-time", "budget"]
 
 
@@ -95,6 +98,11 @@ def _existing_file(value: object, info: ValidationInfo) -> Path:
     return path
 
 
+def _listed(value: object) -> object:
+    """One number as a list of one."""
+    return (value,) if isinstance(value, int | float) and not isinstance(value, bool) else value
+
+
 def _storable(value: str) -> str:
     if "\0" in value:
         raise ValueError("a text must not hold the character NUL, which ends it in a NetCDF file")
@@ -131,6 +139,9 @@ Prose = Annotated[
 Position = Annotated[tuple[Number, Number], AfterValidator(_position)]
 Box = Annotated[tuple[Number, Number, Number, Number], AfterValidator(_box)]
 Moment = Annotated[datetime, BeforeValidator(_utc)]
+Depths = Annotated[
+    tuple[Annotated[Number, Field(ge=0.0, le=DEEPEST)], ...], BeforeValidator(_listed)
+]
 DataFile = Annotated[Path, BeforeValidator(_existing_file)]
 Mode = Annotated[int, Field(strict=True, ge=0, le=HIGHEST_MODE)]
 

@@ -16,6 +16,7 @@ from waveguide.scenario.fields import (
     Box,
     DataFile,
     Days,
+    Depths,
     Format,
     Mode,
     Moment,
@@ -95,10 +96,23 @@ class Target(Table):
     name : str
     position : (lon, lat)
         Degrees east and north.
+    depth_m : tuple of float
+        Depths of the instruments of a mooring (m, positive down); none for a gauge.
+    offshore_km : float or None
+        Distance of the mooring from the shore, or from the equator where it stands on that guide;
+        that of the position where None.
     """
 
     name: Name
     position: Position
+    depth_m: Depths = ()
+    offshore_km: Annotated[Number, Field(ge=0.0, le=2000.0)] | None = None
+
+    @model_validator(mode="after")
+    def _a_mooring_has_depths(self) -> Target:
+        if self.offshore_km is not None and not self.depth_m:
+            raise ValueError("offshore_km tells where a mooring stands; give its depth_m too")
+        return self
 
 
 class Waves(Table):

@@ -7,7 +7,7 @@ from typing import Annotated, Literal
 
 from pydantic import Field, model_validator
 
-from waveguide.scenario.fields import DataFile, Days, Name, Number, Position, Table
+from waveguide.scenario.fields import DEEPEST, DataFile, Days, Name, Number, Position, Table
 
 Quantity = Literal[
     "sea level",
@@ -17,9 +17,6 @@ Quantity = Literal[
     "alongshore velocity",
     "bottom pressure",
 ]
-
-DEEPEST = 11000.0
-"""Metres."""
 
 
 class Observation(Table):

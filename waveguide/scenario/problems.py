@@ -50,6 +50,8 @@ _WAY_OUT = {
     "targets": "write a [[targets]] table for each target, or targets_file at the top of the file",
     "targets.name": 'write a name of 1 to 120 characters, as in name = "Callao"',
     "targets.position": "write position = [longitude, latitude], in degrees east and north",
+    "targets.depth_m": "write depths in metres, positive down, as in depth_m = [50, 150]",
+    "targets.offshore_km": "write kilometres from the shore, as in offshore_km = 40",
     "waves": "write a [waves] table with modes and period_days",
     "waves.modes": "write a list of 0 (barotropic) and 1 to 3 (baroclinic), as in modes = [1, 2]",
     "waves.period_days": "write the dominant period in days, as in period_days = 20",
