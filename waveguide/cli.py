@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from waveguide.cli_planning import plan
+from waveguide.cli_planning import answer_with_page, plan, require_folder
 from waveguide.cli_records import compare, lookout
 from waveguide.cli_sections import atlas, section
 from waveguide.cli_wind import response
@@ -97,14 +97,19 @@ def arrivals(
     budget: Annotated[
         bool, typer.Option("--budget", help="Also print where the energy goes on every leg.")
     ] = False,
+    page: Annotated[
+        bool,
+        typer.Option("--page", help="Also write page.html, to move through in a browser (--out)."),
+    ] = False,
 ) -> None:
     """When, by which route and how strongly a signal reaches each target."""
     from waveguide.report.files import output_folder, write_outputs
     from waveguide.scenario import read_scenario
 
+    require_folder(page, out)
     question = read_scenario(scenario)
     with nullcontext() if out is None else output_folder(out) as folder:
-        answer = _answer(question)
+        answer = answer_with_page(question, folder) if page and folder else _answer(question)
         if folder is not None:
             write_outputs(answer, folder, question.output.formats)
     _show(answer, json, budget)

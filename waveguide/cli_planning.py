@@ -1,15 +1,20 @@
-"""The command that plans observations under uncertainty."""
+"""The command that plans observations under uncertainty, and the page that shows a plan."""
 
 from __future__ import annotations
 
 from contextlib import nullcontext
 from pathlib import Path
-from typing import Annotated
+from typing import TYPE_CHECKING, Annotated
 
 import typer
 
 from waveguide.cli_records import JSON, SCENARIO, print_json, say_where
 from waveguide.progress import Progress
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+    from waveguide.scenario import Scenario
 
 
 def plan(
@@ -31,7 +36,7 @@ def plan(
     with nullcontext() if out is None else output_folder(out) as folder:
         with Progress() as progress:
             answer = compute(question, progress=progress)
-        dataset = plan_dataset(question, answer)
+        dataset = plan_dataset(question, answer.study.dataset, answer.rows, answer.members)
         if folder is not None:
             write_plan(dataset, folder, question.output.formats)
     if json:
@@ -39,3 +44,27 @@ def plan(
     else:
         print(plan_table(dataset))
     say_where(out)
+
+
+def require_folder(page: bool, out: Path | None) -> None:
+    """Refuse a page without a folder to write it to."""
+    if page and out is None:
+        from waveguide.errors import InputError
+
+        raise InputError("--page: there is no folder to write the page to; name one with --out")
+
+
+def answer_with_page(question: Scenario, folder: Path) -> xr.Dataset:
+    """Arrivals of a scenario, written to ``page.html`` together with its plan."""
+    from waveguide.planning import plan as compute
+    from waveguide.report.page import write_page
+    from waveguide.report.plan_dataset import plan_dataset
+    from waveguide.route_sections import route_sections
+
+    with Progress() as progress:
+        answer = compute(question, progress=progress)
+        progress("page")
+        arrivals = answer.study.dataset
+        dataset = plan_dataset(question, arrivals, answer.rows, answer.members)
+        write_page(arrivals, dataset, route_sections(answer.study), folder)
+    return arrivals

@@ -17,61 +17,12 @@ from waveguide.pipeline import Study, study
 from waveguide.propagation.arrivals import REACHED, Arrival
 from waveguide.propagation.ensemble import Members, chance_window, members, sensitivity
 from waveguide.propagation.priors import INPUTS, Priors
-from waveguide.propagation.sampling import (
-    Percentile,
-    first_order_shares,
-    normal_sample,
-    percentiles,
-)
+from waveguide.propagation.row_plan import SHARES, RowPlan
+from waveguide.propagation.sampling import first_order_shares, normal_sample, percentiles
 from waveguide.scenario import Scenario
 
 Array = NDArray[np.float64]
 Progress = Callable[[str], None]
-
-SHARES = np.array([0.1, 0.5, 0.9])
-"""P10, P50 and P90."""
-
-
-@dataclass(frozen=True)
-class RowPlan:
-    """What one target can expect of one mode.
-
-    Attributes
-    ----------
-    front, half_height, peak, width : Percentile
-        Times from the stated start of the event, and duration above half height (s), at `SHARES`.
-    ratio : ndarray, shape (3,)
-        Peak over that of the source.
-    height : ndarray, shape (3,)
-        The same with the error of the source's height: sea level if the source had 1 m.
-    window : (float, float)
-        When to look (s).
-    above : float
-        Chance that the peak is above the threshold; NaN where the amplitude is unknown.
-    time_shares, height_shares : ndarray, shape (inputs,)
-        Of the variance of the half-height time and of ln height.
-    speed : float
-        Length of the path over the time of the front (m/s).
-    radius : float
-        Deformation radius at the target (m): how far off the guide a mooring may be.
-    view : View or None
-        What to measure; None where no stratification is known.
-    """
-
-    front: Percentile
-    half_height: Percentile
-    peak: Percentile
-    width: Percentile
-    ratio: Array
-    height: Array
-    window: tuple[float, float]
-    above: float
-    time_shares: Array
-    height_shares: Array
-    speed: float
-    radius: float
-    view: View | None
-
 
 @dataclass(frozen=True)
 class Plan:

@@ -26,7 +26,9 @@ HOSTILE = [
 
 
 def question(**changes: object) -> Scenario:
-    places = [[-77.17, -12.06], [-72.12, -17.01], [-71.64, -33.02], [-70.42, -23.65], [-120.0, -40.0]]
+    places = [
+        [-77.17, -12.06], [-72.12, -17.01], [-71.64, -33.02], [-70.42, -23.65], [-120.0, -40.0],
+    ]  # fmt: skip
     document = {
         "title": "A plan",
         "event": {"position": [-81.3, -5.0], "start": "2031-03-05T00:00:00Z", "duration_days": 6,
@@ -38,10 +40,14 @@ def question(**changes: object) -> Scenario:
     return Scenario.model_validate(document)
 
 
+def planned(scenario: Scenario) -> xr.Dataset:
+    found = plan(scenario)
+    return plan_dataset(scenario, found.study.dataset, found.rows, found.members)
+
+
 @pytest.fixture(scope="module")
 def answer() -> xr.Dataset:
-    scenario = question()
-    return plan_dataset(scenario, plan(scenario))
+    return planned(question())
 
 
 def test_variables_are_those_declared(answer):
@@ -75,7 +81,7 @@ def test_without_an_amplitude_metres_and_chances_are_missing():
     scenario = question(
         event={"position": [-81.3, -5.0], "start": "2031-03-05T00:00:00Z", "duration_days": 6}
     )
-    found = plan_dataset(scenario, plan(scenario))
+    found = planned(scenario)
     assert np.isnan(found["peak_m"].values).all()
     assert np.isnan(found["chance_above_threshold"].values).all()
     assert np.isfinite(found["peak_ratio"].values[0]).all()
@@ -124,7 +130,7 @@ def test_netcdf_comes_back(answer, tmp_path):
 
 def test_a_seed_reproduces_a_plan_and_another_one_does_not():
     plans = [
-        plan_dataset(s, plan(s))
+        planned(s)
         for s in (question(), question(), question(uncertainty={"members": 2048, "seed": 9}))
     ]
     one, again, other = (p["half_height_days"].values[:4] for p in plans)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -14,7 +15,7 @@ from waveguide.schema import Variable, assemble
 if TYPE_CHECKING:
     import xarray as xr
 
-    from waveguide.planning import Plan, RowPlan
+    from waveguide.propagation.row_plan import RowPlan
     from waveguide.scenario import Scenario
 
 PERCENT = (10, 50, 90)
@@ -73,43 +74,50 @@ PLAN: dict[str, Variable] = {
 """Rows of targets and modes; what is not reached has missing numbers."""
 
 
-def plan_dataset(scenario: Scenario, plan: Plan) -> xr.Dataset:
+def plan_dataset(
+    scenario: Scenario, arrivals: xr.Dataset, rows: Mapping[tuple[int, int], RowPlan], members: int
+) -> xr.Dataset:
     """All numbers of a plan.
 
     Parameters
     ----------
     scenario : Scenario
-    plan : Plan
+    arrivals : xarray.Dataset
+        Of the scenario, without errors.
+    rows : mapping
+        What the ensemble says of each (target, mode) that is reached.
+    members : int
+        Size of the ensemble.
 
     Returns
     -------
     xarray.Dataset
         As declared in `PLAN`.
     """
-    arrivals = plan.study.dataset
     modes = [int(mode) for mode in arrivals["mode"].values]
     values: dict[str, Any] = {
         "target": arrivals["target"].values, "mode": modes, "percentile": PERCENT,
         "input": INPUTS, "quantity": QUANTITIES, "status": arrivals["status"].values,
     }  # fmt: skip
-    rows = [
-        [_row(scenario, plan.rows.get((target, mode))) for mode in modes]
+    lines = [
+        [_row(scenario, rows.get((target, mode))) for mode in modes]
         for target in range(arrivals.sizes["target"])
     ]
     for name in PLAN.keys() - values.keys():
-        values[name] = [[row[name] for row in line] for line in rows]
-    return assemble(values, _attributes(scenario, plan), PLAN)
+        values[name] = [[row[name] for row in line] for line in lines]
+    return assemble(values, _attributes(scenario, arrivals, members), PLAN)
 
 
-def _attributes(scenario: Scenario, plan: Plan) -> dict[str, Any]:
-    kept = dict(plan.study.dataset.attrs)
+def _attributes(scenario: Scenario, arrivals: xr.Dataset, members: int) -> dict[str, Any]:
+    kept = dict(arrivals.attrs)
     wanted = scenario.uncertainty
     errors = {k: v for k, v in wanted.model_dump().items() if k not in ("members", "seed")}
     return kept | {
         "history": f"waveguide plan {scenario.name}",
         "chance_percent": scenario.plan.chance_percent,
         "threshold_m": scenario.plan.threshold_m,
-        "members": plan.members,
+        "members": members,
+        "start_error_days": wanted.start_days,
         "seed": str(wanted.seed),
         "standard_deviations": "; ".join(f"{key} {value:g}" for key, value in errors.items()),
         "noise": "; ".join(f"{q} {n:g}" for q, n in zip(QUANTITIES, NOISE, strict=True)),
