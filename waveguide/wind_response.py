@@ -28,7 +28,8 @@ from waveguide.ocean.packaged import WIND_RECORD, packaged_file
 from waveguide.ocean.stratification import packaged_climatology
 from waveguide.pipeline import check_places, damping_rate
 from waveguide.propagation.losses import step_physics
-from waveguide.propagation.modes import ModeAtNodes, atlas_mode
+from waveguide.propagation.modes import ModeAtNodes, atlas_mode, friction_of_steps
+from waveguide.propagation.step_response import Conditions
 from waveguide.report.response_attributes import response_attributes
 from waveguide.scenario import WindPatch, WindScenario, WindStorm
 
@@ -45,9 +46,9 @@ NEAREST_WIND = 25e3
 LEAST_COVERED = 0.8
 """A record on a grid must cover this share of what lies upstream of a target."""
 
-LONGEST_STEP = SECONDS_PER_DAY
 COARSE = 5.0 * SECONDS_PER_DAY
-"""Means over longer than this lose gusts that stress depends on (s)."""
+"""Means over longer than this lose gusts that stress depends on, and the response is told at finer
+times than theirs (s)."""
 
 
 def response(question: WindScenario, progress: Progress | None = None) -> xr.Dataset:
@@ -103,8 +104,9 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
         network, mode, depth = _mode(question, number)
         damping = damping_rate(question.waves.damping_days, mode)
         physics = step_physics(network, mode, omega, damping, question.waves.drag_m_s)
+        friction = friction_of_steps(network, mode, question.waves.drag_m_s)
         answers[number] = mode_response(
-            network, mode, physics, packaged_bathymetry(),
+            network, mode, physics, Conditions(friction, damping), packaged_bathymetry(),
             [target.position for target in question.targets], omega, forcer,
         )
         networks[number] = network
@@ -172,7 +174,8 @@ def _step(question: WindScenario, time: Times) -> float:
     """Interval of the response (s)."""
     if question.wind.step_hours is not None:
         return question.wind.step_hours * 3600.0
-    return min(float(np.median(seconds(time[1:] - time[:-1]))), LONGEST_STEP)
+    interval = float(np.median(seconds(time[1:] - time[:-1])))
+    return interval if interval <= COARSE else interval / 6.0
 
 
 def _on_grid(question: WindScenario) -> tuple[Forcer, list[str], list[Path]]:
@@ -329,10 +332,5 @@ def _cautions(answer: TargetResponse) -> list[str]:
         found.append(
             f"the wind covers {100 * answer.covered:.0f} % of what lies upstream; the rest, such "
             f"as {_bare(answer, 1)}, is taken as calm"
-        )
-    if answer.critical > 0.1:
-        found.append(
-            f"{100 * answer.critical:.0f} % of the coast on the main way is below the critical "
-            "frequency: sea level there responds with less delay than is said"
         )
     return found

@@ -9,10 +9,10 @@ import numpy as np
 import pytest
 
 from waveguide.constants import BETA_EQUATOR, EARTH_RADIUS, REFERENCE_DENSITY, coriolis
+from waveguide.forcing.characteristics import add_delayed, held_on, taken_back
 from waveguide.forcing.drag import AIR_DENSITY, LAWS, wind_stress
 from waveguide.forcing.events import Patch, Storm, event_stress, within_reach
 from waveguide.forcing.projection import resampled, without
-from waveguide.forcing.response import add_delayed, held_on, taken_back
 from waveguide.forcing.samples import step_samples
 from waveguide.forcing.stations import StationWinds, station_forcing
 from waveguide.forcing.time_axis import uniform_times

@@ -6,7 +6,17 @@ from dataclasses import replace
 
 import numpy as np
 
+from waveguide.forcing.field import nodes_response
+from waveguide.forcing.influence import influence
 from waveguide.forcing.projection import Forcing
+from waveguide.forcing.response import (
+    Period,
+    RouteResponse,
+    contributions,
+    route_response,
+    windy_rows,
+)
+from waveguide.forcing.transfer import Place, wind_transfer
 from waveguide.geodesy import geodesic_length
 from waveguide.network.graph import Network, StepKind
 from waveguide.propagation.losses import StepPhysics, step_physics
@@ -61,6 +71,35 @@ def forcing_of(network: Network, stress, step: float) -> Forcing:
     return Forcing(np.arange(network.tail.size), time, step, stress, np.ones(network.tail.size))
 
 
+def along_characteristics(network, mode, physics, stress, step, node=None) -> np.ndarray:
+    """Response at one node, by the characteristics of the long wave."""
+    node = network.size - 1 if node is None else node
+    asked = np.zeros(network.size, bool)
+    asked[node] = True
+    forcing = forcing_of(network, stress, step)
+    found, level = nodes_response(network, mode, physics, forcing, asked, np.inf)
+    assert found.tolist() == [node]
+    return level[0].astype(float)
+
+
+def at_every_frequency(
+    network, mode, physics, conditions, stress, step, node=None, place=None
+) -> tuple[np.ndarray, RouteResponse]:
+    """Response at one node and along the way to it, summed over frequencies."""
+    node = network.size - 1 if node is None else node
+    place = place or Place(node, 1.0)
+    found = influence(network, mode, physics, node, place.factor, np.inf, place.beyond)
+    forcing = forcing_of(network, stress, step)
+    period = Period.of(forcing, float(found.delay.max()))
+    windy = windy_rows(found, forcing)
+    transfer = wind_transfer(network, mode, conditions, found, place, windy, period.few_omega)
+    one = np.zeros(found.step.size, np.int64)
+    level = period.series(contributions(transfer, found, forcing, period, one, 1))[0]
+    return level, route_response(
+        network, transfer, found, forcing, period, found.head_delay
+    )
+
+
 def branched_coast() -> Network:
     """A coast along 35°N that takes in another one and gives off a third; and a closed ring."""
     parts = [
@@ -82,3 +121,18 @@ def branched_coast() -> Network:
         length=geodesic_length(lon[tail], lat[tail], lon[head], lat[head]),
         gap=np.full(m, -1), passes=np.full(m, -1), gap_width=none, gap_length=none, gap_sill=none,
     )  # fmt: skip
+
+
+def eastern_ocean(width: float, north: float) -> Network:
+    """The equator over a width (m) up to a meridional coast that goes north (m)."""
+    east = np.degrees(np.linspace(0.0, width, 201) / 6.378137e6)
+    up = np.degrees(np.arange(0.0, north + 1.0, 30e3) / 6.3568e6)
+    lon = np.concatenate([east[:-1], np.full(up.size, east[-1])])
+    lat = np.concatenate([np.zeros(200), up])
+    network = line_network(lon, lat)
+    equatorial = np.arange(lon.size) < 200
+    return replace(
+        network, equatorial=equatorial, offshore=np.where(equatorial, np.nan, 270.0),
+        line=np.where(equatorial, 1, 0),
+        kind=np.where(equatorial[network.tail], int(StepKind.EQUATOR), int(StepKind.COAST)),
+    )

@@ -48,13 +48,14 @@ def integrate_guide(s, speed, growth, decay, source, times, substeps=4):
 
 
 def shallow_water_wind(
-    size, cells, coriolis, depth, gravity, stress, duration, step, damping=0.0
+    size, cells, coriolis, depth, gravity, stress, duration, step, damping=0.0,
+    sponges=(True, True),
 ):
     """Surface elevation (nt, ny, nx) of a rotating layer under wind, at rest before t = 0.
 
-    An Arakawa C grid, closed at y = 0 and y = Ly, with sponges at both ends in x; forward–backward
-    steps, the Coriolis terms alternating. `coriolis(y)` is f (1/s), `stress(x, y, t)` the
-    x-component (Pa) at u points.
+    An Arakawa C grid, closed on all sides, with sponges at those ends in x that `sponges` names;
+    forward–backward steps, the Coriolis terms alternating. `coriolis(y)` is f (1/s),
+    `stress(x, y, t)` the x-component (Pa) at u points.
     """
     (lx, ly), (nx, ny) = size, cells
     dx, dy = lx / nx, ly / ny
@@ -64,7 +65,9 @@ def shallow_water_wind(
     u, v, eta = np.zeros((ny, nx + 1)), np.zeros((ny + 1, nx)), np.zeros((ny, nx))
     edge = 10
     sponge = np.zeros(nx)
-    sponge[:edge] = sponge[-edge:][::-1] = 2.0 / step * (1 - np.arange(edge) / edge) ** 3 * 0.1
+    layer = 0.2 / step * (1 - np.arange(edge) / edge) ** 3
+    sponge[:edge] = layer if sponges[0] else 0.0
+    sponge[-edge:] = layer[::-1] if sponges[1] else 0.0
     rub_c, rub_u = sponge + damping, np.interp(x_u, (np.arange(nx) + 0.5) * dx, sponge) + damping
     kept = []
 

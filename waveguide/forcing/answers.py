@@ -12,20 +12,23 @@ from waveguide.constants import SECONDS_PER_DAY
 from waveguide.forcing.influence import Influence, influence
 from waveguide.forcing.projection import Forcing
 from waveguide.forcing.response import (
+    Period,
     RouteResponse,
     contributions,
     covered_by_group,
     covered_share,
-    main_way,
     route_response,
     spin_up,
+    windy_rows,
 )
 from waveguide.forcing.stretches import Stretch, cut_into_stretches
+from waveguide.forcing.transfer import Place, group_delays, wind_transfer
 from waveguide.network.attach import Ties, point_box, tie
-from waveguide.network.graph import Network, StepKind
+from waveguide.network.graph import Network
 from waveguide.ocean.bathymetry import Bathymetry
-from waveguide.propagation.losses import StepPhysics, critical_share
+from waveguide.propagation.losses import StepPhysics
 from waveguide.propagation.modes import ModeAtNodes
+from waveguide.propagation.step_response import Conditions
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -65,11 +68,9 @@ class TargetResponse:
     way : RouteResponse or None
         Along the main way.
     spin_up : float
-        Delay within which 95 % of the influence lies (s).
+        Delay of the long wave within which 95 % of the influence lies (s).
     covered : float
         Share of the influence that the wind record covers.
-    critical : float
-        Share of the coastal way below the critical frequency.
     """
 
     status: str
@@ -83,7 +84,6 @@ class TargetResponse:
     way: RouteResponse | None
     spin_up: float
     covered: float
-    critical: float
 
 
 @dataclass(frozen=True)
@@ -102,8 +102,8 @@ class ModeResponse:
 
 
 def mode_response(
-    network: Network, mode: ModeAtNodes, physics: StepPhysics, depths: Bathymetry,
-    targets: Sequence[tuple[float, float]], omega: float, forcer: Forcer,
+    network: Network, mode: ModeAtNodes, physics: StepPhysics, conditions: Conditions,
+    depths: Bathymetry, targets: Sequence[tuple[float, float]], omega: float, forcer: Forcer,
 ) -> ModeResponse:
     """Response of one mode at every target.
 
@@ -112,7 +112,9 @@ def mode_response(
     network : Network
     mode : ModeAtNodes
     physics : StepPhysics
-        At the dominant frequency.
+        At the dominant frequency, which tells the ways upstream.
+    conditions : Conditions
+        Friction and damping.
     depths : Bathymetry
     targets : sequence of (lon, lat)
         Degrees.
@@ -125,14 +127,23 @@ def mode_response(
     ModeResponse
     """
     ties = [tie(network, mode.speed, point_box(*place), depths) for place in targets]
-    reach = [_influence(network, mode, physics, tied) for tied in ties]
+    places = [_place(mode, tied) for tied in ties]
+    reach = [
+        None if place is None else influence(
+            network, mode, physics, place.node, place.factor, LONGEST_MEMORY, place.beyond
+        )
+        for place in places
+    ]
     asked = [found.step[found.weight > 0.0] for found in reach if found is not None]
     steps = np.unique(np.concatenate([np.zeros(0, np.int64), *asked]))
     forcing = forcer(network, mode.speed, steps)
-    answers = [
-        _answer(network, mode, tied, found, forcing, omega)
-        for tied, found in zip(ties, reach, strict=True)
-    ]
+    answers = []
+    for tied, place, found in zip(ties, places, reach, strict=True):
+        if place is None or found is None or not found.weight.any():
+            answers.append(_silent(tied, found, forcing.time.size))
+        else:
+            answers.append(_answer(network, mode, conditions, place, found, forcing, omega,
+                                   float(tied.distance[_best(tied)])))
     return ModeResponse(forcing, answers)
 
 
@@ -141,41 +152,35 @@ def _best(tied: Ties) -> int:
     return int(np.lexsort((tied.distance, -tied.factor))[0])
 
 
-def _influence(
-    network: Network, mode: ModeAtNodes, physics: StepPhysics, tied: Ties
-) -> Influence | None:
+def _place(mode: ModeAtNodes, tied: Ties) -> Place | None:
+    """Where on the guide a target is, if it is on it."""
     if not tied.node.size:
         return None
     best = _best(tied)
-    node, factor = int(tied.node[best]), float(tied.factor[best])
-    beyond = float(tied.along[best] / mode.speed[node])
-    return influence(network, mode, physics, node, factor, LONGEST_MEMORY, beyond)
+    node = int(tied.node[best])
+    return Place(node, float(tied.factor[best]), float(tied.along[best] / mode.speed[node]))
 
 
 def _answer(
-    network: Network, mode: ModeAtNodes, tied: Ties, found: Influence | None, forcing: Forcing,
-    omega: float,
+    network: Network, mode: ModeAtNodes, conditions: Conditions, place: Place, found: Influence,
+    forcing: Forcing, omega: float, distance: float,
 ) -> TargetResponse:
     """Sum up what lies upstream of one target."""
-    if found is None or not found.weight.any():
-        return _silent(tied, found, forcing.time.size)
-    stretches, of_row = cut_into_stretches(network, found)
-    parts = contributions(found, forcing, of_row, len(stretches))
-    best = _best(tied)
-    way = found.step[main_way(found)]
+    windy = windy_rows(found, forcing)
+    period = Period.of(forcing, float(found.delay[windy].max(initial=0.0)))
+    transfer = wind_transfer(network, mode, conditions, found, place, windy, period.few_omega)
+    told = group_delays(transfer, found, omega)
+    stretches, of_row = cut_into_stretches(network, told)
+    parts = period.series(
+        contributions(transfer, found, forcing, period, of_row, len(stretches))
+    )
     return TargetResponse(
-        status=RESPONDS, node=int(tied.node[best]), factor=float(tied.factor[best]),
-        distance=float(tied.distance[best]), sea_level=parts.sum(axis=0),
-        stretches=stretches, by_stretch=parts,
+        status=RESPONDS, node=place.node, factor=place.factor, distance=distance,
+        sea_level=parts.sum(axis=0), stretches=stretches, by_stretch=parts,
         stretch_covered=covered_by_group(found, forcing, of_row, len(stretches)),
-        way=route_response(network, found, forcing),
+        way=route_response(network, transfer, found, forcing, period, told.head_delay),
         spin_up=spin_up(found), covered=covered_share(found, forcing),
-        critical=critical_share(network, way[_on_coast(network, way)], mode.speed, omega),
     )  # fmt: skip
-
-
-def _on_coast(network: Network, steps: Index) -> NDArray[np.bool_]:
-    return np.asarray(network.kind[steps] == StepKind.COAST)
 
 
 def _silent(tied: Ties, found: Influence | None, count: int) -> TargetResponse:
@@ -185,5 +190,5 @@ def _silent(tied: Ties, found: Influence | None, count: int) -> TargetResponse:
         status = OFF_GUIDE if np.isfinite(tied.nearest) else NOT_CARRIED
     return TargetResponse(
         status, -1, float("nan"), tied.nearest, np.full(count, np.nan), [],
-        np.zeros((0, count)), np.zeros(0), None, float("nan"), float("nan"), float("nan"),
+        np.zeros((0, count)), np.zeros(0), None, float("nan"), float("nan"),
     )

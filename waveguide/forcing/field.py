@@ -18,9 +18,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from waveguide.forcing.characteristics import add_delayed, held_on, taken_back
 from waveguide.forcing.influence import FAINTEST, search_upstream, step_increment
 from waveguide.forcing.projection import Forcing
-from waveguide.forcing.response import add_delayed, held_on, taken_back
 from waveguide.network.graph import Network
 from waveguide.propagation.losses import StepPhysics
 from waveguide.propagation.modes import ModeAtNodes

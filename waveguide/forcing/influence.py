@@ -30,9 +30,11 @@ summed over all steps upstream. So an impulse of wind over one step arrives as t
 Approximations. From each step the strongest way to the target is taken; what takes another way
 round an island is left out. Wind makes no signal in straits and on the hop to a facing coast.
 Rossby waves that the wind makes in the interior, and their reflection at western boundaries, are
-left out: what is computed is what the wind does along the guide itself. Losses are those of the
-dominant period, delays those of the long wave. On a western boundary within one L_e of the
-equator, where P → 0 and the relation of a coast fails, wind counts as it would at one L_e.
+left out: what is computed is what the wind does along the guide itself. Here losses are those of
+the dominant period and delays those of the long wave, which is what tells where wind counts;
+:mod:`waveguide.forcing.transfer` has them at every frequency. On a western boundary within one
+L_e of the equator, where P → 0 and the relation of a coast fails, wind counts as it would at one
+L_e.
 
 References
 ----------
@@ -43,6 +45,7 @@ Cane & Sarachik (1977), J. Mar. Res. 35, 395 (projection on the equatorial Kelvi
 from __future__ import annotations
 
 import heapq
+import math
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -114,7 +117,8 @@ def step_increment(network: Network, mode: ModeAtNodes, physics: StepPhysics) ->
     tail, head = network.tail, network.head
     coast = (network.kind == StepKind.COAST) & np.isfinite(physics.time)
     equator = (network.kind == StepKind.EQUATOR) & np.isfinite(physics.time)
-    value, potential = mode.coastal_value, _forced_potential(network, mode, physics)
+    value = mode.coastal_value
+    potential = physics.potential * lifted_near_equator(network, mode)
     increment = np.zeros(tail.size)
     # On a coast the middle of the step; half of its losses lie behind.
     f2 = value[tail] * value[head]
@@ -128,13 +132,22 @@ def step_increment(network: Network, mode: ModeAtNodes, physics: StepPhysics) ->
     return increment * network.length / (REFERENCE_DENSITY * GRAVITY)
 
 
-def _forced_potential(network: Network, mode: ModeAtNodes, physics: StepPhysics) -> Array:
-    """P, on western boundaries not less than it is one L_e from the equator."""
+def lifted_near_equator(network: Network, mode: ModeAtNodes) -> Array:
+    """Factor of P at every node where wind acts: see the module on western boundaries.
+
+    Parameters
+    ----------
+    network : Network
+    mode : ModeAtNodes
+
+    Returns
+    -------
+    ndarray, shape (n,)
+    """
     c = np.where(np.isfinite(mode.speed), mode.speed, 1.0)
     distance = np.abs(coriolis(network.lat)) / np.sqrt(BETA_EQUATOR * c)
     near = np.isfinite(network.offshore) & ~poleward_nodes(network) & (distance < _NEAREST)
-    lift = np.where(near, _NEAREST / np.maximum(distance, 0.05), 1.0)
-    return np.asarray(physics.potential * lift)
+    return np.where(near, _NEAREST / np.maximum(distance, 0.05), 1.0)
 
 
 def influence(
@@ -238,8 +251,10 @@ def search_upstream(
         done[here] = True
         for step in into[first[here] : first[here + 1]]:
             onward, later = loss + costs[step], delay + times[step]
+            if not (math.isfinite(onward) and math.isfinite(later)):
+                continue
+            rows.append((step, parent, loss, delay, distance))
             if onward <= most and later <= longest:
-                rows.append((step, parent, loss, delay, distance))
                 way = distance + lengths[step]
                 heapq.heappush(queue, (onward, later, way, tails[step], len(rows) - 1))
     table = np.array(rows, dtype=float).reshape(-1, 5).T

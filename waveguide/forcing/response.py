@@ -1,27 +1,39 @@
 """Sea level at a target as the sum of what the wind did upstream, each part with its delay.
 
-The ocean is at rest before the first time of the record. Until the longest delay has passed the
-response misses the wind before that (spin-up); `spin_up` says when 95 % of it is there.
-Between two times the stress is taken as a straight line, so that a delay is exact for it.
+The sum over steps is done at every frequency (:mod:`waveguide.forcing.transfer`) and turned into a
+series by a discrete Fourier transform. The ocean is at rest before the first time of the record:
+behind its end the record is filled up with calm for as long as anything upstream takes to arrive,
+so that nothing comes round to its beginning. Until the longest delay has passed the response
+misses the wind before the record (spin-up); `spin_up` says when 95 % of it is there.
 """
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.fft import irfft, next_fast_len, rfft, rfftfreq
+from scipy.sparse import csr_array
 
 from waveguide.forcing.influence import Influence
 from waveguide.forcing.projection import Forcing
+from waveguide.forcing.transfer import WindTransfer, transfer_frequencies
 from waveguide.network.graph import Network
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
+Spectra = NDArray[np.complex64]
 
 SPUN_UP = 0.95
 MOST_POSITIONS = 240
 """Positions along a route at which the response is told."""
+
+LEAST_GAIN = 1e-4
+"""The response is told where the target gets at least this share of it at every frequency."""
+
+_ROWS_AT_ONCE = 512
 
 
 @dataclass(frozen=True)
@@ -35,7 +47,7 @@ class RouteResponse:
     distance : ndarray, shape (k,)
         Way to the target (m).
     delay : ndarray, shape (k,)
-        Time to the target (s).
+        Time of the energy at the dominant period to the target (s).
     stress : ndarray, shape (k, nt)
         Stress over the step that ends at the node (Pa), NaN where no wind counts.
     sea_level : ndarray, shape (k, nt)
@@ -49,75 +61,122 @@ class RouteResponse:
     sea_level: Array
 
 
-def add_delayed(into: Array, series: NDArray[np.floating], weight: float, lag: float) -> None:
-    """Add weight × series(t − lag) to `into`, in place; nothing before the first value.
+@dataclass(frozen=True)
+class Period:
+    """The periodic axis of time of a transform.
 
-    Parameters
+    Attributes
     ----------
-    into : ndarray, shape (nt,)
-        May be longer than `series`.
-    series : ndarray, shape (ns,)
-    weight : float
-    lag : float
-        In intervals of time, ≥ 0.
+    step : float
+        s.
+    times : int
+        Of the record.
+    count : int
+        Of the period; calm fills it up.
     """
-    whole = int(lag)
-    share = lag - whole
-    if share == 0.0:
-        room = min(into.size - whole, series.size)
-        if room > 0:
-            into[whole : whole + room] += weight * series[:room]
-        return
-    room = min(into.size - whole - 1, series.size - 1)
-    if room > 0:
-        part = into[whole + 1 : whole + 1 + room]
-        part += (weight * (1.0 - share)) * series[1 : room + 1]
-        part += (weight * share) * series[:room]
+
+    step: float
+    times: int
+    count: int
+
+    @classmethod
+    def of(cls, forcing: Forcing, longest: float) -> Period:
+        """Long enough for delays up to `longest` (s) and half as much again."""
+        calm = int(np.ceil(1.5 * longest / forcing.step)) + forcing.time.size // 8 + 2
+        times = forcing.time.size
+        return cls(forcing.step, times, int(next_fast_len(times + calm, real=True)))
+
+    @property
+    def omega(self) -> Array:
+        """Frequencies of the transform (rad/s), shape (count // 2 + 1,)."""
+        return np.asarray(2.0 * np.pi * rfftfreq(self.count, self.step))
+
+    @property
+    def few_omega(self) -> Array:
+        """Frequencies at which weights are computed (rad/s)."""
+        return transfer_frequencies(self.step, self.count)
+
+    def series(self, spectra: NDArray[np.complexfloating]) -> Array:
+        """Series of the record's length of spectra (…, nω)."""
+        return np.asarray(irfft(spectra, self.count, axis=-1)[..., : self.times], float)
 
 
-def contributions(influence: Influence, forcing: Forcing, group: Index, count: int) -> Array:
-    """Sea level at the target by groups of steps.
+def windy_rows(influence: Influence, forcing: Forcing) -> NDArray[np.bool_]:
+    """Rows of an influence over which any wind blows, shape (n,)."""
+    at, known = _rows_of_forcing(influence, forcing)
+    blows = np.append(np.any(forcing.stress != 0.0, axis=1), False)
+    return np.asarray(known & blows[at] & (influence.weight > 0.0))
+
+
+def contributions(
+    transfer: WindTransfer, influence: Influence, forcing: Forcing, period: Period, group: Index,
+    count: int,
+) -> Spectra:
+    """Spectra of sea level at the target by groups of steps.
 
     Parameters
     ----------
+    transfer : WindTransfer
     influence : Influence
-        k rows.
+        n rows.
     forcing : Forcing
-        Of all the steps of `influence` on which wind counts.
-    group : ndarray of int, shape (k,)
+    period : Period
+    group : ndarray of int, shape (n,)
         Group of each row, −1 for none.
     count : int
         Number of groups.
 
     Returns
     -------
-    ndarray, shape (count, nt)
-        m; the sum over groups is the response.
+    ndarray of complex64, shape (count, nω)
+        Of the transform; the sum over groups is the response (m).
     """
-    result = np.zeros((count, forcing.time.size))
-    rows = np.nonzero((influence.weight > 0.0) & (group >= 0))[0]
-    at = np.searchsorted(forcing.steps, influence.step[rows])
-    for row, series in zip(rows.tolist(), at.tolist(), strict=True):
-        lag = influence.delay[row] / forcing.step
-        add_delayed(result[group[row]], forcing.stress[series], influence.weight[row], lag)
+    result = np.zeros((count, period.omega.size), np.complex64)
+    for rows, part in _parts(transfer, influence, forcing, period):
+        of = group[rows]
+        used = of >= 0
+        chosen = csr_array(
+            (np.ones(int(used.sum()), np.float32), (of[used], np.nonzero(used)[0])),
+            shape=(count, rows.size),
+        )
+        result += chosen @ part
     return result
 
 
-def target_response(influence: Influence, forcing: Forcing) -> Array:
-    """Sea level at the target.
+def _parts(
+    transfer: WindTransfer, influence: Influence, forcing: Forcing, period: Period
+) -> Iterator[tuple[Index, Spectra]]:
+    """Some rows at a time with the spectra of what each of them makes."""
+    omega, between = period.omega, _between(transfer.omega, period.omega)
+    at, _ = _rows_of_forcing(influence, forcing)
+    for begin in range(0, transfer.row.size, _ROWS_AT_ONCE):
+        part = slice(begin, begin + _ROWS_AT_ONCE)
+        rows = transfer.row[part]
+        size = np.exp(transfer.log_weight[part].astype(np.float32) @ between)
+        lag = transfer.lag[part].astype(np.float32) @ between
+        lag += (transfer.delay[part, None] * omega).astype(np.float32)
+        # NumPy's transform of real series has exp(+iωt), so a delay is exp(−i lag).
+        spectra = np.asarray(rfft(forcing.stress[at[rows]], period.count, axis=1))
+        spectra *= size * (np.cos(lag) - 1j * np.sin(lag))
+        yield rows, spectra
 
-    Parameters
-    ----------
-    influence : Influence
-    forcing : Forcing
 
-    Returns
-    -------
-    ndarray, shape (nt,)
-        m.
-    """
-    one = np.zeros(influence.step.size, dtype=np.int64)
-    return np.asarray(contributions(influence, forcing, one, 1)[0])
+def _rows_of_forcing(influence: Influence, forcing: Forcing) -> tuple[Index, NDArray[np.bool_]]:
+    """Row of the forcing for every row of an influence, and whether there is one."""
+    at = np.minimum(np.searchsorted(forcing.steps, influence.step), forcing.steps.size - 1)
+    return at, forcing.steps[at] == influence.step
+
+
+def _between(few: Array, all_omega: Array) -> NDArray[np.float32]:
+    """Matrix (few, all) that interpolates linearly in ln ω; the ends are held."""
+    place = np.interp(np.log(np.maximum(all_omega, few[0])), np.log(few), np.arange(few.size))
+    left = np.minimum(place.astype(np.int64), few.size - 2)
+    share = place - left
+    matrix = np.zeros((few.size, all_omega.size), np.float32)
+    column = np.arange(all_omega.size)
+    matrix[left, column] = 1.0 - share
+    matrix[left + 1, column] = share
+    return matrix
 
 
 def spin_up(influence: Influence) -> float:
@@ -198,50 +257,49 @@ def main_way(influence: Influence) -> Index:
     return np.array(rows[::-1], dtype=np.int64)
 
 
-def route_response(network: Network, influence: Influence, forcing: Forcing) -> RouteResponse:
+def route_response(
+    network: Network, transfer: WindTransfer, influence: Influence, forcing: Forcing,
+    period: Period, told_delay: Array,
+) -> RouteResponse:
     """Response along the main way to a target.
 
-    What the wind upstream of a node does at the target, taken back by the delay and the gain
-    between the two, is the response at the node.
+    What the wind upstream of a node does at the target, divided by the gain between the two, is
+    the response at the node.
 
     Parameters
     ----------
     network : Network
+    transfer : WindTransfer
     influence : Influence
     forcing : Forcing
+    period : Period
+    told_delay : ndarray, shape (n,)
+        Delay that is told for the end of each row's step (s).
 
     Returns
     -------
     RouteResponse
     """
     way = main_way(influence)
+    least = np.min(transfer.log_gain[way], axis=1) < np.log(LEAST_GAIN)
+    way = way[: int(np.argmax(least))] if least.any() else way
     place = _place_on_way(influence, way)
-    every = max(1, -(-way.size // MOST_POSITIONS))
-    kept = np.arange(0, way.size, every)
+    kept = np.arange(0, way.size, max(1, -(-way.size // MOST_POSITIONS)))
     shown = way[kept]
-    ahead = int(np.ceil(influence.head_delay[shown].max(initial=0.0) / forcing.step)) + 1
-    longer = np.zeros((kept.size, forcing.time.size + ahead))
     # A node gets what enters at it or upstream of it.
     group = np.searchsorted(kept, place, "right") - 1
-    rows = np.nonzero(influence.weight > 0.0)[0]
-    at = np.searchsorted(forcing.steps, influence.step[rows])
-    for row, series in zip(rows.tolist(), at.tolist(), strict=True):
-        lag = influence.delay[row] / forcing.step
-        held = held_on(forcing.stress[series])
-        add_delayed(longer[group[row]], held, influence.weight[row], lag)
-    upstream = np.cumsum(longer[::-1], axis=0)[::-1]
-    level = [
-        taken_back(series, influence.head_delay[row] / forcing.step, forcing.time.size)
-        / influence.gain[row]
-        for series, row in zip(upstream, shown.tolist(), strict=True)
-    ]
-    sea_level = np.array(level).reshape(kept.size, -1)[::-1]
+    parts = contributions(transfer, influence, forcing, period, group, kept.size)
+    upstream = np.cumsum(parts[::-1], axis=0)[::-1]
+    between = _between(transfer.omega, period.omega)
+    lag = transfer.gain_lag[shown] @ between + influence.head_delay[shown, None] * period.omega
+    level = period.series(upstream * np.exp(1j * lag - transfer.log_gain[shown] @ between))
+    at, known = _rows_of_forcing(influence, forcing)
     return RouteResponse(
         node=network.head[influence.step[shown]][::-1],
         distance=influence.distance[shown][::-1],
-        delay=influence.head_delay[shown][::-1],
-        stress=_stress_at(influence, forcing, shown)[::-1],
-        sea_level=sea_level,
+        delay=told_delay[shown][::-1],
+        stress=np.where(known[shown, None], forcing.stress[at[shown]], np.nan)[::-1].astype(float),
+        sea_level=level[::-1],
     )
 
 
@@ -258,46 +316,3 @@ def _place_on_way(influence: Influence, way: Index) -> Index:
         else:  # a branch joins the way at the tail of the step that it leads into
             place[row] = min(place[parent] + int(on_way[parent]), way.size - 1)
     return place
-
-
-def held_on(series: NDArray[np.floating]) -> Array:
-    """A series with its last value once more, which an interpolation at its end needs.
-
-    Parameters
-    ----------
-    series : ndarray, shape (nt,)
-
-    Returns
-    -------
-    ndarray, shape (nt + 1,)
-    """
-    return np.append(series, series[-1:]).astype(float)
-
-
-def taken_back(series: Array, lag: float, count: int) -> Array:
-    """Values of a series `lag` intervals later, the first `count` of them.
-
-    Parameters
-    ----------
-    series : ndarray, shape (nt,)
-        With more than `count` + `lag` values.
-    lag : float
-        In intervals of time, ≥ 0.
-    count : int
-
-    Returns
-    -------
-    ndarray, shape (count,)
-    """
-    whole = int(lag)
-    share = lag - whole
-    earlier, later = series[whole : whole + count], series[whole + 1 : whole + 1 + count]
-    return np.asarray((1.0 - share) * earlier + share * later)
-
-
-def _stress_at(influence: Influence, forcing: Forcing, rows: Index) -> Array:
-    """Stress over steps, NaN where no wind counts."""
-    at = np.searchsorted(forcing.steps, influence.step[rows])
-    at = np.minimum(at, forcing.steps.size - 1)
-    known = forcing.steps[at] == influence.step[rows]
-    return np.where(known[:, None], forcing.stress[at], np.nan).astype(float)

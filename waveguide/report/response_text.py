@@ -46,8 +46,8 @@ def _heading(dataset: xr.Dataset) -> str:
         _filled(f"Wind    {plain(a['wind'], 200)}", 8),
         f"Time    {first} to {last}, every {a['step_days']:g} days; at rest before, and peaks "
         "are sought after spin-up",
-        f"Waves   losses at a period of {a['period_days']:g} days, bottom drag {a['drag_m_s']:g} "
-        f"m/s, interior damping {_days(a['damping_days'])}",
+        f"Waves   delays told for a period of {a['period_days']:g} days, bottom drag "
+        f"{a['drag_m_s']:g} m/s, interior damping {_days(a['damping_days'])}",
         f"Ocean   {a['ocean']}",
     ]
     return "\n".join(lines)
