@@ -4,8 +4,8 @@ The prepared record is searched for the event's own shape: a box as long as the 
 through the same band. For every delay τ the amplitude a(τ) that fits best is Σ x p_τ / Σ p_τ²; the
 delay of the highest a is the measured one. The rest of the record says what that is worth:
 
-- chance: how often as high an a is found in windows of the same length that hold no event;
-- interval: the fitted pulse is put into those windows, and found again with an error; the
+- chance: how often as high an a is found in windows of the same length of scrambled records;
+- interval: the fitted pulse is put into windows without event, and found again with an error; the
   quantiles of the errors, widened for the number of windows as in `waveguide.compare.lags`, are
   those of the delay, for the same noise acts on both.
 """
@@ -17,19 +17,26 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.ndimage import maximum_filter1d
 
 from waveguide.compare.filters import band_pass
 from waveguide.compare.lags import LagEstimate, dominant_period, peak, widened_percentiles
-from waveguide.compare.pairs import Prediction, longest_lag, sign_of
-from waveguide.compare.preparation import anomalies, in_band
+from waveguide.compare.pairs import SEED, Prediction, longest_lag, sign_of
+from waveguide.compare.preparation import anomalies, bridge_gaps, in_band
 from waveguide.compare.series import Series, days_between
+from waveguide.compare.significance import scrambled
 from waveguide.compare.verdict import Verdict, verdict
-from waveguide.errors import InputError
 
 Array = NDArray[np.float64]
 
+LEAST_COVER = 0.6
+"""Windows need amplitudes at this share of their delays; the rest is bridged by straight lines."""
+
+RECORDS = 40
+"""Scrambled records."""
+
 LEAST_WINDOWS = 4
-"""Event-free windows that a record must hold for a chance to be told."""
+"""Event-free windows that a record must hold for an interval to be told."""
 
 
 @dataclass(frozen=True)
@@ -90,11 +97,8 @@ def compare_event(
     Returns
     -------
     EventResult
-
-    Raises
-    ------
-    InputError
-        If the record does not hold the days in which the event could arrive, or little else.
+        Not resolvable, with the reason, where the record does not hold the days in which the event
+        could arrive.
     """
     prepared = in_band(anomalies(series), band)
     start = days_between(prepared.start, event_start)
@@ -103,13 +107,17 @@ def compare_event(
     pulse = event_pulse(duration, prepared.step, band)
     first = round((start + 0.5 * duration) / prepared.step)
     window = int(np.ceil(reach / prepared.step)) + 1
-    amplitude, share = fitted_amplitude(x, pulse)
-    _require_cover(prepared, amplitude, first, window)
+    fitted, share = fitted_amplitude(x, pulse)
+    reason = _uncovered(prepared, fitted, first, window)
+    if reason:
+        return EventResult(
+            prepared, band, start, np.zeros(0), np.zeros(0), _unknown(pulse, prepared.step), 1.0,
+            tuple(predictions), tuple(Verdict("not resolvable", reason) for _ in predictions),
+        )
     delay = np.asarray((first + np.arange(window)) * prepared.step - start - 0.5 * duration)
-    here = amplitude[first : first + window]
-    estimate, chance = _judge(
-        pulse, amplitude, share, first, window, prepared.step, float(delay[0])
-    )
+    here = fitted[first : first + window]
+    estimate = _judge(pulse, fitted, share, first, window, prepared.step, float(delay[0]))
+    chance = _chance(x, pulse, window, float(np.nanmax(here)))
     return EventResult(
         prepared, band, start, delay, here, estimate, chance, tuple(predictions),
         tuple(verdict(estimate, chance, p.lag, p.status) for p in predictions),
@@ -150,49 +158,62 @@ def fitted_amplitude(x: Array, pulse: Array) -> tuple[Array, Array]:
     return np.where(sound, product / safe, nan), np.where(sound, product / scale, nan)
 
 
-def _require_cover(series: Series, amplitude: Array, first: int, window: int) -> None:
-    span = f"{series.times[0]} to {series.times[-1]}"
+def _uncovered(series: Series, amplitude: Array, first: int, window: int) -> str:
+    """Why the record cannot show the event, or nothing."""
+    days = window * series.step
     if first < 0 or first + window > series.values.size:
-        raise InputError(
-            f"{series.name!r}: the record ({span}) does not hold the {window * series.step:.0f} "
-            "days after the event in which it could arrive; give a longer record, or compare "
-            "pairs only"
+        return (
+            f"the record ({series.times[0]} to {series.times[-1]}) does not hold the {days:.0f} "
+            "days after the event in which it could arrive"
         )
-    if not np.isfinite(amplitude[first : first + window]).mean() > 0.8:
-        raise InputError(
-            f"{series.name!r}: too many values are missing in the {window * series.step:.0f} days "
-            "after the event; compare another gauge"
+    share = float(np.isfinite(amplitude[first : first + window]).mean())
+    if share < LEAST_COVER:
+        return (
+            f"{1 - share:.0%} of the {days:.0f} days after the event are too near to missing "
+            "values"
         )
+    return ""
+
+
+def _chance(x: Array, pulse: Array, window: int, height: float) -> float:
+    """Share of windows of scrambled records in which the pulse fits with as high an amplitude.
+
+    The record's own windows are too few to tell one in twenty. The event's power is among what is
+    scrambled, which errs on the side of doubt.
+    """
+    records = scrambled(x, RECORDS, np.random.default_rng(SEED))
+    highest = [
+        maximum_filter1d(np.nan_to_num(fitted_amplitude(row, pulse)[0]), window) for row in records
+    ]
+    return float((1.0 + np.sum(np.array(highest) >= height)) / (1.0 + records.size))
 
 
 def _judge(
     pulse: Array, amplitude: Array, share: Array, first: int, window: int, step: float,
     delay: float,
-) -> tuple[LagEstimate, float]:
-    """Delay with its interval, and the chance of as high an amplitude without an event."""
+) -> LagEstimate:
+    """Delay with its interval."""
     index = np.arange(window)
     days = np.asarray(index * step, float)
-    here = amplitude[first : first + window]
-    top = int(np.nanargmax(here))
-    lag = float(peak(days, np.nan_to_num(here, nan=-np.inf)))
+    bridged, fit = (bridge_gaps(values, values.size) for values in (amplitude, share))
+    here = bridged[first : first + window]
+    top = int(np.argmax(here))
+    lag = float(peak(days, here))
     windows = _free_windows(amplitude, first, window, pulse.size)
     independent = len(windows) / window
     if independent < LEAST_WINDOWS:
-        return _unknown(lag + delay, float(share[first + top]), pulse, step, independent), 1.0
-    noise = amplitude[windows[:, None] + index]
-    chance = (1.0 + float(np.sum(np.nanmax(noise, axis=1) >= here[top]))) / (1.0 + len(windows))
-    found = peak(days, np.nan_to_num(
-        noise + here[top] * _own_shape(pulse, window, top), nan=-np.inf
-    ))
+        return _unknown(pulse, step)
+    noise = bridged[windows[:, None] + index]
+    found = peak(days, noise + here[top] * _own_shape(pulse, window, top))
     error = found - top * step
     low, high = widened_percentiles(error, independent)
     period = dominant_period(pulse, step)
     return LagEstimate(
         lag=lag + delay, low=float(lag - high + delay), high=float(lag - low + delay),
-        correlation=float(share[first + top]), blocks=independent, period=period,
+        correlation=float(fit[first + top]), blocks=independent, period=period,
         other_cycle=float(np.mean(np.abs(error) > 0.5 * period)),
         rival=float("nan"), rival_correlation=float("nan"), at_edge=top == window - 1,
-    ), chance
+    )
 
 
 def _own_shape(pulse: Array, window: int, top: int) -> Array:
@@ -205,19 +226,19 @@ def _own_shape(pulse: Array, window: int, top: int) -> Array:
 
 
 def _free_windows(amplitude: Array, first: int, window: int, pulse: int) -> NDArray[np.intp]:
-    """Starts of windows with amplitudes throughout that the event's own window does not touch."""
+    """Starts of windows mostly filled with amplitudes that the event's own does not touch."""
     known = np.concatenate([[0], np.cumsum(np.isfinite(amplitude))])
+    ends = np.flatnonzero(np.isfinite(amplitude))[[0, -1]]  # nothing is bridged beyond these
     starts = np.arange(amplitude.size - window + 1)
-    whole = known[starts + window] - known[starts] == window
+    filled = known[starts + window] - known[starts] >= LEAST_COVER * window
+    inside = (starts >= ends[0]) & (starts + window <= ends[1] + 1)
     reach = window + pulse // 2
-    return np.asarray(starts[whole & (np.abs(starts - first) > reach)])
+    return np.asarray(starts[filled & inside & (np.abs(starts - first) > reach)])
 
 
-def _unknown(
-    lag: float, correlation: float, pulse: Array, step: float, windows: float
-) -> LagEstimate:
+def _unknown(pulse: Array, step: float) -> LagEstimate:
+    """An estimate of nothing."""
     nan = float("nan")
     return LagEstimate(
-        lag, -np.inf, np.inf, correlation, windows, dominant_period(pulse, step), 0.0, nan, nan,
-        False,
+        nan, nan, nan, nan, 0.0, dominant_period(pulse, step), 0.0, nan, nan, False
     )

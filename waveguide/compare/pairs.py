@@ -28,7 +28,7 @@ SEGMENT_PERIODS = 3.0
 LEAST_BLOCKS = 4.0
 """Fewer independent blocks than this give no interval worth the name."""
 
-TURNS = 10
+TURNS = 40
 """Records that hold so many spans of the searched lags are turned for the null test; shorter
 ones are scrambled."""
 

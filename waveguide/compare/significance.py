@@ -3,8 +3,8 @@
 The statistic is the highest correlation within the lags that are searched. Its distribution
 without a relation comes from pairs that have none, in one of two ways:
 
-- shifted: one series is turned round by every amount that takes it out of reach of the other.
-  Gaps, colour and amplitude stay; needs a record many times longer than the lags.
+- shifted: one series is turned round by every amount. Gaps, colour and amplitude stay; needs a
+  record many times longer than the lags.
 - scrambled: one series gets random phases at unchanged power, then its gaps back. It gives as many
   pairs as wanted, for a Gaussian process.
 
@@ -18,13 +18,14 @@ from __future__ import annotations
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.fft import next_fast_len
 from scipy.ndimage import maximum_filter1d
 
 from waveguide.compare.lags import lag_steps, overlap
 
 Array = NDArray[np.float64]
 
-SCRAMBLED = 400
+SCRAMBLED = 200
 """Scrambled pairs."""
 
 
@@ -59,7 +60,9 @@ def shifted_chance(x: Array, y: Array, step: float, longest: float) -> float:
     """Share of turned pairs whose highest correlation reaches that of the real pair.
 
     For stationary series without a relation every turn is as likely as the real one to be the
-    highest, so this is a p-value, although neighbouring turns are alike.
+    highest, although neighbouring turns are alike. Turns within reach of the real pair see its
+    own peak and count as reaching it, so the share is never less than the searched lags' share of
+    the record: one in the number of independent windows.
 
     Parameters
     ----------
@@ -73,17 +76,16 @@ def shifted_chance(x: Array, y: Array, step: float, longest: float) -> float:
     Returns
     -------
     float
-        Between 0 and 1; 1 where the record is too short to be turned out of reach.
+        Between 0 and 1.
     """
     reach = int(lag_steps(x.size, step, longest)[-1])
-    highest = maximum_filter1d(circular_correlation(x, y), 2 * reach + 1, mode="wrap")
-    away = np.arange(x.size)
-    others = highest[(away > 2 * reach) & (away < x.size - 2 * reach)]
-    if others.size < 2 * reach:
+    window = 2 * reach + 1
+    if 3 * window > x.size:
         return 1.0
+    highest = maximum_filter1d(circular_correlation(x, y), window, mode="wrap")
+    others = highest[window : x.size - window]
     # The ring joins the record's ends; the real pair is measured without that seam.
-    real = _highest(x, y, reach)
-    return float((1.0 + np.sum(others >= real)) / (1.0 + others.size))
+    return float((window + np.sum(others >= _highest(x, y, reach))) / (window + others.size))
 
 
 def scrambled_chance(
@@ -102,25 +104,47 @@ def scrambled_chance(
     float
     """
     reach = int(lag_steps(x.size, step, longest)[-1])
-    real = _highest(x, y, reach)
-    others = np.empty(SCRAMBLED)
-    for i in range(SCRAMBLED):
-        ring = circular_correlation(scrambled(x, generator), y)
-        others[i] = max(ring[: reach + 1].max(), ring[-reach:].max())
-    return float((1.0 + np.sum(others >= real)) / (1.0 + SCRAMBLED))
+    size = next_fast_len(x.size + reach, real=True)  # room for the lags, so no ring closes
+    there_x, there_y = np.isfinite(x).astype(float), np.isfinite(y).astype(float)
+    b = np.where(there_y > 0.0, y, 0.0)
+    a = np.nan_to_num(scrambled(x, SCRAMBLED, generator))
+    product = _lagged_sums(a, b, size, reach)
+    scale = _lagged_sums(a**2, there_y, size, reach) * _lagged_sums(there_x, b**2, size, reach)
+    sound = scale > 0.0
+    others = np.where(sound, product / np.sqrt(np.where(sound, scale, 1.0)), 0.0).max(axis=-1)
+    return float((1.0 + np.sum(others >= _highest(x, y, reach))) / (1.0 + SCRAMBLED))
 
 
-def scrambled(values: Array, generator: np.random.Generator) -> Array:
-    """A series of the same power spectrum with random phases, and the same gaps.
+def _lagged_sums(x: Array, y: Array, size: int, reach: int) -> Array:
+    """Σ_t x(t) y(t + s) for |s| ≤ reach, by rows of x; shape (..., 2 reach + 1)."""
+    spectrum = np.conj(np.fft.rfft(x, size, axis=-1)) * np.fft.rfft(y, size)
+    ring = np.fft.irfft(spectrum, size, axis=-1)
+    return np.concatenate([ring[..., -reach:], ring[..., : reach + 1]], axis=-1)
+
+
+def scrambled(values: Array, count: int, generator: np.random.Generator) -> Array:
+    """Series of the same power spectrum with random phases, and the same gaps.
 
     Gaps are zeros in the transform, which is the mean of anomalies; the power they take out is
     given back.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n,)
+        NaN where missing.
+    count : int
+    generator : numpy.random.Generator
+
+    Returns
+    -------
+    ndarray, shape (count, n)
     """
     there = np.isfinite(values)
-    spectrum = np.abs(np.fft.rfft(np.where(there, values, 0.0)))
-    phase = generator.uniform(0.0, 2.0 * np.pi, spectrum.size)
-    new = np.fft.irfft(spectrum * np.exp(1j * phase), values.size) / np.sqrt(there.mean())
-    return np.where(there, new, np.nan)
+    size = next_fast_len(values.size, real=True)
+    spectrum = np.abs(np.fft.rfft(np.where(there, values, 0.0), size))
+    phase = generator.uniform(0.0, 2.0 * np.pi, (count, spectrum.size))
+    new = np.fft.irfft(spectrum * np.exp(1j * phase), size, axis=-1)[:, : values.size]
+    return np.asarray(np.where(there, new * np.sqrt(size / there.sum()), np.nan))
 
 
 def _highest(x: Array, y: Array, reach: int) -> float:

@@ -101,6 +101,8 @@ def verdict(
 
 def unresolved(estimate: LagEstimate, chance: float) -> str:
     """Why no lag can be read from the records, or nothing."""
+    if not np.isfinite(estimate.lag):
+        return "the record is too short or has too many gaps to tell signal from noise"
     if chance > CHANCE:
         return (
             f"no relation: unrelated records of this kind correlate as well "

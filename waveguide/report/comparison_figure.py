@@ -234,7 +234,7 @@ def draw_event(event: EventResult) -> Figure:
     series = event.series
     unit, factor = _UNITS[series.quantity]
     figure, axes = _figure(2, 1, 6.5, f"The event at {plain(series.name, 30)}")
-    span = float(event.delay[-1])
+    span = float(event.delay[-1]) if event.delay.size else 120.0
     days = series.days - event.start
     shown = (days > -0.5 * span) & (days < 1.5 * span)
     top, bottom = axes[0, 0], axes[1, 0]
