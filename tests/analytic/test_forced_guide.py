@@ -134,6 +134,37 @@ def test_growth_with_latitude_and_varying_speed_against_an_independent_integrato
     assert np.abs(level - exact).max() < 5e-4 * np.abs(exact).max()
 
 
+def test_a_coastal_value_that_changes_its_sign_against_an_independent_integrator():
+    """Where F of a higher mode is negative the wind downstream makes a wave of the other sign."""
+    n = 301
+    coast = zonal_coast(3000.0, n)
+    s = np.concatenate([[0.0], np.cumsum(coast.length)])
+    value = 0.06 * np.cos(4.0 * s / s[-1])
+    mode = mode_of(coast, 2.0, value)
+    physics = physics_of(coast, mode)
+
+    def wind(position, t):
+        during = np.sin(np.pi * np.clip(t / (20.0 * DAY), 0.0, 1.0)) ** 2
+        return 0.1 * during * (1.0 + 0.5 * np.sin(position / 300e3))
+
+    step = 0.1 * DAY
+    times = np.arange(400) * step
+    stress = np.array([wind(0.5 * (s[1:] + s[:-1]), t) for t in times]).T
+    grid = np.linspace(0.0, s[-1], 601)
+    F, none = np.interp(grid, s, value), np.zeros(grid.size)
+    phi = integrate_guide(grid, np.full(grid.size, 2.0), none, none,
+                          lambda t: F * wind(grid, t) / REFERENCE_DENSITY, times)
+    exact = value[-1] * phi[:, -1] / GRAVITY
+    along = along_characteristics(coast, mode, physics, stress, step)
+    told, way = at_every_frequency(coast, mode, physics, STILL, stress, step)
+    for found in (along, told):
+        assert np.abs(found - exact).max() < 2e-3 * np.abs(exact).max()
+    middle = int(np.argmin(np.abs(way.distance - 1500e3)))
+    there = np.interp(s[-1] - way.distance[middle], grid, F) * np.array([
+        np.interp(s[-1] - way.distance[middle], grid, row) for row in phi]) / GRAVITY
+    assert np.abs(way.sea_level[middle] - there).max() < 0.01 * np.abs(there).max()
+
+
 def test_equator_with_varying_speed_against_an_independent_integrator():
     n = 401
     guide = line_network(np.linspace(150.0, 230.0, n) - 360.0, np.zeros(n), equatorial=True)

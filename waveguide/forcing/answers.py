@@ -134,7 +134,7 @@ def mode_response(
         )
         for place in places
     ]
-    asked = [found.step[found.weight > 0.0] for found in reach if found is not None]
+    asked = [found.step[found.weight != 0.0] for found in reach if found is not None]
     steps = np.unique(np.concatenate([np.zeros(0, np.int64), *asked]))
     forcing = forcer(network, mode.speed, steps)
     answers = []

@@ -161,7 +161,7 @@ def _entering(
 def _windy(forcing: Forcing, increment: Array, steps: Index) -> list[tuple[int, int]]:
     """Places in a run of steps where wind acts, with the row of their stress."""
     row = np.minimum(np.searchsorted(forcing.steps, steps), max(forcing.steps.size - 1, 0))
-    known = (increment[steps] > 0.0) & (forcing.steps[row] == steps)
+    known = (increment[steps] != 0.0) & (forcing.steps[row] == steps)
     return [(int(place), int(row[place])) for place in np.nonzero(known)[0]]
 
 

@@ -80,7 +80,8 @@ class Influence:
     parent : ndarray of int, shape (k,)
         Row of the step that follows downstream, −1 where the step ends at the target.
     weight : ndarray, shape (k,)
-        Sea level at the target per stress over the step (m/Pa); 0 where no wind counts.
+        Sea level at the target per stress over the step (m/Pa); 0 where no wind counts, negative
+        where F has another sign than at the target.
     delay : ndarray, shape (k,)
         Time from the middle of the step to the target (s).
     head_delay : ndarray, shape (k,)
@@ -112,7 +113,7 @@ def step_increment(network: Network, mode: ModeAtNodes, physics: StepPhysics) ->
     Returns
     -------
     ndarray, shape (m,)
-        Sea level (m/Pa) over the potential; 0 on steps where no wind counts.
+        Sea level (m/Pa) over the potential; 0 on steps where no wind counts. With the sign of F.
     """
     tail, head = network.tail, network.head
     coast = (network.kind == StepKind.COAST) & np.isfinite(physics.time)
@@ -120,10 +121,13 @@ def step_increment(network: Network, mode: ModeAtNodes, physics: StepPhysics) ->
     value = mode.coastal_value
     potential = physics.potential * lifted_near_equator(network, mode)
     increment = np.zeros(tail.size)
-    # On a coast the middle of the step; half of its losses lie behind.
-    f2 = value[tail] * value[head]
-    along = np.sqrt(potential[tail] * potential[head])
-    increment[coast] = (f2 / along * np.exp(-0.5 * physics.loss))[coast]
+    # On a coast the middle of the step; half of its losses lie behind. P/F is positive, F of a
+    # higher mode may change its sign along the coast.
+    with np.errstate(divide="ignore", invalid="ignore"):
+        flux = potential / value
+    along = np.sqrt(flux[tail] * flux[head])
+    middle = 0.5 * (value[tail] + value[head]) / along * np.exp(-0.5 * physics.loss)
+    increment[coast] = np.nan_to_num(middle[coast])
     # On the equator a junction at either end is not part of the stretch that is forced.
     inner = np.where(network.equatorial[head], head, tail)
     after = np.where(network.equatorial[tail], physics.loss, 0.0)

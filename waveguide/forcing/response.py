@@ -105,7 +105,7 @@ def windy_rows(influence: Influence, forcing: Forcing) -> NDArray[np.bool_]:
     """Rows of an influence over which any wind blows, shape (n,)."""
     at, known = _rows_of_forcing(influence, forcing)
     blows = np.append(np.any(forcing.stress != 0.0, axis=1), False)
-    return np.asarray(known & blows[at] & (influence.weight > 0.0))
+    return np.asarray(known & blows[at] & (influence.weight != 0.0))
 
 
 def contributions(
@@ -157,6 +157,7 @@ def _parts(
         lag += (transfer.delay[part, None] * omega).astype(np.float32)
         # NumPy's transform of real series has exp(+iωt), so a delay is exp(−i lag).
         spectra = np.asarray(rfft(forcing.stress[at[rows]], period.count, axis=1))
+        size *= transfer.sign[part, None]
         spectra *= size * (np.cos(lag) - 1j * np.sin(lag))
         yield rows, spectra
 
@@ -193,7 +194,7 @@ def spin_up(influence: Influence) -> float:
     if not influence.weight.any():
         return 0.0
     order = np.argsort(influence.delay)
-    share = np.cumsum(influence.weight[order])
+    share = np.cumsum(np.abs(influence.weight[order]))
     return float(influence.delay[order][int(np.searchsorted(share, SPUN_UP * share[-1]))])
 
 
@@ -229,8 +230,9 @@ def covered_by_group(influence: Influence, forcing: Forcing, group: Index, count
     -------
     ndarray, shape (count,)
     """
-    rows = np.nonzero((influence.weight > 0.0) & (group >= 0))[0]
-    weight, at = influence.weight[rows], np.searchsorted(forcing.steps, influence.step[rows])
+    rows = np.nonzero((influence.weight != 0.0) & (group >= 0))[0]
+    weight, at = np.abs(influence.weight[rows]), np.searchsorted(forcing.steps,
+                                                                 influence.step[rows])
     total = np.bincount(group[rows], weight, minlength=count)
     found = np.bincount(group[rows], weight * forcing.covered[at], minlength=count)
     return np.asarray(found / np.maximum(total, 1e-300))
@@ -249,7 +251,7 @@ def main_way(influence: Influence) -> Index:
     """
     gathered = np.zeros(influence.step.size)
     for row, parent in enumerate(influence.parent.tolist()):
-        gathered[row] = influence.weight[row] + (gathered[parent] if parent >= 0 else 0.0)
+        gathered[row] = abs(influence.weight[row]) + (gathered[parent] if parent >= 0 else 0.0)
     rows, row = [], int(np.argmax(gathered)) if gathered.size else -1
     while row >= 0:
         rows.append(row)
@@ -292,7 +294,8 @@ def route_response(
     upstream = np.cumsum(parts[::-1], axis=0)[::-1]
     between = _between(transfer.omega, period.omega)
     lag = transfer.gain_lag[shown] @ between + influence.head_delay[shown, None] * period.omega
-    level = period.series(upstream * np.exp(1j * lag - transfer.log_gain[shown] @ between))
+    undone = transfer.gain_sign[shown, None] * np.exp(1j * lag - transfer.log_gain[shown] @ between)
+    level = period.series(upstream * undone)
     at, known = _rows_of_forcing(influence, forcing)
     return RouteResponse(
         node=network.head[influence.step[shown]][::-1],

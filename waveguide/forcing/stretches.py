@@ -62,7 +62,7 @@ def cut_into_stretches(
     of_row : ndarray of int, shape (k,)
         Stretch of each row of `influence`, −1 where no wind counts.
     """
-    forced = np.nonzero(influence.weight > 0.0)[0]
+    forced = np.nonzero(influence.weight != 0.0)[0]
     steps = influence.step[forced]
     inner = np.where(network.equatorial[network.head[steps]], network.head[steps],
                      network.tail[steps])

@@ -29,6 +29,8 @@ Array = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 Index = NDArray[np.int64]
 
+_NOTHING = 1e-12  # stands for a potential of zero
+
 PER_DECADE = 30
 """Frequencies at which weights are computed."""
 
@@ -43,10 +45,13 @@ class WindTransfer:
         Angular frequency (rad/s), rising.
     row : ndarray of int, shape (k,)
         Rows of the influence on which wind counts.
+    sign : ndarray, shape (k,)
+        1, or −1 where F has another sign than at the target.
     log_weight, lag : ndarray, shape (k, nω)
         ln of sea level at the target per stress (m/Pa); lag beyond ω × `delay` (rad).
     delay : ndarray, shape (k,)
         Of the long wave (s).
+    gain_sign : ndarray, shape (n,)
     log_gain, gain_lag : ndarray, shape (n, nω)
         For every row of the influence, ln of sea level at the target over that at the end of the
         step, and its lag beyond ω × its head_delay (rad).
@@ -54,9 +59,11 @@ class WindTransfer:
 
     omega: Array
     row: Index
+    sign: Array
     log_weight: Array
     lag: Array
     delay: Array
+    gain_sign: Array
     log_gain: Array
     gain_lag: Array
 
@@ -131,16 +138,19 @@ def wind_transfer(
     response = step_response(network, mode, steps, omega, table, conditions)
     exponent = -response.nepers.sum(axis=0) + 1j * response.lag
     at_head = _gathered(influence, exponent) + 1j * omega * place.beyond
-    log_potential = np.log(potential(network, mode, nodes, table))
+    log_potential = np.log(np.maximum(np.abs(potential(network, mode, nodes, table)), _NOTHING))
     target = log_potential[np.searchsorted(nodes, place.node)] + np.log(place.factor)
     head = log_potential[np.searchsorted(nodes, network.head[steps])]
-    row = np.nonzero(windy & (influence.weight > 0.0))[0]
+    row = np.nonzero(windy & (influence.weight != 0.0))[0]
+    value = mode.coastal_value
     weight = at_head[row] + target + _increments(
         network, mode, steps[row], exponent[row], nodes, log_potential, omega
     )
     return WindTransfer(
-        omega, row, weight.real, weight.imag - omega * influence.delay[row, None],
-        influence.delay[row], at_head.real + target - head,
+        omega, row, np.sign(influence.weight[row]), weight.real,
+        weight.imag - omega * influence.delay[row, None], influence.delay[row],
+        np.sign(value[place.node] * value[network.head[steps]]),
+        at_head.real + target - head,
         at_head.imag - omega * influence.head_delay[:, None],
     )
 
@@ -195,9 +205,12 @@ def _increments(
     lift = np.log(lifted_near_equator(network, mode))
     coast = network.kind[steps] == StepKind.COAST
     value = mode.coastal_value
-    middle = np.mean([log_potential[at] + lift[ends, None] for at, ends in
-                      zip(here, (tail, head), strict=True)], axis=0)
-    along = np.log(value[tail] * value[head])[:, None] - middle + 0.5 * exponent
+    flux = np.mean([
+        log_potential[at] + (lift[ends] - np.log(np.abs(value[ends])))[:, None]
+        for at, ends in zip(here, (tail, head), strict=True)
+    ], axis=0)
+    middle = np.abs(0.5 * (value[tail] + value[head]))
+    along = np.log(middle)[:, None] - flux + 0.5 * exponent
     inner = np.where(network.equatorial[head], here[1], here[0])
     at_equator = np.where(network.equatorial[head], value[head], value[tail])
     half = 0.5j * omega * (network.length[steps] / step_speeds(network, mode, steps)[0])[:, None]
