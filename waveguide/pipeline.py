@@ -12,6 +12,7 @@ from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.network.attach import distance_to_water
 from waveguide.network.packaged import family_of, packaged_network
+from waveguide.network.trapped_store import packaged_guide
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import used_files
 from waveguide.ocean.stratification import Climatology, packaged_climatology
@@ -194,7 +195,9 @@ def damping_rate(days: float | None, mode: ModeAtNodes) -> float:
 
 def _conditions(scenario: Scenario, network: Network, mode: ModeAtNodes) -> Conditions:
     """Friction and damping of a mode."""
-    friction = friction_of_steps(network, mode, scenario.waves.drag_m_s)
+    friction = friction_of_steps(
+        network, mode, scenario.waves.drag_m_s, _omega(scenario)
+    )
     damping = damping_rate(scenario.waves.damping_days, mode)
     return Conditions(friction=friction, damping=damping)
 
@@ -264,7 +267,7 @@ def _annual_mean(scenario: Scenario) -> Climatology | None:
 
 def _mode(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAtNodes]:
     """The network of a mode and what its nodes know of it in the scenario's ocean."""
-    network, atlas = packaged_network(family_of(mode))
+    network, atlas = packaged_guide(family_of(mode))
     ocean = scenario.ocean
     if ocean.phase_speed_m_s is not None:
         return network, uniform_mode(network, mode, ocean.phase_speed_m_s)

@@ -22,7 +22,8 @@ from waveguide.forcing.structure import MooringRatios, mooring_ratios
 from waveguide.forcing.time_axis import Times, bridged_gaps, seconds, uniform_times
 from waveguide.forcing.wind_file import WindFile, open_wind
 from waveguide.network.graph import Network
-from waveguide.network.packaged import family_of, packaged_network
+from waveguide.network.packaged import family_of
+from waveguide.network.trapped_store import packaged_guide
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import WIND_RECORD, packaged_file
 from waveguide.ocean.stratification import packaged_climatology
@@ -104,7 +105,7 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
         network, mode, depth = _mode(question, number)
         damping = damping_rate(question.waves.damping_days, mode)
         physics = step_physics(network, mode, omega, damping, question.waves.drag_m_s)
-        friction = friction_of_steps(network, mode, question.waves.drag_m_s)
+        friction = friction_of_steps(network, mode, question.waves.drag_m_s, omega)
         answers[number] = mode_response(
             network, mode, physics, Conditions(friction, damping), packaged_bathymetry(),
             [target.position for target in question.targets], omega, forcer,
@@ -138,7 +139,7 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
 
 def _mode(question: WindScenario, number: int) -> tuple[Network, ModeAtNodes, Array]:
     """Network, mode and depth at its nodes in the scenario's ocean."""
-    network, atlas = packaged_network(family_of(number))
+    network, atlas = packaged_guide(family_of(number))
     ocean = question.ocean
     if ocean.source == "own files":
         from waveguide.network.own import own_atlas

@@ -47,6 +47,11 @@ BLENDED = 1.0
 """Latitude (degrees) below which the modes of sections give way to those of a flat bottom."""
 
 
+LEAST_VALUE = 1e-4
+"""Smallest F(0,0) (m^-1/2). Values and frictions are extrapolated from two meshes, which can carry
+a quantity that is nearly nothing to the wrong side of nothing (two values, a few frictions)."""
+
+
 @dataclass(frozen=True)
 class TrappedAtlas(Atlas):
     """Modes of sections at the nodes of the baroclinic network.
@@ -268,9 +273,9 @@ def _assembled(
     return TrappedAtlas(
         mode=np.arange(NUMBERS + 1), depth=flat.depth,
         phase_speed=blend(speed, fallback.speed),
-        coastal_value=blend(ranked.coastal_value[pick], fallback.value),
+        coastal_value=blend(np.maximum(ranked.coastal_value[pick], LEAST_VALUE), fallback.value),
         gap_share=gaps, error=error,
-        decay_per_drag=blend(ranked.bottom_friction[pick], fallback.decay),
+        decay_per_drag=blend(np.maximum(ranked.bottom_friction[pick], 0.0), fallback.decay),
         trapping_scale=blend(scale, fallback.scale),
         rank=rank, overlap=step_overlaps(network, ranked.overlap, followed), flags=flags,
     )

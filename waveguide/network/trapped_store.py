@@ -11,8 +11,9 @@ from numpy.typing import NDArray
 
 from waveguide.coast.section_quality import QualityFlag
 from waveguide.errors import DataError
+from waveguide.network.atlas import Atlas
 from waveguide.network.graph import Network
-from waveguide.network.packaged import network_file
+from waveguide.network.packaged import Family, network_file, packaged_network
 from waveguide.network.trapped_atlas import TrappedAtlas
 from waveguide.ocean.packaged import WAY_OUT, packaged_file, used_files
 
@@ -161,3 +162,20 @@ def packaged_trapped_atlas() -> TrappedAtlas:
             "with `python coastlines/build.py atlas`"
         )
     return atlas.of_modes(1)
+
+
+def packaged_guide(family: Family) -> tuple[Network, Atlas]:
+    """The shipped network of a family with the best atlas there is for it.
+
+    Parameters
+    ----------
+    family : {"baroclinic", "barotropic"}
+
+    Returns
+    -------
+    Network
+    Atlas
+        Of sections for the baroclinic family, of depth-averaged water for the barotropic one.
+    """
+    network, atlas = packaged_network(family)
+    return network, packaged_trapped_atlas() if family == "baroclinic" else atlas
