@@ -20,7 +20,6 @@ from waveguide.propagation.answers import ModeAnswer, mode_answer
 from waveguide.propagation.arrivals import REACHED, Arrival, mode_arrivals
 from waveguide.propagation.dispersion import interior_damping_rate
 from waveguide.propagation.modes import atlas_mode, friction_of_steps, uniform_mode
-from waveguide.propagation.moorings import UNIFORM, MooringAnswer, Water, mooring_answer
 from waveguide.propagation.sources import (
     SourceFunction,
     boxcar_burst,
@@ -41,6 +40,7 @@ if TYPE_CHECKING:
     from waveguide.network.attach import Box
     from waveguide.network.graph import Network
     from waveguide.propagation.modes import ModeAtNodes
+    from waveguide.propagation.moorings import MooringAnswer, Water
 
 Progress = Callable[[str], None]
 
@@ -207,13 +207,17 @@ def _moorings(
     found: dict[int, list[Arrival]],
 ) -> dict[tuple[int, int], MooringAnswer]:
     """What the targets that are moorings see, by the indices of target and mode."""
-    answers = {}
     named = [(t, target) for t, target in enumerate(scenario.targets) if target.depth_m]
-    for column, (number, (network, mode)) in enumerate(guides.items() if named else ()):
+    if not named:
+        return {}
+    from waveguide.propagation.moorings import UNIFORM, mooring_answer, no_structure
+
+    answers = {}
+    for column, (number, (network, mode)) in enumerate(guides.items()):
         water = _water(scenario, number)
         for place, target in named:
             if water is None:
-                answers[place, column] = MooringAnswer(UNIFORM, np.nan, np.nan, None)
+                answers[place, column] = no_structure(UNIFORM)
                 continue
             distance = None if target.offshore_km is None else 1e3 * target.offshore_km
             answers[place, column] = mooring_answer(
@@ -225,12 +229,15 @@ def _moorings(
 
 def _water(scenario: Scenario, mode: int) -> Water | None:
     """Depths and stratification below the network of a mode, None for a uniform speed."""
+    from waveguide.propagation.moorings import Water, section_rank
+
     ocean = scenario.ocean
     if ocean.phase_speed_m_s is not None:
         return None
     depths, columns = packaged_bathymetry(), packaged_climatology()
+    network, packaged = packaged_guide(family_of(mode))
     if ocean.source == "packaged":
-        return Water(depths, columns, packaged_network(family_of(mode))[1].depth)
+        return Water(depths, columns, packaged.depth, section_rank(network, packaged, mode))
     from waveguide.network.own import own_atlas
     from waveguide.ocean.bathymetry import read_bathymetry
     from waveguide.ocean.hydrography import read_climatology
@@ -240,7 +247,7 @@ def _water(scenario: Scenario, mode: int) -> Water | None:
         depths = read_bathymetry(ocean.bathymetry)
     if ocean.climatology is not None:
         columns = read_climatology(ocean.climatology, temperature=ocean.temperature)
-    return Water(depths, columns, atlas.depth)
+    return Water(depths, columns, atlas.depth, section_rank(network, atlas, mode))
 
 
 def source_box(scenario: Scenario) -> Box:

@@ -224,7 +224,7 @@ def ocean(guides: SimpleNamespace) -> SimpleNamespace:
     )
     water = Water(
         Bathymetry(lon, lat, depth), Climatology(lon, lat, levels, n2.astype(np.float32)),
-        np.full(network.size, H),
+        np.full(network.size, H), np.ones(network.size, dtype=np.int64),
     )
     column = vertical_modes(n2[:, 0, 0], levels, H, 1)
     speed = float(column.phase_speed[1])
@@ -273,7 +273,9 @@ def test_mooring_on_the_equator(guides: SimpleNamespace, ocean: SimpleNamespace)
     network = guides.chain([(guides.EQUATOR, [(2.0, 0.0), (12.0, 0.0)])])
     mode = guides.uniform(network, ocean.speed)
     arrival = guides.arrival(network, mode, [np.arange(network.tail.size - 1)])
-    water = guides.replace(ocean.water, bottom=np.full(network.size, H))
+    water = guides.replace(
+        ocean.water, bottom=np.full(network.size, H), rank=np.full(network.size, -1)
+    )
     y = float(np.sqrt(ocean.speed / BETA_EQUATOR))
     answer = mooring_answer(network, mode, arrival, OMEGA, water, y, [200.0])
     assert answer.structure == "equator"

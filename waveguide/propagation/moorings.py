@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,8 +16,10 @@ from waveguide.errors import InputError
 from waveguide.geodesy import wgs84
 from waveguide.modes.modeset import ModeSet
 from waveguide.modes.trapped import trapped_modes
-from waveguide.modes.vertical import vertical_modes
+from waveguide.modes.vertical import VerticalModes, vertical_modes
+from waveguide.network.atlas import Atlas
 from waveguide.network.graph import Network, StepKind
+from waveguide.network.trapped_atlas import BLENDED, TrappedAtlas
 from waveguide.ocean.bathymetry import Bathymetry
 from waveguide.ocean.stratification import Climatology
 from waveguide.propagation.arrivals import Arrival
@@ -38,9 +41,6 @@ SECTION, FLAT_BOTTOM, EQUATOR = "section", "flat bottom", "equator"
 NO_COLUMN = "no stratification known"
 UNIFORM = "a uniform speed has none"
 
-LEAST_LATITUDE = 1.0
-"""Closer to the equator (degrees) modes are those of a flat bottom, as in the mode atlas."""
-
 _NEIGHBOURHOOD = 2.0
 """The direction of the coast is that of the last two deformation radii of the way."""
 
@@ -55,11 +55,15 @@ class Water:
     climatology : Climatology
     bottom : ndarray, shape (n,)
         Depth of the water beside the nodes (m).
+    rank : ndarray of int, shape (n,)
+        Rank by speed that the mode has on the sections of the nodes, 0 barotropic; −1 where the
+        mode is one of a flat bottom.
     """
 
     depths: Bathymetry
     climatology: Climatology
     bottom: Array
+    rank: Index
 
 
 @dataclass(frozen=True)
@@ -107,47 +111,90 @@ def mooring_answer(
     -------
     MooringAnswer
     """
-    nan = float("nan")
     if not arrival.routes:
-        return MooringAnswer(arrival.status, nan, nan, None)
+        return no_structure(arrival.status)
     route = arrival.routes[0]
     node = int(arrival.target.node[route.end])
     away = float(arrival.target.distance[route.end])
     towards = _azimuth(network, route.steps)
     n2 = water.climatology.profiles(network.lon[node], network.lat[node]).n2[0]
     if not (np.isfinite(n2).all() and np.isfinite(water.bottom[node])):
-        return MooringAnswer(NO_COLUMN, nan, towards, None)
-    speed = float(mode.speed[node])
+        return no_structure(NO_COLUMN)
     if network.equatorial[node]:
         y = away if distance is None else distance
-        view = _flat(mode, node, n2, water, depths, off_equator(y, speed))
-        return MooringAnswer(EQUATOR, y, towards, view)
-    section = _section(network, node, speed, water)
+        column = _column(mode, node, n2, water)
+        offshore = off_equator(y, column.speed)
+        return MooringAnswer(EQUATOR, y, towards, column.view(depths, offshore, np.inf))
+    section = _section(network, node, float(mode.speed[node]), water)
     shelf = float(np.nan_to_num(section.inshore[0]))
     outward = -away if arrival.target.inshore[route.end] else away
     x = max(shelf + outward, 0.0) if distance is None else distance
-    radius = float(deformation_radius(speed, network.lat[node]))
+    radius = float(deformation_radius(mode.speed[node], network.lat[node]))
     gamma = _growth(network, route.steps, _NEIGHBOURHOOD * radius)
-    if abs(network.lat[node]) >= LEAST_LATITUDE and speed * abs(gamma) <= SECTION_LIMIT * omega:
-        modes = _trapped(section, mode.number, n2, water, float(network.lat[node]))
+    if float(mode.speed[node]) * abs(gamma) <= SECTION_LIMIT * omega:
+        rank, lat = int(water.rank[node]), float(network.lat[node])
+        modes = _trapped(section, rank, n2, water, lat)
         if modes is not None and x <= modes.offshore[-1]:
-            return MooringAnswer(
-                SECTION, x, towards, section_at_depth(modes, mode.number, x, depths)
-            )
-    offshore = off_coast(max(x - shelf, 0.0), omega, gamma, speed, speed / radius)
-    view = _flat(mode, node, n2, water, depths, offshore, _depth_at(section, x))
+            return MooringAnswer(SECTION, x, towards, section_at_depth(modes, rank, x, depths))
+    column = _column(mode, node, n2, water)
+    coriolis_here = column.speed / float(deformation_radius(column.speed, network.lat[node]))
+    offshore = off_coast(max(x - shelf, 0.0), omega, gamma, column.speed, coriolis_here)
+    view = column.view(depths, offshore, _depth_at(section, x))
     return MooringAnswer(FLAT_BOTTOM, x, towards, view)
 
 
-def _flat(
-    mode: ModeAtNodes, node: int, n2: Array, water: Water, depths: Sequence[float],
-    offshore: Offshore, bottom: float = np.inf,
-) -> AtDepth:
-    """The mode over the flat bottom of the water beside the node."""
+def no_structure(why: str) -> MooringAnswer:
+    """The answer where there is none."""
+    return MooringAnswer(why, float("nan"), float("nan"), None)
+
+
+def section_rank(network: Network, atlas: Atlas, number: int) -> Index:
+    """Rank by speed that a mode has on the section of every node.
+
+    Parameters
+    ----------
+    network : Network
+    atlas : Atlas
+        The one that the mode travels by.
+    number : int
+        Of the mode.
+
+    Returns
+    -------
+    ndarray of int, shape (n,)
+        −1 for the barotropic mode, and where the atlas has the modes of a flat bottom, all or
+        blended in. An atlas that has them throughout does not say; there rank is the number.
+    """
+    if number == 0:
+        return np.full(network.size, -1)
+    if not isinstance(atlas, TrappedAtlas):
+        return np.full(network.size, number)
+    row = atlas.row(number)
+    sections = np.isfinite(atlas.error[row]) & (np.abs(network.lat) >= BLENDED)
+    return np.where(sections, atlas.rank[row], -1)
+
+
+class _Column(NamedTuple):
+    """A mode over the flat bottom of the water beside a node, and N at its levels."""
+
+    modes: VerticalModes
+    row: int
+    frequency: Array
+
+    @property
+    def speed(self) -> float:
+        return float(self.modes.phase_speed[self.row])
+
+    def view(self, depths: Sequence[float], offshore: Offshore, bottom: float) -> AtDepth:
+        return flat_bottom_at_depth(
+            self.modes, self.row, self.frequency, depths, offshore, bottom
+        )
+
+
+def _column(mode: ModeAtNodes, node: int, n2: Array, water: Water) -> _Column:
     levels = water.climatology.depth
     modes = vertical_modes(n2, levels, float(water.bottom[node]), max(mode.number, 1))
-    frequency = np.sqrt(np.interp(modes.depth, levels, n2))
-    return flat_bottom_at_depth(modes, mode.number, frequency, depths, offshore, bottom)
+    return _Column(modes, mode.number, np.sqrt(np.interp(modes.depth, levels, n2)))
 
 
 def _depth_at(section: Sections, distance: float) -> float:
@@ -167,14 +214,14 @@ def _section(network: Network, node: int, speed: float, water: Water) -> Section
 
 
 def _trapped(
-    section: Sections, number: int, n2: Array, water: Water, lat: float
+    section: Sections, rank: int, n2: Array, water: Water, lat: float
 ) -> ModeSet | None:
     """Modes of a section up to a baroclinic one, nothing where the section does not carry it."""
-    if number == 0 or section.flags[0] & int(QualityFlag.NO_SECTION):
+    if rank < 1 or section.flags[0] & int(QualityFlag.NO_SECTION):
         return None
     try:
         return trapped_modes(
-            *section.monotonic(0), n2, water.climatology.depth, float(coriolis(lat)), count=number
+            *section.monotonic(0), n2, water.climatology.depth, float(coriolis(lat)), count=rank
         )
     except InputError:
         return None

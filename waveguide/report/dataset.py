@@ -13,7 +13,6 @@ from waveguide.propagation.answers import ModeAnswer
 from waveguide.propagation.arrivals import REACHED, Arrival
 from waveguide.propagation.frequency_limits import Criticality
 from waveguide.propagation.legs import Leg
-from waveguide.propagation.moorings import MooringAnswer
 from waveguide.propagation.routes import Route
 from waveguide.propagation.step_response import FATES
 from waveguide.propagation.transfer import LegBudget
@@ -25,6 +24,7 @@ from waveguide.schema import ARRIVALS, assemble, check
 if TYPE_CHECKING:
     import xarray as xr
 
+    from waveguide.propagation.moorings import MooringAnswer
     from waveguide.scenario import Scenario
 
 

@@ -9,13 +9,14 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.propagation.at_depth import signed
-from waveguide.propagation.moorings import MooringAnswer
 from waveguide.report.layout import aligned, filled
 from waveguide.report.text import plain
 from waveguide.schema import ARRIVALS
 
 if TYPE_CHECKING:
     import xarray as xr
+
+    from waveguide.propagation.moorings import MooringAnswer
 
 _VARIABLES = [name for name, v in ARRIVALS.items() if v.dims == ("instrument",)]
 _HEADING = ["Mooring", "Mode", "Off (km)", "Depth (m)", "Isopycnals (m)", "Current (cm/s)",
