@@ -4,12 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
 
 from waveguide.constants import deformation_radius
-from waveguide.modes.vertical import vertical_modes
+from waveguide.modes.vertical import VerticalModes, vertical_modes
 from waveguide.modes.visibility import View, view_of_mode
 from waveguide.network.packaged import family_of, packaged_network
 from waveguide.ocean.stratification import packaged_climatology
@@ -20,6 +21,7 @@ from waveguide.propagation.priors import INPUTS, Priors
 from waveguide.propagation.row_plan import SHARES, RowPlan
 from waveguide.propagation.sampling import first_order_shares, normal_sample, percentiles
 from waveguide.scenario import Scenario
+from waveguide.scenario.fields import HIGHEST_MODE
 
 Array = NDArray[np.float64]
 Progress = Callable[[str], None]
@@ -121,8 +123,15 @@ def _mean_speed(arrival: Arrival) -> float:
 def _view(mode: int, node: int, lon: float, lat: float) -> View | None:
     """What to measure in the water beside a node, by the packaged depths and stratification."""
     depth = float(packaged_network(family_of(mode))[1].depth[node])
+    column = _column(lon, lat, depth) if np.isfinite(depth) else None
+    return None if column is None else view_of_mode(column[0], mode, *column[1:])
+
+
+@cache
+def _column(lon: float, lat: float, depth: float) -> tuple[VerticalModes, Array, Array] | None:
+    """Modes 0 to 3 of a column of the packaged ocean, with its N² and its depths."""
     profile = packaged_climatology().profiles(lon, lat)
-    if not (np.isfinite(depth) and np.isfinite(profile.n2).all()):
+    n2 = profile.n2[0]
+    if not np.isfinite(n2).all():
         return None
-    modes = vertical_modes(profile.n2[0], profile.depth, depth, max(mode, 1))
-    return view_of_mode(modes, mode, profile.n2[0], profile.depth)
+    return vertical_modes(n2, profile.depth, depth, HIGHEST_MODE), n2, profile.depth

@@ -130,8 +130,8 @@ def first_order_shares(sample: Array, values: Array) -> Array:
     away = values - values.mean(axis=1, keepdims=True)
     variance = np.sum(away**2, axis=1)
     varies = variance > 1e-24 * np.sum(values**2, axis=1)
-    x = sample
-    basis = (x, (x**2 - 1.0) / np.sqrt(2.0), (x**3 - 3.0 * x) / np.sqrt(6.0))
+    x, square = sample, sample * sample
+    basis = (x, (square - 1.0) / np.sqrt(2.0), x * (square - 3.0) / np.sqrt(6.0))
     explained = sum((away @ polynomial) ** 2 for polynomial in basis) / sample.shape[0]
     share = np.asarray(explained) / np.where(varies, variance, 1.0)[:, None]
     share = share - len(basis) / sample.shape[0]
