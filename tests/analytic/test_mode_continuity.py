@@ -35,12 +35,12 @@ def test_a_mode_is_followed_through_a_crossing_and_back():
 
 
 def test_a_mode_that_never_crosses_back_returns_to_its_rank_where_it_is_scattered():
-    overlap = ring(600)
+    overlap = ring(200)
     exchange(overlap, 99, 0, 1)
-    overlap[149, :2, :2] = np.sqrt(0.5) * np.array([[1.0, 1.0], [-1.0, 1.0]])
-    ranks = followed_ranks(overlap, np.full(600, STEP), 2)
-    assert ranks[120, 0] == 1  # beyond the crossing
-    assert ranks[160, 0] == 0  # beyond the scattering: 450 nodes cost 9 nepers, that cost 0.35
+    overlap[104, :2, :2] = np.sqrt(0.5) * np.array([[1.0, 1.0], [-1.0, 1.0]])
+    ranks = followed_ranks(overlap, np.full(200, STEP), 2)
+    assert ranks[102, 0] == 1  # beyond the crossing
+    assert ranks[110, 0] == 0  # beyond the scattering: 95 nodes would cost 19 nepers, it costs 0.35
 
 
 def test_an_avoided_crossing_that_is_resolved_keeps_the_rank():

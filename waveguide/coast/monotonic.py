@@ -29,6 +29,10 @@ SHALLOWEST_LEVEL = 5.0
 LEAST_STEP = 20.0
 """Isobaths are kept this far apart (m): all of them together within a cell of fine data."""
 
+LEAST_RATIO = 1.004
+"""Each isobath is deeper than the one before by at least this factor: thinner layers of weak
+stratification would spoil the condition of the section problem."""
+
 _CHUNK = 50
 
 
@@ -50,7 +54,7 @@ def isobaths(offshore: Array, depth: Array, weight: Array) -> tuple[Array, Array
         Where each isobath lies, on the axis of `offshore` and increasing (m); −inf for isobaths
         shallower than the section's inner end and inf for those deeper than its outer one.
     level : ndarray, shape (n, LEVELS)
-        Their depths (m), not decreasing.
+        Their depths (m), increasing.
     """
     used = weight > 0.0
     h = np.where(used, depth, 0.0)
@@ -75,7 +79,9 @@ def _levels(h: Array, used: NDArray[np.bool_]) -> Array:
     # just less than the depth of a plain, so that the isobath lies at its edge
     present = np.take_along_axis(ascending, rank, axis=1) * (1.0 - 1e-5)
     present = np.where(np.isfinite(present), np.maximum(present, SHALLOWEST_LEVEL), 1e-3)
-    return np.sort(np.concatenate([even, present], axis=1), axis=1)
+    level = np.sort(np.concatenate([even, present], axis=1), axis=1)
+    apart = LEAST_RATIO ** np.arange(LEVELS)
+    return np.asarray(np.maximum.accumulate(level / apart, axis=1) * apart)
 
 
 def _cuts(h: Array, weight: Array, level: Array) -> Index:

@@ -129,12 +129,14 @@ def _node_modes(inputs: RunInputs, row: int) -> ModeSet | None:
     if known.sum() < 2 or not np.isfinite(inputs.n2[row]).all():
         return None
     try:
-        return trapped_modes(
+        modes = trapped_modes(
             inputs.offshore[row, known], inputs.depth[row, known], inputs.n2[row],
             inputs.n2_depth, float(inputs.f[row]), count=RANKS,
         )
     except WaveguideError:
         return None  # the caller falls back on a flat bottom and marks the node
+    # rounding has spoilt the problem where a speed is not positive
+    return modes if np.all(modes.phase_speed > 0.0) else None
 
 
 def all_run_modes(
