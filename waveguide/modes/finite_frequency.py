@@ -18,7 +18,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.optimize import brentq
 
 from waveguide.constants import GRAVITY
 from waveguide.errors import InputError
@@ -218,6 +217,8 @@ def _wavenumber(guide: Guide, n: int, frequency: float) -> float:
     two modes), so secants approach the root from the left; once one has passed it, the root is
     bracketed. Where the difference rises while it is still positive there is no root.
     """
+    from scipy.optimize import brentq  # here, because most answers never need it
+
     steepness = abs(guide.f) / frequency
 
     def excess(wavenumber: float) -> float:
@@ -270,6 +271,7 @@ def free_frequency(guide: Guide, n: int, wavenumber: float) -> float:
     float
         ω (1/s); NaN where it would exceed 0.99 |f|.
     """
+    from scipy.optimize import brentq  # as in `_wavenumber`
 
     def excess(frequency: float) -> float:
         kappa = float(guide.eigenvalues(wavenumber, frequency)[n])

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.optimize import isotonic_regression
 
 from waveguide.errors import InputError
 
@@ -88,6 +87,8 @@ def monotonic_depth(offshore: ArrayLike, depth: ArrayLike) -> Array:
     InputError
         As `checked_section`.
     """
+    from scipy.optimize import isotonic_regression  # here, because most answers never need it
+
     x, h = checked_section(offshore, depth)
     width = np.gradient(x)
     result: Array = np.exp(isotonic_regression(np.log(h), weights=width).x)

@@ -70,7 +70,7 @@ def _arrival(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
     routes = routes_of(dataset, target, mode)
     return {
         **_identity(dataset, target, mode),
-        **{name: plain_value(dataset[name].values[target, mode]) for name in _ROW},
+        **{name: plain_value(dataset.variables[name].values[target, mode]) for name in _ROW},
         "legs": _legs(dataset, routes[0]) if routes else [],
         "at_depth": _at_depth(dataset, target, mode),
     }
@@ -78,12 +78,12 @@ def _arrival(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
 
 def _at_depth(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, Any]]:
     """What the instruments of a mooring see of a mode, one entry for each depth."""
-    mine = (dataset["instrument_target"].values == target) & (
-        dataset["instrument_mode"].values == mode
+    mine = (dataset.variables["instrument_target"].values == target) & (
+        dataset.variables["instrument_mode"].values == mode
     )
     return [
         {
-            name.removeprefix("instrument_"): plain_value(dataset[name].values[i])
+            name.removeprefix("instrument_"): plain_value(dataset.variables[name].values[i])
             for name in _INSTRUMENT
         }
         for i in np.flatnonzero(mine)
@@ -91,24 +91,26 @@ def _at_depth(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, Any
 
 
 def _alternative(dataset: xr.Dataset, route: int) -> dict[str, Any]:
-    target, mode = (int(dataset[f"route_{dim}"].values[route]) for dim in ("target", "mode"))
+    target, mode = (
+        int(dataset.variables[f"route_{dim}"].values[route]) for dim in ("target", "mode")
+    )
     return {
         **_identity(dataset, target, mode),
-        "kind": plain_value(dataset["route_kind"].values[route]),
-        "via": plain_value(dataset["route_via"].values[route]),
-        "front_time_days": plain_value(dataset["route_front_time_days"].values[route]),
-        "amplitude_ratio": plain_value(dataset["route_amplitude_ratio"].values[route]),
-        "path_length_km": plain_value(dataset["route_length_km"].values[route]),
+        "kind": plain_value(dataset.variables["route_kind"].values[route]),
+        "via": plain_value(dataset.variables["route_via"].values[route]),
+        "front_time_days": plain_value(dataset.variables["route_front_time_days"].values[route]),
+        "amplitude_ratio": plain_value(dataset.variables["route_amplitude_ratio"].values[route]),
+        "path_length_km": plain_value(dataset.variables["route_length_km"].values[route]),
         "legs": _legs(dataset, route),
     }
 
 
 def _identity(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
     return {
-        "target": plain_value(dataset["target"].values[target]),
-        "mode": plain_value(dataset["mode"].values[mode]),
+        "target": plain_value(dataset.variables["target"].values[target]),
+        "mode": plain_value(dataset.variables["mode"].values[mode]),
         "target_position": [
-            plain_value(dataset[f"target_{axis}"].values[target])
+            plain_value(dataset.variables[f"target_{axis}"].values[target])
             for axis in ("longitude", "latitude")
         ],
     }
@@ -120,7 +122,7 @@ def _legs(dataset: xr.Dataset, route: int) -> list[dict[str, Any]]:
 
 def _leg(dataset: xr.Dataset, leg: int) -> dict[str, Any]:
     def value(name: str) -> Any:
-        return plain_value(dataset[f"leg_{name}"].values[leg])
+        return plain_value(dataset.variables[f"leg_{name}"].values[leg])
 
     return {
         "kind": value("kind"),
