@@ -169,7 +169,9 @@ def _on_route(line: RouteLine, where: Array, spacing: float) -> _OnRoute:
     away = arc(chords)
     outward = _seaward_distance(line, distance, place, where[cell], nearest)
     shelf = max(LANDWARD, 1.5 * spacing)
-    keep = (away <= reach[nearest]) & (equatorial[nearest] | (outward >= -shelf))
+    beyond = (nearest == 0) | (nearest == distance.size - 1)  # before the start, after the end
+    within = away <= np.where(beyond, spacing, reach[nearest])
+    keep = within & (equatorial[nearest] | (outward >= -shelf))
     cell, away, nearest = cell[keep], away[keep], nearest[keep]
     decay = np.where(equatorial[nearest], (away / width[nearest]) ** 2, away / width[nearest])
     edges = _bin_edges(float(distance[-1]), spacing)

@@ -110,7 +110,9 @@ def _time_dimension(path: Path) -> str:
 
 
 def _is_time(variable: xr.Variable) -> bool:
-    said = "since" in str(variable.attrs.get("units", ""))
+    said = any(  # xarray moves the units of times that it decodes to the encoding
+        "since" in str(kept.get("units", "")) for kept in (variable.attrs, variable.encoding)
+    )
     return said or variable.attrs.get("standard_name") == "time" or variable.dtype.kind == "M"
 
 
