@@ -167,7 +167,7 @@ def read_stratification(path: Path, lon: float, lat: float) -> Column:
         )
     if from_n2:
         return _from_n2(depth, values[0], file)
-    return _from_water(depth, values[0], values[1], lon, lat, file)
+    return column_from_water(depth, values[0], values[1], lon, lat, file)
 
 
 def _from_n2(depth: Array, n2: Array, file: str) -> Column:
@@ -184,10 +184,31 @@ def _from_n2(depth: Array, n2: Array, file: str) -> Column:
     return Column(depth, stabilise(n2, levels), float(depth[-1]), file, _mixed(n2))
 
 
-def _from_water(
+def column_from_water(
     depth: Array, temperature: Array, salinity: Array, lon: float, lat: float, file: str
 ) -> Column:
-    """N² by TEOS-10 halfway between the depths; unstable parts are mixed."""
+    """N² by TEOS-10 halfway between the depths; unstable parts are mixed.
+
+    Parameters
+    ----------
+    depth : ndarray, shape (n,)
+        Increasing (m).
+    temperature, salinity : ndarray, shape (n,)
+        In situ (°C) and practical.
+    lon, lat : float
+        Position, degrees.
+    file : str
+        Where it is from, for the messages.
+
+    Returns
+    -------
+    Column
+
+    Raises
+    ------
+    InputError
+        If values are none of sea water, or there are fewer than three.
+    """
     for name, values, low, high in (
         ("temperature", temperature, -5.0, 45.0), ("salinity", salinity, 0.0, 60.0),
     ):
