@@ -56,7 +56,7 @@ def test_ten_years_to_all_nodes_of_the_pacific(winds):
     east = network.lon % 360.0
     pacific = (east > 115.0) & (east < 285.0) & (np.abs(network.lat) < 55.0)
     before = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss
-    start = time.perf_counter()
+    start, busy = time.perf_counter(), time.process_time()
     record = open_wind([winds], depths, "Large and Pond 1981")
     answered = 0
     for number in (1, 2, 3):
@@ -69,10 +69,11 @@ def test_ten_years_to_all_nodes_of_the_pacific(winds):
         node, level = nodes_response(network, mode, physics, forcing, pacific, 730.0 * DAY)
         assert np.isfinite(level).all()
         answered += node.size
-    seconds = time.perf_counter() - start
+    seconds, worked = time.perf_counter() - start, time.process_time() - busy
     peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss * 1024
-    print(f"\n{answered} nodes and modes, {DAYS} days: {seconds:.1f} s, {peak / 1e9:.2f} GB "
+    print(f"\n{answered} nodes and modes, {DAYS} days: {seconds:.1f} s by the clock, "
+          f"{worked:.1f} s of processors, {peak / 1e9:.2f} GB "
           f"({(peak - before * 1024) / 1e9:.2f} GB more than before)")
     assert answered > 3 * 5000
-    assert seconds < LONGEST
+    assert worked < LONGEST  # not by the clock, which runs on while others use the machine
     assert peak < LARGEST

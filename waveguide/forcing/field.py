@@ -19,7 +19,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from waveguide.forcing.characteristics import add_delayed, held_on, taken_back
-from waveguide.forcing.influence import FAINTEST, search_upstream, step_increment
+from waveguide.forcing.influence import Inflow, search_upstream, step_increment
 from waveguide.forcing.projection import Forcing
 from waveguide.network.graph import Network
 from waveguide.propagation.losses import StepPhysics
@@ -27,6 +27,9 @@ from waveguide.propagation.modes import ModeAtNodes
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
+
+FAINTEST = 0.01
+"""Share of amplitude below which a way is not followed further upstream."""
 
 
 @dataclass(frozen=True)
@@ -123,11 +126,12 @@ def nodes_response(
     """
     chains = chains_of(network, physics)
     increment = step_increment(network, mode, physics)
+    inflow = Inflow.of(chains.tail, chains.head, chains.time, chains.loss, chains.time)
     outputs = [_leaving(physics, forcing, increment, chains, k) for k in range(chains.tail.size)]
     wanted = np.maximum.reduceat(nodes[network.head[chains.step]], chains.first[:-1])
     found: dict[int, Array] = {}
     for entry in np.unique(chains.tail[wanted]).tolist():
-        entering = _entering(chains, outputs, entry, forcing, longest)
+        entering = _entering(inflow, outputs, entry, forcing, longest)
         found[entry] = entering
         for k in np.nonzero(wanted & (chains.tail == entry))[0].tolist():
             run = chains.step[chains.first[k] : chains.first[k + 1]]
@@ -135,7 +139,7 @@ def nodes_response(
             found.update(zip(network.head[run[:-1]].tolist(), levels, strict=False))
     # The end of a chain is a junction: there all that comes in adds up.
     for node in np.setdiff1d(chains.head[wanted], chains.tail[wanted]).tolist():
-        found[node] = _entering(chains, outputs, node, forcing, longest)
+        found[node] = _entering(inflow, outputs, node, forcing, longest)
     order = [node for node in sorted(found) if nodes[node]]
     levels32 = [(physics.potential[n] * found[n]).astype(np.float32) for n in order]
     empty = np.zeros((0, forcing.time.size), np.float32)
@@ -143,13 +147,11 @@ def nodes_response(
 
 
 def _entering(
-    chains: Chains, outputs: list[Array | None], node: int, forcing: Forcing, longest: float
+    inflow: Inflow, outputs: list[Array | None], node: int, forcing: Forcing, longest: float
 ) -> Array:
     """What leaves the chains upstream, as it comes in at a node (m over the potential)."""
     total = np.zeros(forcing.time.size)
-    rows = search_upstream(
-        chains.tail, chains.head, chains.time, chains.loss, chains.time, node, longest, FAINTEST
-    )
+    rows = search_upstream(inflow, node, longest, FAINTEST)
     share, lag = np.exp(-rows.loss), rows.delay / forcing.step
     for row, chain in enumerate(rows.step.tolist()):
         output = outputs[chain]

@@ -180,10 +180,8 @@ def influence(
     -------
     Influence
     """
-    step, parent, loss, delay, distance = search_upstream(
-        network.tail, network.head, physics.time, physics.loss, network.length, node, longest,
-        faintest,
-    )
+    inflow = Inflow.of(network.tail, network.head, physics.time, physics.loss, network.length)
+    step, parent, loss, delay, distance = search_upstream(inflow, node, longest, faintest)
     at_target = physics.potential[node] * factor * np.exp(-loss)
     return Influence(
         step=step,
@@ -218,18 +216,44 @@ class Upstream(NamedTuple):
     distance: Array
 
 
-def search_upstream(
-    tail: Index, head: Index, time: Array, cost: Array, length: Array, node: int, longest: float,
-    faintest: float,
-) -> Upstream:
+@dataclass(frozen=True)
+class Inflow:
+    """A graph laid out for searches against the direction of travel.
+
+    Attributes
+    ----------
+    first : list of int
+        Where the steps that end at a node begin in `into`.
+    into : list of int
+        Steps by the node they end at.
+    tail : list of int
+    time, loss, length : list of float
+        Of each step (s, nepers, m).
+    """
+
+    first: list[int]
+    into: list[int]
+    tail: list[int]
+    time: list[float]
+    loss: list[float]
+    length: list[float]
+
+    @classmethod
+    def of(cls, tail: Index, head: Index, time: Array, loss: Array, length: Array) -> Inflow:
+        """Lay steps out, all arrays of shape (m,)."""
+        order = np.argsort(head, kind="stable")
+        count = int(max(tail.max(initial=0), head.max(initial=0))) + 2
+        first = np.searchsorted(head[order], np.arange(count + 1))
+        return cls(first.tolist(), order.tolist(), tail.tolist(), time.tolist(), loss.tolist(),
+                   length.tolist())
+
+
+def search_upstream(inflow: Inflow, node: int, longest: float, faintest: float) -> Upstream:
     """Dijkstra's method against the direction of travel, by loss and then by time.
 
     Parameters
     ----------
-    tail, head : ndarray of int, shape (m,)
-        Nodes of the steps.
-    time, cost, length : ndarray, shape (m,)
-        Of each step (s, nepers, m).
+    inflow : Inflow
     node : int
     longest, faintest : float
         As for `influence`.
@@ -239,13 +263,10 @@ def search_upstream(
     Upstream
         Every step once whose end leads to the node.
     """
-    order = np.argsort(head, kind="stable")
-    count = int(max(tail.max(initial=0), head.max(initial=0), node)) + 1
-    first = np.searchsorted(head[order], np.arange(count + 1)).tolist()
-    into, tails = order.tolist(), tail.tolist()
-    times, costs, lengths = time.tolist(), cost.tolist(), length.tolist()
+    first, into, tail = inflow.first, inflow.into, inflow.tail
+    time, cost, length = inflow.time, inflow.loss, inflow.length
     most = float(-np.log(faintest))
-    done = bytearray(count)
+    done = bytearray(len(first))
     queue = [(0.0, 0.0, 0.0, node, -1)]
     rows: list[tuple[int, int, float, float, float]] = []
     while queue:
@@ -254,13 +275,13 @@ def search_upstream(
             continue
         done[here] = True
         for step in into[first[here] : first[here + 1]]:
-            onward, later = loss + costs[step], delay + times[step]
+            onward, later = loss + cost[step], delay + time[step]
             if not (math.isfinite(onward) and math.isfinite(later)):
                 continue
             rows.append((step, parent, loss, delay, distance))
             if onward <= most and later <= longest:
-                way = distance + lengths[step]
-                heapq.heappush(queue, (onward, later, way, tails[step], len(rows) - 1))
+                way = distance + length[step]
+                heapq.heappush(queue, (onward, later, way, tail[step], len(rows) - 1))
     table = np.array(rows, dtype=float).reshape(-1, 5).T
     return Upstream(
         table[0].astype(np.int64), table[1].astype(np.int64), table[2], table[3], table[4]
