@@ -59,9 +59,9 @@ def test_every_shipped_scenario_runs_and_reaches_most_of_its_targets(name):
     reached = arrivals["status"].values == "reached"
     assert reached.mean() > 0.8
     speed = arrivals["mean_speed_m_s"].where(arrivals["mode"] > 0).values[reached]
-    # first and second baroclinic modes of the world ocean, from the pole to the equator
+    # modes 1 and 2 of real sections: slower than a flat bottom's at the pole, faster on wide shelves
     assert np.nanmin(speed, initial=1.0) > 0.2
-    assert np.nanmax(speed, initial=1.0) < 3.3
+    assert np.nanmax(speed, initial=1.0) < 6.0
 
 
 def test_legs_add_up_to_their_rows():
@@ -215,8 +215,9 @@ def test_own_bathymetry_changes_the_speeds(tmp_path):
     packaged = waveguide.arrivals(read_scenario(written(tmp_path)))
     assert own.attrs["ocean"] == "own files"
     ratio = float(own["mean_speed_m_s"][0, 0] / packaged["mean_speed_m_s"][0, 0])
-    # the trench of 6 km is gone: c₁ is a few per cent lower over 4500 m, not the same
-    assert 0.85 < ratio < 0.999
+    # own files have the flat bottom of their deep water, 4500 m here, without the shelf and slope
+    # that make the sections of Peru faster by a quarter (2.3 against 2.9 m/s)
+    assert 0.7 < ratio < 0.95
 
 
 def test_own_bathymetry_that_does_not_cover_the_route_is_refused_by_place(tmp_path):
