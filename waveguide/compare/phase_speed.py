@@ -27,7 +27,7 @@ from waveguide.compare.lags import CONFIDENCE
 Array = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 
-STRETCHES = np.geomspace(0.33, 3.0, 221)
+STRETCHES = np.geomspace(1.0 / 3.0, 3.0, 221)
 """Factors α that are tried, 1 % apart."""
 
 GROUPS = 10
@@ -43,6 +43,9 @@ LEAST_FILLED = 0.9
 """Bins need values at this share of the times."""
 
 LEAST_BINS = 6
+
+MOST_BINS = 40
+"""More bins than this are averaged with their neighbours before they are lined up."""
 
 SEED = 20310305
 
@@ -101,17 +104,18 @@ def phase_speed(diagram: Array, days: Array, distance: Array, travel: Array) -> 
     if kept.sum() < LEAST_BINS:
         return _nothing(f"only {int(kept.sum())} bins of the route have values")
     x, s, lag = standardised(diagram[:, kept], days), distance[kept], travel[kept]
-    lag = lag - lag[0]
-    step = float(days[1] - days[0])
-    if not lag[-1] > 2.0 * step:
+    spent, step = float(lag[-1] - lag[0]), float(days[1] - days[0])
+    if not spent > 2.0 * step:
         return _nothing("the signal is predicted to pass within two time steps of the output")
-    stacks, power = group_stacks(x, step, lag)
-    curve = semblance(stacks, power)
+    x, lag = thinned(x, lag - lag[0])
+    stacker = Stacker.of(x, step, lag)
+    stacks, power = stacker.stacks(x), stacker.power(x)
+    curve = semblance(stacks.sum(axis=0), power)
     best, factor = int(np.argmax(curve)), best_stretch(curve)
-    predicted = float((s[-1] - s[0]) / lag[-1] / 86400.0)
+    predicted = float((s[-1] - s[0]) / spent / 86400.0)
     error = _jackknife(stacks, power)
     half = float(student.ppf(0.5 * (1.0 + CONFIDENCE), GROUPS - 1)) * error
-    chance = _chance(stacks, power, float(curve.max()))
+    chance = _chance(x, stacker, float(curve.max()))
     low, high = predicted / factor / np.exp(half), predicted / factor * np.exp(half)
     word, reason = _judge(curve, best, chance, predicted, (low, predicted / factor, high))
     return PhaseSpeed(
@@ -131,53 +135,107 @@ def standardised(diagram: Array, days: Array) -> Array:
     return np.asarray(np.nan_to_num(x / np.where(spread > 0.0, spread, 1.0)))
 
 
-def group_stacks(x: Array, step: float, lag: Array) -> tuple[ComplexArray, Array]:
-    """Spectra of the stacks of ten parts of the route, for all `STRETCHES`.
+def thinned(x: Array, lag: Array) -> tuple[Array, Array]:
+    """Neighbouring bins averaged to `MOST_BINS`, and their mean lag; shapes (k, nt) and (k,)."""
+    groups = np.array_split(np.arange(lag.size), min(MOST_BINS, lag.size))
+    return (
+        np.array([x[group].mean(axis=0) for group in groups]),
+        np.array([lag[group].mean() for group in groups]),
+    )
+
+
+@dataclass(frozen=True)
+class Stacker:
+    """Adds up parts of the route at every stretch, for any series at the same places.
 
     A series taken α T later has its spectrum times exp(2πi f α T); sums of squares over time are
-    sums over frequency (Parseval). The series are padded with zeros for the longest lag, so that
-    none runs into the other end. Frequencies above those with 99.9 % of the energy are left out.
+    sums over frequency (Parseval). Series are padded with zeros for the longest lag, so that
+    none runs into the other end.
+
+    Attributes
+    ----------
+    size : int
+        Of the padded series.
+    turns : ndarray of complex, shape (nfrequency, nstretch, nbin)
+        exp(2πi f α T) with the weight of each frequency in a sum over time.
+    groups : ndarray of int, shape (ngroup,)
+        First bin of each part of the route.
+    """
+
+    size: int
+    turns: ComplexArray
+    groups: NDArray[np.intp]
+
+    @classmethod
+    def of(cls, x: Array, step: float, lag: Array) -> Stacker:
+        """Lay out the turns for series of given places and length.
+
+        Parameters
+        ----------
+        x : ndarray, shape (nbin, nt)
+            Sets the length, and the frequencies: those up to which 99.9 % of its energy lie.
+        step : float
+            Days.
+        lag : ndarray, shape (nbin,)
+            Predicted lag of each bin (days).
+
+        Returns
+        -------
+        Stacker
+        """
+        pad = int(np.ceil(STRETCHES[-1] * lag[-1] / step)) + 1
+        size = next_fast_len(x.shape[1] + pad, real=True)
+        frequency = np.fft.rfftfreq(size, step)
+        energy = np.cumsum(np.sum(np.abs(np.fft.rfft(x, size, axis=1)) ** 2, axis=0))
+        used = int(np.searchsorted(energy, 0.999 * energy[-1])) + 1
+        weight = np.full(frequency.size, 2.0 / size)  # both signs of frequency
+        weight[0] /= 2.0
+        if size % 2 == 0:
+            weight[-1] /= 2.0
+        phase = 2j * np.pi * frequency[:used, None, None] * STRETCHES[:, None] * lag
+        groups = np.array_split(np.arange(lag.size), min(GROUPS, lag.size))
+        first = np.array([group[0] for group in groups])
+        return cls(size, np.exp(phase) * np.sqrt(weight[:used, None, None]), first)
+
+    def stack(self, x: Array) -> ComplexArray:
+        """Spectrum of the sum over all bins, shape (nfrequency, nstretch)."""
+        return np.asarray((self.turns @ self._spectrum(x))[..., 0])
+
+    def stacks(self, x: Array) -> ComplexArray:
+        """The same of each part of the route, shape (ngroup, nfrequency, nstretch)."""
+        spectrum = self._spectrum(x)
+        ends = [*self.groups[1:], len(x)]
+        return np.array([
+            (self.turns[..., first:last] @ spectrum[:, first:last])[..., 0]
+            for first, last in zip(self.groups, ends, strict=True)
+        ])
+
+    def _spectrum(self, x: Array) -> ComplexArray:
+        """Of every bin at the frequencies in use, shape (nfrequency, nbin, 1)."""
+        return np.asarray(np.fft.rfft(x, self.size, axis=1)[:, : len(self.turns)].T[..., None])
+
+    def power(self, x: Array) -> Array:
+        """Number of bins and Σ x² of each part, shape (ngroup, 2)."""
+        total = np.add.reduceat(np.sum(x**2, axis=1), self.groups)
+        return np.stack([np.diff(np.append(self.groups, len(x))), total], axis=1)
+
+
+def semblance(stack: ComplexArray, power: Array) -> Array:
+    """S(α) for all `STRETCHES`.
 
     Parameters
     ----------
-    x : ndarray, shape (nbin, nt)
-    step : float
-        Days.
-    lag : ndarray, shape (nbin,)
-        Predicted lag of each bin (days).
+    stack : ndarray of complex, shape (nfrequency, nstretch)
+        Sum over all bins.
+    power : ndarray, shape (ngroup, 2)
+        Number of bins and Σ x² of each part.
 
     Returns
     -------
-    stacks : ndarray of complex, shape (ngroup, nstretch, nfrequency)
-        From frequency zero up.
-        With the weight of each frequency in the sum over time.
-    power : ndarray, shape (ngroup, 2)
-        Number of bins and Σ x² of each group.
+    ndarray, shape (nstretch,)
     """
-    size = next_fast_len(x.shape[1] + int(np.ceil(STRETCHES[-1] * lag[-1] / step)) + 1, real=True)
-    frequency = np.fft.rfftfreq(size, step)
-    spectrum = np.fft.rfft(x, size, axis=1)
-    weight = np.full(frequency.size, 2.0)  # both signs of frequency
-    weight[0] = 1.0
-    if size % 2 == 0:
-        weight[-1] = 1.0
-    energy = np.cumsum(np.sum(np.abs(spectrum) ** 2, axis=0))
-    loud = np.arange(frequency.size) <= np.searchsorted(energy, 0.999 * energy[-1])
-    phase = 2j * np.pi * frequency[loud]
-    groups = np.array_split(np.arange(lag.size), min(GROUPS, lag.size))
-    stacks = np.empty((len(groups), STRETCHES.size, int(loud.sum())), complex)
-    for g, group in enumerate(groups):
-        for k, factor in enumerate(STRETCHES):
-            turned = np.exp(factor * np.outer(lag[group], phase))
-            stacks[g, k] = np.einsum("ij,ij->j", spectrum[group][:, loud], turned)
-    power = np.array([[len(group), np.sum(x[group] ** 2)] for group in groups])
-    return stacks * np.sqrt(weight[loud] / size), power
-
-
-def semblance(stacks: ComplexArray, power: Array) -> Array:
-    """S(α) for all `STRETCHES` from the stacks of some groups, shape (nstretch,)."""
     count, total = power.sum(axis=0)
-    return np.asarray(np.sum(np.abs(stacks.sum(axis=0)) ** 2, axis=1) / (count * total))
+    return np.asarray(np.sum(np.abs(stack) ** 2, axis=0) / (count * total))
 
 
 def best_stretch(curve: Array) -> float:
@@ -192,28 +250,28 @@ def best_stretch(curve: Array) -> float:
 
 def _jackknife(stacks: ComplexArray, power: Array) -> float:
     """Standard error of ln α from leaving out parts of the route in turn."""
-    n = len(stacks)
+    n, whole = len(stacks), stacks.sum(axis=0)
     draws = np.array([
-        np.log(best_stretch(semblance(np.delete(stacks, g, axis=0), np.delete(power, g, axis=0))))
+        np.log(best_stretch(semblance(whole - stacks[g], np.delete(power, g, axis=0))))
         for g in range(n)
     ])
     return float(np.sqrt((n - 1.0) / n * np.sum((draws - draws.mean()) ** 2)))
 
 
-def _chance(stacks: ComplexArray, power: Array, real: float) -> float:
-    """Share of diagrams whose groups of bins are shifted at random that line up as well.
+def _chance(x: Array, stacker: Stacker, real: float) -> float:
+    """Share of diagrams whose parts are turned in time at random that line up as well.
 
-    Neighbouring bins share their noise, so whole groups are shifted, on the padded ring of times:
-    a shift multiplies a spectrum by exp(2πi f τ), with f counted in steps of the ring.
+    Neighbouring bins share their noise, so whole parts of the route are turned together.
     """
     generator = np.random.default_rng(SEED)
-    number = np.arange(stacks.shape[2])
+    power = stacker.power(x)
+    parts = np.searchsorted(stacker.groups, np.arange(len(x)), side="right") - 1
+    place = np.arange(x.shape[1])
     count = 0
     for _ in range(NULLS):
-        turn = np.exp(2j * np.pi * np.outer(generator.uniform(size=len(stacks)), number))
-        shifted = np.einsum("gf,gkf->kf", turn, stacks)
-        highest = float(np.sum(np.abs(shifted) ** 2, axis=1).max() / np.prod(power.sum(axis=0)))
-        count += highest >= real
+        turn = generator.integers(x.shape[1], size=len(stacker.groups))[parts]
+        turned = np.take_along_axis(x, (place + turn[:, None]) % x.shape[1], axis=1)
+        count += int(semblance(stacker.stack(turned), power).max() >= real)
     return (1.0 + count) / (1.0 + NULLS)
 
 
