@@ -20,7 +20,8 @@ from waveguide.schema import check
 ALL = get_args(Format)
 FILES = [
     "arrivals.csv", "arrivals.nc", "budget.csv", "distance_time.pdf", "distance_time.png",
-    "legs.csv", "map.pdf", "map.png", "moorings.csv", "routes.geojson", "waveforms.csv", "waveforms.pdf",
+    "legs.csv", "map.pdf", "map.png", "moorings.csv", "routes.geojson", "waveforms.csv",
+    "waveforms.pdf",
     "waveforms.png",
 ]  # fmt: skip
 

@@ -59,7 +59,7 @@ def test_every_shipped_scenario_runs_and_reaches_most_of_its_targets(name):
     reached = arrivals["status"].values == "reached"
     assert reached.mean() > 0.8
     speed = arrivals["mean_speed_m_s"].where(arrivals["mode"] > 0).values[reached]
-    # modes 1 and 2 of real sections: slower than a flat bottom's at the pole, faster on wide shelves
+    # modes 1 and 2 of real sections: slow at the pole, faster than a flat bottom's on shelves
     assert np.nanmin(speed, initial=1.0) > 0.2
     assert np.nanmax(speed, initial=1.0) < 6.0
 

@@ -52,7 +52,7 @@ class ModeAtNodes:
 
 
 SHELF_DEPTH = 100.0
-"""Depth (m) that stands for the shelf where bottom friction acts (our choice: half a shelf break)."""
+"""Depth (m) that stands for the shelf where bottom friction acts, half a shelf break (chosen)."""
 
 
 def arrested_share(drag: float, omega: float) -> float:

@@ -106,5 +106,6 @@ def _draw_legs(ax: Axes, diagram: Diagram) -> None:
         if first > 0:
             ax.axvline(a, color="0.3", lw=0.8)
         if (b - a) * 1e3 > 0.07 * length:
-            ax.text(0.5 * (a + b), 1.01, line.kinds[int(line.leg[(first + last) // 2])], fontsize=8.5,
+            kind = line.kinds[int(line.leg[(first + last) // 2])]
+            ax.text(0.5 * (a + b), 1.01, kind, fontsize=8.5,
                     ha="center", va="bottom", transform=ax.get_xaxis_transform())
