@@ -9,14 +9,22 @@ from functools import cache
 import numpy as np
 from numpy.typing import NDArray
 
-from waveguide.constants import deformation_radius
-from waveguide.modes.vertical import VerticalModes, vertical_modes
-from waveguide.modes.visibility import View, view_of_mode
-from waveguide.network.packaged import family_of, packaged_network
+from waveguide.coast.section import cross_shelf_sections
+from waveguide.coast.section_quality import QualityFlag
+from waveguide.constants import coriolis, deformation_radius
+from waveguide.errors import InputError
+from waveguide.modes.modeset import ModeSet
+from waveguide.modes.trapped import trapped_modes
+from waveguide.modes.vertical import vertical_modes
+from waveguide.modes.visibility import View, view_of_mode, view_of_section
+from waveguide.network.packaged import family_of
+from waveguide.network.trapped_store import packaged_guide
+from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.stratification import packaged_climatology
 from waveguide.pipeline import Study, study
 from waveguide.propagation.arrivals import REACHED, Arrival
 from waveguide.propagation.ensemble import Members, chance_window, members, sensitivity
+from waveguide.propagation.moorings import section_rank
 from waveguide.propagation.priors import INPUTS, Priors
 from waveguide.propagation.row_plan import SHARES, RowPlan
 from waveguide.propagation.sampling import first_order_shares, normal_sample, percentiles
@@ -88,6 +96,7 @@ def _row(
     node = int(arrival.target.node[arrival.routes[0].end])
     shares = first_order_shares(sample, np.stack([found.half_height, found.log_height]))
     last = found.half_height if done.source.lasting else found.peak
+    real = scenario.ocean.source != "uniform"
     return RowPlan(
         front=percentiles(found.front, SHARES),
         half_height=percentiles(found.half_height, SHARES),
@@ -100,8 +109,8 @@ def _row(
         time_shares=shares[0],
         height_shares=shares[1],
         speed=_mean_speed(arrival),
-        radius=float(deformation_radius(answer.mode.speed[node], network.lat[node])),
-        view=_view(mode, node, float(network.lon[node]), float(network.lat[node])),
+        reach=_reach(mode, node, float(answer.mode.speed[node]), real),
+        view=_view(mode, node) if real else None,
     )
 
 
@@ -120,18 +129,53 @@ def _mean_speed(arrival: Arrival) -> float:
     return length / time if time > 0.0 else float("nan")
 
 
-def _view(mode: int, node: int, lon: float, lat: float) -> View | None:
-    """What to measure in the water beside a node, by the packaged depths and stratification."""
-    depth = float(packaged_network(family_of(mode))[1].depth[node])
-    column = _column(lon, lat, depth) if np.isfinite(depth) else None
-    return None if column is None else view_of_mode(column[0], mode, *column[1:])
+def _reach(mode: int, node: int, speed: float, real: bool) -> float:
+    """Trapping scale of the section at a node, or the deformation radius over a flat bottom (m)."""
+    network, atlas = packaged_guide(family_of(mode))
+    rank = int(section_rank(network, atlas, mode)[node]) if real else 0
+    section = _section(node) if rank > 0 else None
+    if section is None:
+        return float(deformation_radius(speed, network.lat[node]))
+    return float(section.trapping_scale[list(section.mode).index(rank)])
+
+
+def _view(mode: int, node: int) -> View | None:
+    """What to measure beside a node, by the packaged depths and stratification."""
+    network, atlas = packaged_guide(family_of(mode))
+    rank = int(section_rank(network, atlas, mode)[node])
+    section = _section(node) if rank > 0 else None
+    if section is not None:
+        return view_of_section(section, rank)
+    n2, depth = _stratification(node, mode), float(atlas.depth[node])
+    if n2 is None or not np.isfinite(depth):
+        return None
+    levels = packaged_climatology().depth
+    return view_of_mode(vertical_modes(n2, levels, depth, max(mode, 1)), mode, n2, levels)
 
 
 @cache
-def _column(lon: float, lat: float, depth: float) -> tuple[VerticalModes, Array, Array] | None:
-    """Modes 0 to 3 of a column of the packaged ocean, with its N² and its depths."""
-    profile = packaged_climatology().profiles(lon, lat)
-    n2 = profile.n2[0]
-    if not np.isfinite(n2).all():
+def _section(node: int) -> ModeSet | None:
+    """Modes of the section at a coast node of the baroclinic guide, nothing where there is none."""
+    network, atlas = packaged_guide("baroclinic")
+    n2 = _stratification(node, 1)
+    lon, lat = float(network.lon[node]), float(network.lat[node])
+    radius = deformation_radius(atlas.phase_speed[atlas.row(1), node], lat)
+    sections = cross_shelf_sections(
+        lon, lat, network.offshore[node], radius, packaged_bathymetry()
+    )
+    if n2 is None or sections.flags[0] & int(QualityFlag.NO_SECTION):
         return None
-    return vertical_modes(n2, profile.depth, depth, HIGHEST_MODE), n2, profile.depth
+    try:
+        return trapped_modes(
+            *sections.monotonic(0), n2, packaged_climatology().depth, float(coriolis(lat)),
+            count=HIGHEST_MODE,
+        )
+    except InputError:  # a section too shallow or too steep for its modes
+        return None
+
+
+def _stratification(node: int, mode: int) -> Array | None:
+    """N² at the depths of the packaged climatology beside a node, nothing where it is unknown."""
+    network, _ = packaged_guide(family_of(mode))
+    n2 = packaged_climatology().profiles(network.lon[node], network.lat[node]).n2[0]
+    return n2 if np.isfinite(n2).all() else None

@@ -36,8 +36,8 @@ class RowPlan:
         Of the variance of the half-height time and of ln height.
     speed : float
         Length of the path over the time of the front (m/s).
-    radius : float
-        Deformation radius at the target (m): how far off the guide a mooring may be.
+    reach : float
+        Trapping scale at the target (m): how far off the guide a mooring may be.
     view : View or None
         What to measure; None where no stratification is known.
     """
@@ -53,5 +53,5 @@ class RowPlan:
     time_shares: Array
     height_shares: Array
     speed: float
-    radius: float
+    reach: float
     view: View | None

@@ -188,7 +188,7 @@ def _plan(plan: xr.Dataset, row: tuple[int, int]) -> dict[str, Any]:
             ("ratio", "peak_ratio"), ("metres", "peak_m"), ("look_from", "look_from_days"),
             ("look_until", "look_until_days"), ("seen", "chance_above_threshold"),
             ("gap_days", "longest_gap_days"), ("gap_km", "longest_gap_km"),
-            ("reach_km", "radius_km"), ("depth", "measure_depth_m"),
+            ("reach_km", "reach_km"), ("depth", "measure_depth_m"), ("off", "measure_offshore_km"),
             ("per_metre", "measure_per_metre"), ("clarity", "measure_clarity"),
         )
     } | shares | {"first": str(plan["measure_first"].values[row])}  # fmt: skip

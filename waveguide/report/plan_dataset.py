@@ -59,10 +59,13 @@ PLAN: dict[str, Variable] = {
         _ROW, "gap between samples that one signal in ten would fit into unseen", "day"
     ),
     "longest_gap_km": _number(_ROW, "way that the signal goes in that time", "km"),
-    "radius_km": _number(_ROW, "deformation radius: reach of the signal off the guide", "km"),
+    "reach_km": _number(_ROW, "trapping scale: reach of the signal off the guide", "km"),
     "time_share": _number(_INPUT, "share of the variance of the half-height time", "1"),
     "height_share": _number(_INPUT, "share of the variance of the logarithm of the peak", "1"),
     "measure_depth_m": _number(_MEASURED, "depth where the mode stands out most", "m"),
+    "measure_offshore_km": _number(
+        _MEASURED, "distance from the shore there; 0 where the bottom is taken as flat", "km"
+    ),
     "measure_per_metre": _number(
         _MEASURED, "signal there per metre of sea level (SI units, upward and downstream)", "1"
     ),
@@ -154,7 +157,7 @@ def _row(scenario: Scenario, row: RowPlan | None) -> dict[str, Any]:
         "chance_above_threshold": row.above,
         "longest_gap_days": gap / SECONDS_PER_DAY,
         "longest_gap_km": gap * row.speed / 1e3,
-        "radius_km": row.radius / 1e3,
+        "reach_km": row.reach / 1e3,
         "time_share": row.time_shares,
         "height_share": row.height_shares,
         **_measured(row, amplitude),
@@ -165,13 +168,15 @@ def _measured(row: RowPlan, amplitude: float | None) -> dict[str, Any]:
     nothing = np.full(len(QUANTITIES), np.nan)
     if row.view is None:
         return {
-            "measure_depth_m": nothing, "measure_per_metre": nothing, "measure_clarity": nothing,
+            "measure_depth_m": nothing, "measure_offshore_km": nothing,
+            "measure_per_metre": nothing, "measure_clarity": nothing,
             "measure_first": QUANTITIES[0],
         }  # fmt: skip
     height = 0.01 if amplitude is None else amplitude * float(row.height[1])
     clear = clarity(row.view, height)
     return {
         "measure_depth_m": row.view.depth,
+        "measure_offshore_km": row.view.offshore / 1e3,
         "measure_per_metre": row.view.per_metre,
         "measure_clarity": clear,
         "measure_first": QUANTITIES[int(np.argmax(clear))],

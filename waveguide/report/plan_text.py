@@ -89,7 +89,7 @@ def _when(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
 
 
 def _what(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
-    header = ("Target", "Mode", "Measure first", "Depth, m", "per cm of sea level", "Signal/noise",
+    header = ("Target", "Mode", "Measure first", "Depth, m", "Off, km", "per cm", "Signal/noise",
               "Reach, km", "Gap, days", "Gap, km")
     lines = [header]
     for row in rows:
@@ -98,20 +98,22 @@ def _what(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
         lines.append((
             plain(dataset["target"].values[row[0]], 24), str(dataset["mode"].values[row[1]]), first,
             _number(dataset["measure_depth_m"].values[row][at], ".0f"),
+            _number(dataset["measure_offshore_km"].values[row][at], ".0f"),
             _per_centimetre(first, dataset["measure_per_metre"].values[row][at]),
             _number(dataset["measure_clarity"].values[row][at], ".1f"),
-            _number(dataset["radius_km"].values[row], ".0f"),
+            _number(dataset["reach_km"].values[row], ".0f"),
             _number(dataset["longest_gap_days"].values[row], ".1f"),
             _number(dataset["longest_gap_km"].values[row], ".0f"),
         ))
     known = np.isfinite(dataset["peak_m"].values).any()
     of = "the median peak" if known else "1 cm of sea level, the amplitude being unknown"
     title = (
-        "What to measure: where it stands out most from noise, how far off the guide it reaches "
-        "(a factor e), and the gap between samples, in time or along the way, that one signal in "
-        f"ten would fit into unseen. Signal/noise is that of {of}."
+        "What to measure: where it stands out most from noise (depth, and distance off the shore), "
+        "what it shows there per cm of sea level, how far off the guide it reaches (a factor e), "
+        "and the gap between samples, in time or along the way, that one signal in ten would fit "
+        f"into unseen. Signal/noise is that of {of}."
     )
-    return filled(title, 0) + "\n" + aligned(lines, right=range(3, 9))
+    return filled(title, 0) + "\n" + aligned(lines, right=range(3, 10))
 
 
 def _per_centimetre(quantity: str, per_metre: float) -> str:

@@ -115,7 +115,8 @@ function measured(plan) {
   const size = plan.per_metre[i];
   const each = [`${fixed(size, 2)} cm`, `${fixed(size / 100, 1)} m`, `${fixed(size, 1)} cm/s`,
     `${fixed(size, 2)} cm`][i];
-  return `${plan.first} at ${fixed(plan.depth[i], 0)} m (${each} per cm of sea level)`;
+  const off = plan.off[i] > 0.5 ? `, ${fixed(plan.off[i], 0)} km off the shore` : "";
+  return `${plan.first} at ${fixed(plan.depth[i], 0)} m${off} (${each} per cm of sea level)`;
 }
 
 function shares(list) {
