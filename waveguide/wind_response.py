@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import replace
 from datetime import datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -105,11 +104,11 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
         say(f"response of mode {number}")
         network, mode, depth = _mode(question, number)
         damping = damping_rate(question.waves.damping_days, mode)
-        friction = first_order_friction(network, mode, question.waves.drag_m_s)
-        physics = step_physics(network, mode, omega, damping)
-        physics = replace(physics, loss=physics.loss + friction * network.length)
+        drag = question.waves.drag_m_s
+        physics = step_physics(network, mode, omega, damping, drag)
+        friction = friction_of_steps(network, mode, drag, np.inf)  # to first order
         answers[number] = mode_response(
-            network, mode, physics, Conditions(friction, damping), packaged_bathymetry(),
+            network, mode, physics, Conditions(friction, damping), drag, packaged_bathymetry(),
             [target.position for target in question.targets], omega, forcer,
         )
         networks[number] = network
@@ -137,28 +136,6 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
         notes=notes, attributes=response_attributes(question, forcing, used),
         calm_before=question.wind.invented,
     )  # fmt: skip
-
-
-def first_order_friction(network: Network, mode: ModeAtNodes, drag: float) -> Array:
-    """Decay by bottom friction along every step (1/m), the same at every frequency.
-
-    A steady wind is balanced by it (Brink & Allen 1978), so it is not left out where friction is
-    faster than the wave, as it is for free waves. Off California ten years of daily wind agree
-    better with the gauges so (tests/open_data/test_wind_california.py): at Crescent City they
-    explain 43 % of the variance at 10 to 60 days, and 10 % with the friction of free waves.
-
-    Parameters
-    ----------
-    network : Network
-    mode : ModeAtNodes
-    drag : float
-        Coefficient r of the linear bottom stress ρ r v (m/s).
-
-    Returns
-    -------
-    ndarray, shape (m,)
-    """
-    return friction_of_steps(network, mode, drag, np.inf)
 
 
 def _mode(question: WindScenario, number: int) -> tuple[Network, ModeAtNodes, Array]:
