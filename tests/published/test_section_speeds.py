@@ -84,15 +84,16 @@ def test_peru_speed(guide):
     assert found == pytest.approx(200.0, rel=0.15)  # stated without error; lags of some days
 
 
+@pytest.mark.xfail(strict=True, reason="see the text of the test")
 def test_peru_trapping_scale(guide):
-    """READ Smith 1978: the signal decays offshore over 70 km; here within a factor of 1.5.
+    """READ Smith 1978: the signal decays offshore over 70 km.
 
-    The published scale is an e-folding of currents at a few moorings, ours that of the mode's
-    surface kinetic energy.
+    Ours is wider by two fifths, as the speed is higher by a third: scale and speed go together
+    (c/f of a flat bottom is 84 km), so that this is the same miss as the one before.
     """
     scale = travel(guide, 1, (-78.6, -10.0), (-76.0, -15.0))[2]
     show("Peru trapping scale, km", 70, f"{scale / 1e3:.0f}")
-    assert 70e3 / 1.5 < scale < 70e3 * 1.5
+    assert scale == pytest.approx(70e3, rel=0.2)  # from a few moorings
 
 
 def test_ecuador_to_northern_chile(guide):
@@ -114,21 +115,25 @@ def test_san_diego_to_san_francisco(guide):
     assert 1.5 <= days <= 2.5
 
 
-def test_china_coast(guide):
+@pytest.mark.parametrize(
+    ("stretch", "start", "end"),
+    [
+        ("South China Sea", (119.5, 22.6), (112.2, 19.1)),
+        pytest.param("East China Sea", (127.5, 30.0), (122.4, 25.5),
+                     marks=pytest.mark.xfail(strict=True, reason="see the text of the test")),
+    ],
+)
+def test_china_coast(guide, stretch, start, end):
     """READ Li et al. 2023, Ocean Sci. 19, 1545: mode 1 at about 10 m/s along the coast of China.
 
-    The guide follows the edge of the shelf; Taiwan parts it in two stretches.
+    The guide follows the edge of the shelf; Taiwan parts it in two stretches. In the East China
+    Sea mode 1 of the sections is half as fast again: the shelf is 500 to 600 km wide there, and
+    c grows with f and the width. The finite period changes little (16.3 in place of 17.0 m/s at 3
+    days). Beyond the shelf the Ryukyu ridge was levelled, and mode 2 runs at 9 m/s.
     """
-    stretches = {"East China Sea": ((127.5, 30.0), (122.4, 25.5)),
-                 "South China Sea": ((119.5, 22.6), (112.2, 19.1))}
-    found = {}
-    for name, ends in stretches.items():
-        time, length, _ = travel(guide, 1, *ends)
-        found[name] = length / time
-    show("China coast, m/s", "about 10", ", ".join(f"{n} {c:.1f}" for n, c in found.items()))
-    times = [travel(guide, 1, *ends) for ends in stretches.values()]
-    mean = sum(length for _, length, _ in times) / sum(time for time, _, _ in times)
-    assert mean == pytest.approx(10.0, rel=0.25)
+    time, length, _ = travel(guide, 1, start, end)
+    show(f"China coast, {stretch}, m/s", "about 10", f"{length / time:.1f}")
+    assert length / time == pytest.approx(10.0, rel=0.15)  # "about"
 
 
 @pytest.mark.xfail(strict=True, reason="see the text of the test")

@@ -35,6 +35,10 @@ METHOD = "1"
 RUN_LENGTH = 40
 """Nodes in a run: a second or two of work."""
 
+SHALLOW, WIDE = 500.0, 250e3
+"""Where water of this depth (m) is this wide (m), slow internal modes beside fast shelf waves may
+take meshes of a gigabyte. There half the accuracy is asked for first, which often gives it all."""
+
 
 @dataclass(frozen=True)
 class RunInputs:
@@ -128,11 +132,16 @@ def _node_modes(inputs: RunInputs, row: int) -> ModeSet | None:
     known = np.isfinite(inputs.offshore[row])
     if known.sum() < 2 or not np.isfinite(inputs.n2[row]).all():
         return None
+    x, h = inputs.offshore[row, known], inputs.depth[row, known]
+    wide = float(np.interp(SHALLOW, h, x)) > WIDE
     try:
-        modes = trapped_modes(
-            inputs.offshore[row, known], inputs.depth[row, known], inputs.n2[row],
-            inputs.n2_depth, float(inputs.f[row]), count=RANKS,
-        )
+        for tolerance in (2.0 * TOLERANCE, TOLERANCE) if wide else (TOLERANCE,):
+            modes = trapped_modes(
+                x, h, inputs.n2[row], inputs.n2_depth, float(inputs.f[row]),
+                count=RANKS, tolerance=tolerance,
+            )
+            if np.all(modes.error <= TOLERANCE):
+                break
     except WaveguideError:
         return None  # the caller falls back on a flat bottom and marks the node
     # rounding has spoilt the problem where a speed is not positive

@@ -70,12 +70,12 @@ def atlas_file(
     """
     network, packaged = packaged_network("baroclinic")
     check_region(network, region)
-    parts = _parts_folder(out)
     depths = packaged_bathymetry() if bathymetry is None else read_bathymetry(bathymetry)
     columns = (
         packaged_climatology() if climatology is None
         else read_climatology(climatology, temperature=temperature)
     )
+    parts = _parts_folder(out)
     flat = packaged
     if bathymetry is not None or climatology is not None:
         flat = _own_flat_bottom(network, depths, columns)
