@@ -168,8 +168,25 @@ def _row(arrivals: xr.Dataset, plan: xr.Dataset, row: tuple[int, int]) -> dict[s
         **number,
         "plan": _plan(plan, row),
         "checks": _checks(arrivals, row),
+        "instruments": _instruments(arrivals, row),
         "cautions": [plain(c, 300) for c in str(arrivals["caution"].values[row]).split("; ") if c],
     }
+
+
+def _instruments(arrivals: xr.Dataset, row: tuple[int, int]) -> list[dict[str, Any]]:
+    """What the instruments of a mooring see per centimetre of sea level."""
+    names = {
+        "depth": "depth_m", "rise": "displacement_m_per_cm", "flow": "current_cm_s_per_cm",
+        "pressure": "bottom_pressure_cm_per_cm",
+    }  # fmt: skip
+    mine = (arrivals["instrument_target"].values == row[0]) & (
+        arrivals["instrument_mode"].values == row[1]
+    )
+    return [
+        {key: _round(float(arrivals[f"instrument_{name}"].values[i]), 3)
+         for key, name in names.items()}
+        for i in np.flatnonzero(mine)
+    ]
 
 
 def _plan(plan: xr.Dataset, row: tuple[int, int]) -> dict[str, Any]:

@@ -97,6 +97,11 @@ function tellRow(data, target, m, row, part) {
       ["Height hangs on", shares(plan.height_from)],
     ]),
   );
+  if (row.instruments.length) {
+    part.append(node("h3", {}, "Its instruments, per cm of sea level on the guide"), pairs(
+      row.instruments.map((i) => [`${fixed(i.depth, 0)} m`, `isopycnals ${fixed(i.rise, 1)} m, ` +
+        `current ${fixed(i.flow, 1)} cm/s, bottom pressure ${fixed(i.pressure, 2)} cm`])));
+  }
   tellBudget(data, target, m, part);
   part.append(node("h3", {}, "Where the theory stands"), pairs(
     row.checks.map(([name, value, limit, beyond]) =>
