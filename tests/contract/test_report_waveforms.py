@@ -163,6 +163,7 @@ def test_distance_time_rows(arrivals, tmp_path):
 def test_names_are_moved_apart_as_little_as_may_be():
     moved = spread([5.0, 0.0, 5.1, 5.2], 1.0)
     assert_allclose(moved, [4.1, 0.0, 5.1, 6.1])
+    assert_allclose(spread([0.0, 0.2, 5.0], 1.0, 0.5), [0.5, 1.5, 5.0])
     assert spread([], 1.0) == []
 
 

@@ -41,6 +41,9 @@ Array = NDArray[np.float64]
 _BELOW, _CRITICAL = (0, (1.0, 1.4)), (0, (6.0, 2.0, 1.0, 2.0))
 """Dashes of a front below the critical frequency, and of a critical latitude."""
 
+_LABEL_PLACES = (0.85, 0.15, 0.5, 0.7, 0.3)
+"""Where a critical latitude may be named, in widths of the axes."""
+
 _TOP, _BOTTOM, _BETWEEN = 17.0, 28.0, 17.0
 _STRIP, _MAIN, _ENERGY = (18.0, 3.0), (22.0, 70.0), (127.0, 40.0)
 """Left edge and width of the parts of a row (mm)."""
@@ -191,24 +194,22 @@ def _joined(x: Array, y: Array) -> tuple[Array, Array]:
 def _draw_critical(
     axes: Axes, dataset: xr.Dataset, way: Way, modes: list[int], height: float
 ) -> None:
-    """Lines at the critical latitudes of the modes, the first of each named beside the front."""
-    named: dict[tuple[int, str], tuple[float, bool]] = {}
-    for mode in modes:
-        route = way.longest(dataset, mode)
-        assert route is not None  # as above
-        front = front_of(dataset, route)
-        for place, latitude in front.critical:
-            colour = MODE_COLOURS[int(dataset["mode"].values[mode])]
-            axes.axhline(place, color=colour, lw=0.6, ls=_CRITICAL, zorder=2)
-            text = f"critical {abs(latitude):.1f}°{'N' if latitude > 0.0 else 'S'}"
-            when = float(np.interp(place, front.distance, front.time))
-            named.setdefault((mode, text), (place, when < 0.5 * axes.get_xlim()[1]))
+    """Lines at the critical latitudes of the modes, named between the fronts."""
+    fronts = {mode: front_of(dataset, route) for mode in modes
+              if (route := way.longest(dataset, mode)) is not None}
+    found = [(mode, *one) for mode, front in fronts.items() for one in front.critical]
     scale = float(axes.get_ylim()[1]) / height  # km in a mm
-    level = spread([place for place, _ in named.values()], 3.4 * scale)
-    for (mode, text), (_, early), y in zip(named, named.values(), level, strict=True):
+    level = spread([place for _, place, _ in found], 3.4 * scale, 2.2 * scale)
+    late = float(dataset.attrs["event_duration_days"]) / 2.0  # of a peak behind its front
+    for (mode, place, latitude), y in zip(found, level, strict=True):
+        colour = MODE_COLOURS[int(dataset["mode"].values[mode])]
+        axes.axhline(place, color=colour, lw=0.6, ls=_CRITICAL, zorder=2)
+        times = np.array([np.interp(place, f.distance, f.time) for f in fronts.values()])
+        taken = np.concatenate([times, times + late]) / axes.get_xlim()[1]
         axes.text(
-            0.98 if early else 0.02, y, text, ha="right" if early else "left", va="center",
-            color=MODE_COLOURS[int(dataset["mode"].values[mode])], fontsize=SMALL, zorder=4,
+            max(_LABEL_PLACES, key=lambda x: float(np.abs(taken - x).min())), y,
+            f"critical {abs(latitude):.1f}°{'N' if latitude > 0.0 else 'S'}", color=colour,
+            ha="center", va="center", fontsize=SMALL, zorder=4,
             transform=axes.get_yaxis_transform(), bbox={"fc": "white", "ec": "none", "pad": 0.6},
         )
 
@@ -231,7 +232,7 @@ def _draw_names(
         )
 
 
-def spread(places: list[float], gap: float) -> list[float]:
+def spread(places: list[float], gap: float, lowest: float = -np.inf) -> list[float]:
     """Places moved apart so that neighbours keep a gap, as little as may be.
 
     Neighbours that are too close become a group about the middle of their wishes (the pool of
@@ -241,6 +242,8 @@ def spread(places: list[float], gap: float) -> list[float]:
     ----------
     places : list of float
     gap : float
+    lowest : float
+        No place is moved below it.
 
     Returns
     -------
@@ -263,7 +266,7 @@ def spread(places: list[float], gap: float) -> list[float]:
     level = [total / count for total, count in groups for _ in range(int(count))]
     moved = [0.0] * len(places)
     for rank, i in enumerate(order):
-        moved[i] = level[rank] + rank * gap
+        moved[i] = max(level[rank] + rank * gap, lowest + rank * gap)
     return moved
 
 
