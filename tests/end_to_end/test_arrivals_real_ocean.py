@@ -215,8 +215,8 @@ def test_own_bathymetry_changes_the_speeds(tmp_path):
     packaged = waveguide.arrivals(read_scenario(written(tmp_path)))
     assert own.attrs["ocean"] == "own files"
     ratio = float(own["mean_speed_m_s"][0, 0] / packaged["mean_speed_m_s"][0, 0])
-    # own files have the flat bottom of their deep water, 4500 m here, without the shelf and slope
-    # that make the sections of Peru faster by a quarter (2.3 against 2.9 m/s)
+    # own files have the flat bottom of their deep water, 4500 m here, without shelf and slope;
+    # 0.81 when this was written, and the bounds are round numbers about it, not an expectation
     assert 0.7 < ratio < 0.95
 
 
