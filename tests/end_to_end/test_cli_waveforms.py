@@ -73,7 +73,7 @@ def test_the_same_at_all_gauges_of_a_slow_event(answer):
 
     A wave of 2.6 m/s needs 3.5 days from Callao to Matarani; the peaks are a seventh of that apart
     and less. (A burst of four months, whose spectrum reaches up to the critical frequencies of
-    this coast, still peaks 2.4 days later there.)
+    this coast, still peaks some two days later there.)
     """
     with xr.open_dataset(answer[1] / "arrivals.nc") as stored:
         peaks = stored["peak_time_days"].values[:2, 0]

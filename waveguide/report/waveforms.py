@@ -126,10 +126,8 @@ def draw_waveforms(dataset: xr.Dataset) -> Figure:
     for axes, target in zip(panels[1:], reached, strict=True):
         _draw_target(axes, dataset, int(target), unit)
     named = "sea level" if unit.name == "m" else "sea level over its peak at the source"
-    write_heading(
-        figure, dataset,
-        f"{named}, modes by their shares in the source; days from {event_start(dataset)}",
-    )
+    shares = ", modes by their shares in the source" if dataset.sizes["mode"] > 1 else ""
+    write_heading(figure, dataset, f"{named}{shares}; days from {event_start(dataset)}")
     _draw_legend(figure, dataset)
     return figure
 
@@ -217,12 +215,13 @@ def _draw_legend(figure: Figure, dataset: xr.Dataset) -> None:
     """What the lines and marks mean, below the panels."""
     from matplotlib.lines import Line2D
 
+    several = dataset.sizes["mode"] > 1
     handles = [
-        Line2D([], [], color=MODE_COLOURS[int(mode)], lw=1.1,
-               label=f"{mode_name(int(mode))}, {100 * share:.0f} % of the source")
+        Line2D([], [], color=MODE_COLOURS[int(mode)], lw=1.1, label=mode_name(int(mode))
+               + (f", {100 * share:.0f} % of the source" if several else ""))
         for mode, share in zip(dataset["mode"].values, dataset["mode_share"].values, strict=True)
     ]
-    if dataset.sizes["mode"] > 1:
+    if several:
         handles.append(Line2D([], [], color="black", lw=0.7, ls=(0, (3, 1.2)), label="sum"))
     mark: dict[str, Any] = {"ls": "", "mec": GREY, "mew": 0.8, "ms": 3.4}
     handles += [
