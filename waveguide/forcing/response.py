@@ -30,9 +30,6 @@ SPUN_UP = 0.95
 MOST_POSITIONS = 240
 """Positions along a route at which the response is told."""
 
-LEAST_GAIN = 1e-4
-"""The response is told where the target gets at least this share of it at every frequency."""
-
 _ROWS_AT_ONCE = 512
 
 
@@ -265,8 +262,9 @@ def route_response(
 ) -> RouteResponse:
     """Response along the main way to a target.
 
-    What the wind upstream of a node does at the target, divided by the gain between the two, is
-    the response at the node.
+    What the wind does at the target, over the gain from a node to the target, is what it does at
+    the node. Step by step downstream the node's own part is added to what comes from the one
+    before.
 
     Parameters
     ----------
@@ -283,19 +281,24 @@ def route_response(
     RouteResponse
     """
     way = main_way(influence)
-    least = np.min(transfer.log_gain[way], axis=1) < np.log(LEAST_GAIN)
-    way = way[: int(np.argmax(least))] if least.any() else way
     place = _place_on_way(influence, way)
     kept = np.arange(0, way.size, max(1, -(-way.size // MOST_POSITIONS)))
     shown = way[kept]
     # A node gets what enters at it or upstream of it.
     group = np.searchsorted(kept, place, "right") - 1
-    parts = contributions(transfer, influence, forcing, period, group, kept.size)
-    upstream = np.cumsum(parts[::-1], axis=0)[::-1]
-    between = _between(transfer.omega, period.omega)
-    lag = transfer.gain_lag[shown] @ between + influence.head_delay[shown, None] * period.omega
-    undone = transfer.gain_sign[shown, None] * np.exp(1j * lag - transfer.log_gain[shown] @ between)
-    level = period.series(upstream * undone)
+    at_node = transfer.seen_from(shown[group[transfer.row]], influence)
+    parts = contributions(at_node, influence, forcing, period, group, kept.size)
+    gain = transfer.log_gain[shown] + 1j * transfer.gain_lag[shown]
+    later = np.diff(influence.head_delay[shown])[:, None] * period.omega
+    onward = np.diff(gain, axis=0) @ _between(transfer.omega, period.omega) + 1j * later
+    sign = transfer.gain_sign[shown]
+    level = np.empty((kept.size, period.times))
+    wave = np.zeros(period.omega.size, complex)
+    for k in range(kept.size - 1, -1, -1):
+        if k < kept.size - 1:
+            wave = wave * np.exp(onward[k].real - 1j * onward[k].imag) * sign[k] * sign[k + 1]
+        wave = wave + parts[k]
+        level[k] = period.series(wave)
     at, known = _rows_of_forcing(influence, forcing)
     return RouteResponse(
         node=network.head[influence.step[shown]][::-1],

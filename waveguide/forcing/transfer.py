@@ -72,6 +72,16 @@ class WindTransfer:
     log_gain: Array
     gain_lag: Array
 
+    def seen_from(self, downstream: Index, influence: Influence) -> WindTransfer:
+        """The weights for the ends of other steps, shape (k,), in place of the target."""
+        return replace(
+            self,
+            sign=self.sign * self.gain_sign[downstream],
+            log_weight=self.log_weight - self.log_gain[downstream],
+            lag=self.lag - self.gain_lag[downstream],
+            delay=self.delay - influence.head_delay[downstream],
+        )
+
 
 def transfer_frequencies(step: float, count: int) -> Array:
     """Frequencies that cover those of a series, equidistant in their logarithm.

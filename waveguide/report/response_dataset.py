@@ -19,7 +19,7 @@ if TYPE_CHECKING:
 
 Array = NDArray[np.float64]
 
-MOST_STRETCHES = 12
+MOST_STRETCHES = 24
 """Stretches of coast told for each target and mode; what is left is told as one."""
 
 _ROW, _SERIES, _SUM = ("target", "mode"), ("target", "mode", "time"), ("target", "time")
