@@ -11,11 +11,17 @@ from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from waveguide.pipeline import arrivals
-    from waveguide.scenario import read_scenario
+    from waveguide.scenario import read_scenario, read_wind_scenario
+    from waveguide.wind_response import response
 
-__all__ = ["arrivals", "read_scenario"]
+__all__ = ["arrivals", "read_scenario", "read_wind_scenario", "response"]
 
-_HOME = {"arrivals": "waveguide.pipeline", "read_scenario": "waveguide.scenario"}
+_HOME = {
+    "arrivals": "waveguide.pipeline",
+    "read_scenario": "waveguide.scenario",
+    "read_wind_scenario": "waveguide.scenario",
+    "response": "waveguide.wind_response",
+}
 
 
 def __getattr__(name: str) -> Any:
