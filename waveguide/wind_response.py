@@ -102,22 +102,8 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
     ratios: dict[tuple[int, int], MooringRatios] = {}
     for number in question.waves.modes:
         say(f"response of mode {number}")
-        network, mode, depth = _mode(question, number)
-        damping = damping_rate(question.waves.damping_days, mode)
-        drag = question.waves.drag_m_s
-        physics = step_physics(network, mode, omega, damping, drag)
-        friction = friction_of_steps(network, mode, drag, np.inf)  # to first order
-        answers[number] = mode_response(
-            network, mode, physics, Conditions(friction, damping), drag, packaged_bathymetry(),
-            [target.position for target in question.targets], omega, forcer,
-        )
-        networks[number] = network
-        for i, answer in enumerate(answers[number].targets):
-            if number > 0 and answer.status == RESPONDS and network.equatorial[answer.node]:
-                ratios[i, number] = mooring_ratios(
-                    packaged_climatology(), *question.targets[i].position,
-                    float(depth[answer.node]), number,
-                )
+        networks[number], answers[number], at_moorings = _of_mode(question, number, omega, forcer)
+        ratios.update({(i, number): ratio for i, ratio in at_moorings.items()})
     _require_cover(question, answers)
     _require_an_answer(question, answers)
     forcing = next(iter(answers.values())).forcing
@@ -136,6 +122,27 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
         notes=notes, attributes=response_attributes(question, forcing, used),
         calm_before=question.wind.invented,
     )  # fmt: skip
+
+
+def _of_mode(
+    question: WindScenario, number: int, omega: float, forcer: Forcer
+) -> tuple[Network, ModeResponse, dict[int, MooringRatios]]:
+    """Responses of one mode, and what moorings on the equator see of it, by target."""
+    network, mode, depth = _mode(question, number)
+    damping, drag = damping_rate(question.waves.damping_days, mode), question.waves.drag_m_s
+    physics = step_physics(network, mode, omega, damping, drag)
+    friction = friction_of_steps(network, mode, drag, np.inf)  # to first order
+    places = [target.position for target in question.targets]
+    found = mode_response(
+        network, mode, physics, Conditions(friction, damping), drag, packaged_bathymetry(),
+        places, omega, forcer,
+    )
+    ratios = {
+        i: mooring_ratios(packaged_climatology(), *places[i], float(depth[answer.node]), number)
+        for i, answer in enumerate(found.targets)
+        if number > 0 and answer.status == RESPONDS and network.equatorial[answer.node]
+    }
+    return network, found, ratios
 
 
 def _mode(question: WindScenario, number: int) -> tuple[Network, ModeAtNodes, Array]:
