@@ -40,7 +40,7 @@ if TYPE_CHECKING:
     from waveguide.network.attach import Box
     from waveguide.network.graph import Network
     from waveguide.propagation.modes import ModeAtNodes
-    from waveguide.propagation.moorings import MooringAnswer, Water
+    from waveguide.propagation.moorings import MooringAnswer
 
 Progress = Callable[[str], None]
 
@@ -130,7 +130,12 @@ def study(scenario: Scenario, progress: Progress | None = None) -> Study:
         answers[mode] = mode_answer(
             network, carried, found[mode], source, window, omega, conditions[mode]
         )
-    moorings = _moorings(scenario, guides, found)
+    moorings: dict[tuple[int, int], MooringAnswer] = {}
+    if any(target.depth_m for target in scenario.targets):
+        from waveguide.moorings import mooring_views
+
+        say("moorings")
+        moorings = mooring_views(scenario, guides, found, omega)
     attributes = arrivals_attributes(scenario, used_files())
     dataset = arrivals_dataset(scenario, answers, attributes, moorings)
     networks = {mode: network for mode, (network, _) in guides.items()}
@@ -200,54 +205,6 @@ def _conditions(scenario: Scenario, network: Network, mode: ModeAtNodes) -> Cond
     )
     damping = damping_rate(scenario.waves.damping_days, mode)
     return Conditions(friction=friction, damping=damping)
-
-
-def _moorings(
-    scenario: Scenario, guides: dict[int, tuple[Network, ModeAtNodes]],
-    found: dict[int, list[Arrival]],
-) -> dict[tuple[int, int], MooringAnswer]:
-    """What the targets that are moorings see, by the indices of target and mode."""
-    named = [(t, target) for t, target in enumerate(scenario.targets) if target.depth_m]
-    if not named:
-        return {}
-    from waveguide.propagation.moorings import UNIFORM, mooring_answer, no_structure
-
-    answers = {}
-    for column, (number, (network, mode)) in enumerate(guides.items()):
-        water = _water(scenario, number)
-        for place, target in named:
-            if water is None:
-                answers[place, column] = no_structure(UNIFORM)
-                continue
-            distance = None if target.offshore_km is None else 1e3 * target.offshore_km
-            answers[place, column] = mooring_answer(
-                network, mode, found[number][place], _omega(scenario), water, distance,
-                target.depth_m,
-            )
-    return answers
-
-
-def _water(scenario: Scenario, mode: int) -> Water | None:
-    """Depths and stratification below the network of a mode, None for a uniform speed."""
-    from waveguide.propagation.moorings import Water, section_rank
-
-    ocean = scenario.ocean
-    if ocean.phase_speed_m_s is not None:
-        return None
-    depths, columns = packaged_bathymetry(), packaged_climatology()
-    network, packaged = packaged_guide(family_of(mode))
-    if ocean.source == "packaged":
-        return Water(depths, columns, packaged.depth, section_rank(network, packaged, mode))
-    from waveguide.network.own import own_atlas
-    from waveguide.ocean.bathymetry import read_bathymetry
-    from waveguide.ocean.hydrography import read_climatology
-
-    atlas = own_atlas(family_of(mode), ocean.bathymetry, ocean.climatology, ocean.temperature)
-    if ocean.bathymetry is not None:
-        depths = read_bathymetry(ocean.bathymetry)
-    if ocean.climatology is not None:
-        columns = read_climatology(ocean.climatology, temperature=ocean.temperature)
-    return Water(depths, columns, atlas.depth, section_rank(network, atlas, mode))
 
 
 def source_box(scenario: Scenario) -> Box:

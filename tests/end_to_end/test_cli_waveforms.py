@@ -163,3 +163,15 @@ def test_a_format_that_does_not_exist_is_refused(tmp_path):
     assert done.returncode == 2
     assert "distance-time" in done.stderr
     assert not (tmp_path / "out").exists()
+
+
+def test_a_uniform_speed_has_no_structure_at_depth(tmp_path):
+    import waveguide
+
+    text = SLOW_EVENT.replace("modes = [1, 2]", "modes = [1]")
+    (tmp_path / "slow.toml").write_text(
+        text + "\n[ocean]\nphase_speed_m_s = 2.5\n", encoding="utf-8"
+    )
+    found = waveguide.arrivals(waveguide.read_scenario(tmp_path / "slow.toml"))
+    assert set(found["instrument_structure"].values) == {"a uniform speed has none"}
+    assert not np.isfinite(found["instrument_current_cm_s_per_cm"].values).any()
