@@ -18,6 +18,7 @@ from waveguide.modes.trapped import trapped_modes
 from waveguide.modes.vertical import vertical_modes
 from waveguide.modes.visibility import View, view_of_mode, view_of_section
 from waveguide.network.packaged import family_of
+from waveguide.network.section_runs import RANKS
 from waveguide.network.trapped_store import packaged_guide
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.stratification import packaged_climatology
@@ -29,7 +30,6 @@ from waveguide.propagation.priors import INPUTS, Priors
 from waveguide.propagation.row_plan import SHARES, RowPlan
 from waveguide.propagation.sampling import first_order_shares, normal_sample, percentiles
 from waveguide.scenario import Scenario
-from waveguide.scenario.fields import HIGHEST_MODE
 
 Array = NDArray[np.float64]
 Progress = Callable[[str], None]
@@ -131,26 +131,31 @@ def _mean_speed(arrival: Arrival) -> float:
 
 def _reach(mode: int, node: int, speed: float, real: bool) -> float:
     """Trapping scale of the section at a node, or the deformation radius over a flat bottom (m)."""
-    network, atlas = packaged_guide(family_of(mode))
-    rank = int(section_rank(network, atlas, mode)[node]) if real else 0
-    section = _section(node) if rank > 0 else None
+    section, rank = _mode_of_section(mode, node) if real else (None, 0)
     if section is None:
-        return float(deformation_radius(speed, network.lat[node]))
+        return float(deformation_radius(speed, packaged_guide(family_of(mode))[0].lat[node]))
     return float(section.trapping_scale[list(section.mode).index(rank)])
 
 
 def _view(mode: int, node: int) -> View | None:
     """What to measure beside a node, by the packaged depths and stratification."""
-    network, atlas = packaged_guide(family_of(mode))
-    rank = int(section_rank(network, atlas, mode)[node])
-    section = _section(node) if rank > 0 else None
+    section, rank = _mode_of_section(mode, node)
     if section is not None:
         return view_of_section(section, rank)
-    n2, depth = _stratification(node, mode), float(atlas.depth[node])
+    n2, depth = _stratification(node, mode), packaged_guide(family_of(mode))[1].depth[node]
     if n2 is None or not np.isfinite(depth):
         return None
     levels = packaged_climatology().depth
-    return view_of_mode(vertical_modes(n2, levels, depth, max(mode, 1)), mode, n2, levels)
+    modes = vertical_modes(n2, levels, float(depth), max(mode, 1))
+    return view_of_mode(modes, mode, n2, levels)
+
+
+def _mode_of_section(mode: int, node: int) -> tuple[ModeSet | None, int]:
+    """The modes of the section at a node and the rank of one of them, or nothing."""
+    network, atlas = packaged_guide(family_of(mode))
+    rank = int(section_rank(network, atlas, mode)[node])
+    section = _section(node) if rank > 0 else None
+    return (None, 0) if section is None or rank not in section.mode else (section, rank)
 
 
 @cache
@@ -168,7 +173,7 @@ def _section(node: int) -> ModeSet | None:
     try:
         return trapped_modes(
             *sections.monotonic(0), n2, packaged_climatology().depth, float(coriolis(lat)),
-            count=HIGHEST_MODE,
+            count=RANKS,
         )
     except InputError:  # a section too shallow or too steep for its modes
         return None

@@ -199,3 +199,18 @@ def test_impossible_plans_are_refused_all_at_once(tmp_path):
     assert len(found) == 2
     assert "plan.chance_percent = 100: it must be at most 99" in found[0]
     assert "plan.threshold_m = 0: it must be greater than 0" in found[1]
+
+
+def test_modes_that_overtake_each_other_are_found_by_their_rank():
+    from waveguide.network.trapped_store import packaged_guide
+    from waveguide.planning import _mode_of_section, _view
+    from waveguide.propagation.moorings import section_rank
+
+    network, atlas = packaged_guide("baroclinic")
+    rank = section_rank(network, atlas, 3)
+    assert (rank > 3).any()
+    for node in np.flatnonzero(rank > 3)[:: max(1, np.sum(rank > 3) // 4)]:
+        section, found = _mode_of_section(3, int(node))
+        assert section is not None
+        assert found == rank[node]
+        assert np.isfinite(_view(3, int(node)).per_metre).all()
