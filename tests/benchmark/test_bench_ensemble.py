@@ -98,7 +98,8 @@ def test_page_of_ten_targets_and_four_modes_cold_from_the_shell(benchmark, tmp_p
     """Interpreter, routes, waveforms, ensemble and page; size of the page beside it."""
     scenario = tmp_path / "ten.toml"
     targets = "".join(
-        f'[[targets]]\nname = "{name}"\nposition = {list(place)}\n' for name, place in PLACES.items()
+        f'[[targets]]\nname = "{name}"\nposition = {list(place)}\n'
+        for name, place in PLACES.items()
     )
     scenario.write_text(HEAD + targets, encoding="utf-8")
 

@@ -38,7 +38,7 @@ def shore_rings(lon: Array, lat: Array) -> list[list[int]]:
     regional = near.mean() < 0.1  # of the globe: a route round the world is seen from afar
     rings = shoreline("intermediate" if regional else "low")
     kept = []
-    for ring in rings:
+    for ring in (ring for ring in rings if ring.area >= _NEAR[1]):
         close = bool(near[_cells(ring.lon, ring.lat)].any())
         tolerance, smallest = _NEAR if close else _FAR
         if ring.area >= smallest:
@@ -65,7 +65,8 @@ def _near_cells(lon: Array, lat: Array) -> np.ndarray:
 def _encoded(ring: Ring, tolerance: float) -> list[int]:
     import shapely
 
-    line = shapely.LineString(np.column_stack([ring.lon, ring.lat])).simplify(tolerance)
+    whole = shapely.LineString(np.column_stack([ring.lon, ring.lat]))
+    line = whole.simplify(tolerance, preserve_topology=False)
     units = np.rint(shapely.get_coordinates(line) * UNITS_PER_DEGREE).astype(int)
     steps = np.diff(units, axis=0, prepend=np.zeros((1, 2), int))
     moves = np.any(steps != 0, axis=1)
