@@ -11,13 +11,15 @@ from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from waveguide.pipeline import arrivals
+    from waveguide.planning import plan
     from waveguide.scenario import read_scenario, read_wind_scenario
     from waveguide.wind_response import response
 
-__all__ = ["arrivals", "read_scenario", "read_wind_scenario", "response"]
+__all__ = ["arrivals", "plan", "read_scenario", "read_wind_scenario", "response"]
 
 _HOME = {
     "arrivals": "waveguide.pipeline",
+    "plan": "waveguide.planning",
     "read_scenario": "waveguide.scenario",
     "read_wind_scenario": "waveguide.scenario",
     "response": "waveguide.wind_response",

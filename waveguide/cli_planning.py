@@ -27,7 +27,6 @@ def plan(
     """When to look for a signal, what to measure, and what the answer hangs on."""
     from waveguide.planning import plan as compute
     from waveguide.report.files import output_folder
-    from waveguide.report.plan_dataset import plan_dataset
     from waveguide.report.plan_files import write_plan
     from waveguide.report.plan_text import plan_document, plan_table
     from waveguide.scenario import read_scenario
@@ -35,8 +34,7 @@ def plan(
     question = read_scenario(scenario)
     with nullcontext() if out is None else output_folder(out) as folder:
         with Progress() as progress:
-            answer = compute(question, progress=progress)
-        dataset = plan_dataset(question, answer.study.dataset, answer.rows, answer.members)
+            dataset = compute(question, progress=progress)
         if folder is not None:
             write_plan(dataset, folder, question.output.formats)
     if json:
@@ -56,15 +54,13 @@ def require_folder(page: bool, out: Path | None) -> None:
 
 def answer_with_page(question: Scenario, folder: Path) -> xr.Dataset:
     """Arrivals of a scenario, written to ``page.html`` together with its plan."""
-    from waveguide.planning import plan as compute
+    from waveguide.planning import planned
     from waveguide.report.page import write_page
-    from waveguide.report.plan_dataset import plan_dataset
     from waveguide.route_sections import route_sections
 
     with Progress() as progress:
-        answer = compute(question, progress=progress)
+        answer = planned(question, progress=progress)
         progress("page")
         arrivals = answer.study.dataset
-        dataset = plan_dataset(question, arrivals, answer.rows, answer.members)
-        write_page(arrivals, dataset, route_sections(answer.study), folder)
+        write_page(arrivals, answer.dataset, route_sections(answer.study), folder)
     return arrivals

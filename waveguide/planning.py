@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cache
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
@@ -29,7 +30,11 @@ from waveguide.propagation.moorings import section_rank
 from waveguide.propagation.priors import INPUTS, Priors
 from waveguide.propagation.row_plan import SHARES, RowPlan
 from waveguide.propagation.sampling import first_order_shares, normal_sample, percentiles
+from waveguide.report.plan_dataset import plan_dataset
 from waveguide.scenario import Scenario
+
+if TYPE_CHECKING:
+    import xarray as xr
 
 Array = NDArray[np.float64]
 Progress = Callable[[str], None]
@@ -42,19 +47,38 @@ class Plan:
     ----------
     study : Study
         What was computed without errors.
-    rows : dict
-        A `RowPlan` for each (target, mode) that is reached.
-    members : int
-        Size of the ensemble that was drawn.
+    dataset : xarray.Dataset
+        As declared in :data:`waveguide.report.plan_dataset.PLAN`.
     """
 
     study: Study
-    rows: dict[tuple[int, int], RowPlan]
-    members: int
+    dataset: xr.Dataset
 
 
-def plan(scenario: Scenario, progress: Progress | None = None) -> Plan:
-    """When to look for a signal at each target, and what the answer hangs on.
+def plan(scenario: Scenario, progress: Progress | None = None) -> xr.Dataset:
+    """When to look for a signal at each target, what to measure, and what the answer hangs on.
+
+    Parameters
+    ----------
+    scenario : Scenario
+    progress : callable, optional
+        Told the name of each stage as it begins.
+
+    Returns
+    -------
+    xarray.Dataset
+        As declared in :data:`waveguide.report.plan_dataset.PLAN`.
+
+    Raises
+    ------
+    InputError
+        As :func:`waveguide.pipeline.arrivals`.
+    """
+    return planned(scenario, progress).dataset
+
+
+def planned(scenario: Scenario, progress: Progress | None = None) -> Plan:
+    """A plan together with the arrivals it is about.
 
     Parameters
     ----------
@@ -81,7 +105,7 @@ def plan(scenario: Scenario, progress: Progress | None = None) -> Plan:
         for target, arrival in enumerate(answer.arrivals):
             if arrival.status == REACHED:
                 rows[target, mode] = _row(scenario, done, mode, target, wanted.priors, sample)
-    return Plan(done, rows, sample.shape[0])
+    return Plan(done, plan_dataset(scenario, done.dataset, rows, sample.shape[0]))
 
 
 def _row(

@@ -11,11 +11,10 @@ from html.parser import HTMLParser
 import numpy as np
 import pytest
 
-from waveguide.planning import plan
+from waveguide.planning import planned
 from waveguide.report.page import page
 from waveguide.report.page_data import page_data
 from waveguide.report.page_shore import UNITS_PER_DEGREE, shore_rings
-from waveguide.report.plan_dataset import plan_dataset
 from waveguide.route_sections import route_sections
 from waveguide.scenario import Scenario
 
@@ -42,10 +41,8 @@ def data():
         "targets": [{"name": n, "position": p} for n, p in zip(HOSTILE, PLACES, strict=True)],
         "uncertainty": {"members": 64},
     })  # fmt: skip
-    found = plan(scenario)
-    arrivals = found.study.dataset
-    dataset = plan_dataset(scenario, arrivals, found.rows, found.members)
-    return page_data(arrivals, dataset, route_sections(found.study))
+    found = planned(scenario)
+    return page_data(found.study.dataset, found.dataset, route_sections(found.study))
 
 
 @pytest.fixture(scope="module")

@@ -14,7 +14,7 @@ from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.planning import plan
 from waveguide.propagation.priors import INPUTS, USUAL
-from waveguide.report.plan_dataset import PLAN, plan_dataset
+from waveguide.report.plan_dataset import PLAN
 from waveguide.report.plan_files import write_plan
 from waveguide.report.plan_text import plan_document, plan_table
 from waveguide.scenario import Scenario, Uncertainty, read_scenario
@@ -40,14 +40,9 @@ def question(**changes: object) -> Scenario:
     return Scenario.model_validate(document)
 
 
-def planned(scenario: Scenario) -> xr.Dataset:
-    found = plan(scenario)
-    return plan_dataset(scenario, found.study.dataset, found.rows, found.members)
-
-
 @pytest.fixture(scope="module")
 def answer() -> xr.Dataset:
-    return planned(question())
+    return plan(question())
 
 
 def test_variables_are_those_declared(answer):
@@ -81,7 +76,7 @@ def test_without_an_amplitude_metres_and_chances_are_missing():
     scenario = question(
         event={"position": [-81.3, -5.0], "start": "2031-03-05T00:00:00Z", "duration_days": 6}
     )
-    found = planned(scenario)
+    found = plan(scenario)
     assert np.isnan(found["peak_m"].values).all()
     assert np.isnan(found["chance_above_threshold"].values).all()
     assert np.isfinite(found["peak_ratio"].values[0]).all()
@@ -130,7 +125,7 @@ def test_netcdf_comes_back(answer, tmp_path):
 
 def test_a_seed_reproduces_a_plan_and_another_one_does_not():
     plans = [
-        planned(s)
+        plan(s)
         for s in (question(), question(), question(uncertainty={"members": 2048, "seed": 9}))
     ]
     one, again, other = (p["half_height_days"].values[:4] for p in plans)

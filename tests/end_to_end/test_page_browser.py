@@ -19,9 +19,8 @@ from typing import Any
 import numpy as np
 import pytest
 
-from waveguide.planning import plan
+from waveguide.planning import planned
 from waveguide.report.page import write_page
-from waveguide.report.plan_dataset import plan_dataset
 from waveguide.route_sections import route_sections
 from waveguide.scenario import Scenario, read_scenario
 
@@ -158,10 +157,8 @@ class Browser:
 
 
 def written(scenario: Scenario, folder):
-    found = plan(scenario)
-    arrivals = found.study.dataset
-    dataset = plan_dataset(scenario, arrivals, found.rows, found.members)
-    write_page(arrivals, dataset, route_sections(found.study), folder)
+    found = planned(scenario)
+    write_page(found.study.dataset, found.dataset, route_sections(found.study), folder)
     return folder / "page.html"
 
 
