@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 import xarray as xr
 
+from waveguide.propagation.cautions import KIND, Caution
 from waveguide.schema import ARRIVALS, ARRIVALS_ATTRIBUTES, CAUTION, assemble
 
 # Two targets and one out of reach, two modes. Mode 1 crosses the date line along the equator
@@ -36,6 +37,11 @@ ROUTES = [
 FATES = ["Rossby waves", "bottom friction", "interior damping", "scattered", "other ways"]
 LOST = ["leg_lost_rossby", "leg_lost_friction", "leg_lost_damping", "leg_lost_scattering",
         "leg_other_ways"]  # fmt: skip
+CAUTIONS = {
+    (0, 0): [("fast wave", 0.42), ("narrow basin", 2.2)],
+    (0, 1): [("fast wave", 0.51)],
+    (1, 0): [("fast wave", 0.33), ("curved coast", 0.84)],
+}
 NAMES = ["Callao", "Acapulco", "=Lima\n$x_1$ \u202eevil"]
 PLACES = [(-77.15, -12.05), (-99.92, 16.82), (-60.0, -10.0)]
 
@@ -103,6 +109,15 @@ def _instruments() -> dict[str, list[object]]:
     }  # fmt: skip
 
 
+def _remarks() -> dict[str, list[object]]:
+    rows = [(*row, *each) for row, told in CAUTIONS.items() for each in told]
+    target, mode, kind, number = (list(column) for column in zip(*rows, strict=True))
+    return {
+        "remark_target": target, "remark_mode": mode, "remark_kind": kind,
+        "remark_number": number, "remark_unit": [KIND[name].unit for name in kind],
+    }
+
+
 def build_arrivals() -> xr.Dataset:
     """Arrivals made by hand: Callao in two modes, Acapulco in the first, an inland target."""
     table = _ragged()
@@ -113,9 +128,9 @@ def build_arrivals() -> xr.Dataset:
     }
     status = np.full((3, 2), "off the guide", dtype="<U24")
     status[1, 1] = "no route"
-    caution = np.full((3, 2), "", dtype="<U120")
-    caution[0, 0] = "shelf wider than the deformation radius; ω/|f| is not small"
-    caution[0, 1] = "ω/|f| is not small"
+    caution = np.full((3, 2), "", dtype="<U400")
+    for (target, mode), told in CAUTIONS.items():
+        caution[target, mode] = "; ".join(Caution(*each).text for each in told)
     for route, (target, mode, kind, _, _) in enumerate(ROUTES):
         if kind != "earliest":
             continue
@@ -143,7 +158,7 @@ def build_arrivals() -> xr.Dataset:
         **{name: column for name, column in table.items() if name not in ("target", "mode")
            and not name.startswith("target_")},
     }  # fmt: skip
-    values |= _instruments()
+    values |= _instruments() | _remarks()
     time = np.arange(0.0, 120.0, 0.5)
     peak = np.nan_to_num(rows["peak_time_days"])[..., None]
     wave = np.where(peak > 0.0, 0.5 * np.exp(-(((time - peak) / 3.0) ** 2)), 0.0)

@@ -84,6 +84,7 @@ def _number(dims: tuple[str, ...], long_name: str, units: str) -> Variable:
 _ROW = ("target", "mode")
 _ROUTE, _LEG, _VERTEX = ("route",), ("leg",), ("vertex",)
 _INSTRUMENT = ("instrument",)
+_REMARK = ("remark",)
 
 ARRIVALS: dict[str, Variable] = {
     "target": Variable(("target",), "text", "name of the target", coordinate=True),
@@ -142,6 +143,11 @@ ARRIVALS: dict[str, Variable] = {
         _ROW, "share of the phase speed from the upper 100 m, which seasons change", "1"
     ),
     "caution": Variable(_ROW, "text", "cautions, separated by '; '"),
+    "remark_target": Variable(_REMARK, "integer", "index of the caution's target"),
+    "remark_mode": Variable(_REMARK, "integer", "index of the caution's mode along mode"),
+    "remark_kind": Variable(_REMARK, "text", "kind of the caution"),
+    "remark_number": _number(_REMARK, "number of the caution, in its own unit", "1"),
+    "remark_unit": Variable(_REMARK, "text", "unit of the number"),
     "route_target": Variable(_ROUTE, "integer", "index of the route's target"),
     "route_mode": Variable(_ROUTE, "integer", "index of the route's mode along mode"),
     "route_kind": Variable(_ROUTE, "text", "earliest, strongest or alternative"),
@@ -256,11 +262,16 @@ ARRIVALS_ATTRIBUTES = (
 )
 """Global attributes of the arrivals; `source` is the software, in the sense of CF."""
 
+REMARKS = ("caution", *(name for name, v in ARRIVALS.items() if v.dims == _REMARK))
+"""Variables of the cautions, which a plan repeats."""
+
 _PARENTS = {
     "route_target": "target",
     "route_mode": "mode",
     "leg_route": "route",
     "vertex_leg": "leg",
+    "remark_target": "target",
+    "remark_mode": "mode",
     "instrument_target": "target",
     "instrument_mode": "mode",
 }

@@ -145,7 +145,7 @@ def told(validity: Validity, amplitude: float = 1.0) -> str:
     one, none = np.ones(1), np.zeros(1)
     ties = Ties(np.zeros(1, int), none, none, none, none, none, one, none > 0.0, 0.0, 0.0)
     route = Route(np.arange(1), 0, 0, 1.0, amplitude)
-    return "; ".join(route_cautions(validity, OMEGA, route, ties, ties))
+    return "; ".join(caution.text for caution in route_cautions(validity, route, ties, ties))
 
 
 GOOD = Validity(0.1, 5.0, 5.0, 0.1, 0.0, np.nan, 50.0, 20.0, 0.1)

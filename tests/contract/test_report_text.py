@@ -7,7 +7,9 @@ import unicodedata
 
 import numpy as np
 import pytest
+import xarray as xr
 
+from waveguide.report.caution_text import cautions_text
 from waveguide.report.document import document
 from waveguide.report.table import table
 from waveguide.report.text import columns, pad, plain
@@ -37,11 +39,53 @@ def test_the_table_tells_the_answer(arrivals):
     for word in (f"{front:.2f}", "2031-05-", "14258", "0.5", "reached"):
         assert word in row
     assert any("Acapulco" in line and line.endswith("no route") for line in lines)
-    assert "alternative via Galápagos: equator 11689 km → facing coast" in text
-    assert "ω/|f| is not small (Callao mode 1, Callao mode 2)" in text
+    assert "earliest via the equator: attachment 55 km → equator" in text
+    assert "alternative via Galápagos: 67.30 days, amplitude ratio 0.512" in text
     assert "no warning system" in text
     units = next(line for line in lines if "(days)" in line)
     assert "(m)" not in units  # the event's amplitude is unknown
+
+
+def test_cautions_are_told_once_with_the_range_of_their_numbers(arrivals):
+    told = table(arrivals).split("Cautions, the most serious first")[1].splitlines()[1:]
+    assert told[:6] == [
+        "  ω/|f| reaches 0.33 to 0.51 on the route: the wave is not slow beside the earth's "
+        "rotation",
+        "      all answers",
+        "  the water beside the coast is 2.2 R wide on a twentieth of the way: the other shore is "
+        "felt",
+        "      Callao (mode 1)",
+        "  the coast bends within 0.8 R on a twentieth of the way: bends shift the phase",
+        "      Acapulco (mode 1)",
+    ]
+    assert "no warning system" in told[6]
+
+
+@pytest.mark.parametrize(
+    ("rows", "words"),
+    [
+        ([(0, 0), (1, 0)], "all targets in mode 1"),
+        ([(0, 0), (0, 1)], "all answers but Acapulco (mode 1)"),
+        ([(0, 1), (1, 0)], "all answers but Callao (mode 1)"),
+        ([(0, 1)], "all targets in mode 2"),
+        ([(1, 0)], "Acapulco (mode 1)"),
+    ],
+)
+def test_whom_a_caution_concerns_is_said_exactly(arrivals, rows, words):
+    few = arrivals.isel(remark=np.arange(len(rows)))
+    few["remark_kind"].values[:] = "season"
+    few["remark_target"].values[:], few["remark_mode"].values[:] = np.transpose(rows)
+    assert f"\n      {words}\n" in table(few)
+
+
+def test_long_lists_of_targets_end_in_a_count(arrivals):
+    names = [f"gauge {i}" for i in range(14)]
+    many = xr.Dataset({
+        "status": (("target", "mode"), [["reached"]] * 13 + [["no route"]]),
+        "remark_target": ("remark", list(range(10))), "remark_mode": ("remark", [0] * 10),
+        "remark_kind": ("remark", ["season"] * 10), "remark_number": ("remark", [20.0] * 10),
+    }, {"target": names, "mode": [1]}, arrivals.attrs)  # fmt: skip
+    assert "gauge 7 · 2 more (mode 1)" in cautions_text(many)
 
 
 def test_amplitude_in_metres_is_shown_where_it_is_known(arrivals):
@@ -53,7 +97,7 @@ def test_amplitude_in_metres_is_shown_where_it_is_known(arrivals):
 
 
 def test_the_table_of_nothing_reached(arrivals):
-    text = table(arrivals.isel(target=[2], route=[], leg=[], vertex=[]))
+    text = table(arrivals.isel(target=[2], route=[], leg=[], vertex=[], remark=[]))
     assert "off the guide" in text
     assert "Routes" not in text
 
@@ -99,6 +143,16 @@ def test_rows_without_an_arrival_say_why(parsed):
     assert row["status"] == "no route"
     assert row["front_time_days"] is row["path_length_km"] is row["amplitude_ratio"] is None
     assert row["legs"] == []
+
+
+def test_every_caution_is_in_the_document_with_its_number(arrivals, parsed):
+    found = {
+        (row["target"], row["mode"]): [(c["kind"], c["number"], c["unit"]) for c in row["cautions"]]
+        for row in parsed["arrivals"]
+    }
+    assert found["Callao", 1] == [("fast wave", 0.42, "1"), ("narrow basin", 2.2, "R")]
+    assert found["Callao", 2] == [("fast wave", 0.51, "1")]
+    assert sum(map(len, found.values())) == arrivals.sizes["remark"]
 
 
 def test_alternatives_are_listed(parsed):

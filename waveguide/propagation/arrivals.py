@@ -12,7 +12,7 @@ from waveguide.network.graph import Network
 from waveguide.network.search import Searcher
 from waveguide.ocean.bathymetry import Bathymetry
 from waveguide.ocean.stratification import Climatology
-from waveguide.propagation.cautions import route_cautions
+from waveguide.propagation.cautions import Caution, route_cautions
 from waveguide.propagation.legs import Leg, legs_of_route
 from waveguide.propagation.losses import step_physics
 from waveguide.propagation.modes import ModeAtNodes
@@ -41,7 +41,8 @@ class Arrival:
         The headline route first; empty unless reached.
     legs : list of list of Leg
         For each route.
-    cautions : list of str
+    cautions : list of Caution
+        Of the headline route, the most serious first.
     validity : Validity or None
         Of the headline route.
     """
@@ -51,7 +52,7 @@ class Arrival:
     target: Ties
     routes: list[Route]
     legs: list[list[Leg]]
-    cautions: list[str]
+    cautions: list[Caution]
     validity: Validity | None = None
 
 
@@ -107,7 +108,7 @@ def mode_arrivals(
             for route in routes
         ]
         validity = survey.of(routes[0].steps)
-        cautions = route_cautions(validity, omega, routes[0], ties, target)
+        cautions = route_cautions(validity, routes[0], ties, target)
         arrivals.append(Arrival(REACHED, ties, target, routes, legs, cautions, validity))
     return arrivals
 

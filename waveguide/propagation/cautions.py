@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-import numpy as np
+from dataclasses import dataclass
 
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.network.attach import Ties
@@ -21,6 +21,9 @@ NARROWEST_BASIN = 3.0
 LARGEST_CHANGE = 1.0 / 3.0
 """Change of ln c over one wavelength/2π above which it is not slow."""
 
+LARGEST_CRITICAL_SHARE = 0.1
+"""Share of the coastal way below the critical frequency from which it is worth a word."""
+
 RESOLVED_STRAIT = 20e3
 """Straits narrower than two cells of the 0.1° bathymetry are not resolved by it (m)."""
 
@@ -28,79 +31,163 @@ UPPER_SHARE = 0.15
 """Share of c₁ from the upper ocean above which the season matters (our choice: if seasons change
 N there by a third, c₁ changes by a twentieth)."""
 
+FARTHEST_TIE = 1.0
+"""Distance of a source or target from the guide in R above which it is told."""
+
 FAINT = 0.01
 NORTHERN_ICE, SOUTHERN_ICE = 65.0, -60.0
 """Latitudes poleward of which sea ice is common in winter (MEMORY)."""
 
+EARLIEST_RISE = 1.0
+"""Days by which half-height may precede the front, which leaning coasts explain."""
+
+
+@dataclass(frozen=True)
+class Kind:
+    """One way in which an answer may be out of the depth of the theory.
+
+    Attributes
+    ----------
+    name : str
+    unit : str
+        Of the number; "1" for none.
+    style : str
+        How the number is written.
+    text : str
+        With ``{}`` where the number stands.
+    """
+
+    name: str
+    unit: str
+    style: str
+    text: str
+
+
+KINDS = (
+    Kind("faint signal", "1", ".2g", "amplitude ratio {}: too faint to be told from noise"),
+    Kind("early rise", "days", ".1f",
+         "half-height comes {} days before the front, which is not explained: trust neither to "
+         "better than the difference"),
+    Kind("fast wave", "1", ".2f",
+         "ω/|f| reaches {} on the route: the wave is not slow beside the earth's rotation"),
+    Kind("sea ice in the north", "°N", ".0f",
+         "the route reaches {}°N: sea ice is not accounted for"),
+    Kind("sea ice in the south", "°S", ".0f",
+         "the route reaches {}°S: sea ice is not accounted for"),
+    Kind("unresolved strait", "km", ".0f",
+         "a strait {} km wide on the route is not resolved by the 0.1° bathymetry"),
+    Kind("narrow basin", "R", ".1f",
+         "the water beside the coast is {} R wide on a twentieth of the way: the other shore is "
+         "felt"),
+    Kind("below the critical frequency", "%", ".0f",
+         "{} % of the coastal way is below the critical frequency at the dominant period: sea "
+         "level rises there almost at once, fed from the equator, and leaks Rossby waves"),
+    Kind("fast change of speed", "%", ".0f",
+         "the phase speed changes by {} % over a wavelength/2π: it does not vary slowly, and some "
+         "of the wave is reflected or scattered"),
+    Kind("source off the guide", "R", ".1f", "the source lies {} R off the guide"),
+    Kind("target off the guide", "R", ".1f", "the target lies {} R off the guide"),
+    Kind("source on the shelf", "R", ".1f",
+         "the source lies {} R shoreward of the guide: the signal on the shelf is taken as that at "
+         "the shelf edge"),
+    Kind("target on the shelf", "R", ".1f",
+         "the target lies {} R shoreward of the guide: the signal on the shelf is taken as that at "
+         "the shelf edge"),
+    Kind("curved coast", "R", ".1f",
+         "the coast bends within {} R on a twentieth of the way: bends shift the phase"),
+    Kind("season", "%", ".0f",
+         f"{{}} % of the speed comes from the upper {UPPER_OCEAN:.0f} m, and the stratification is "
+         "that of the annual mean, whatever the season"),
+)  # fmt: skip
+"""The most serious first: those that may void an answer, then those that shift or weaken it."""
+
+KIND = {kind.name: kind for kind in KINDS}
+
+
+@dataclass(frozen=True)
+class Caution:
+    """A caution that belongs to one target and mode.
+
+    Attributes
+    ----------
+    kind : str
+        Name of one of `KINDS`.
+    number : float
+        In the unit of its kind.
+    """
+
+    kind: str
+    number: float
+
+    @property
+    def text(self) -> str:
+        """The caution in words."""
+        return KIND[self.kind].text.format(format(self.number, KIND[self.kind].style))
+
 
 def route_cautions(
-    validity: Validity, omega: float, route: Route, source: Ties, target: Ties
-) -> list[str]:
+    validity: Validity, route: Route, source: Ties, target: Ties
+) -> list[Caution]:
     """Cautions that belong to one target and mode.
 
     Parameters
     ----------
     validity : Validity
         Of the route.
-    omega : float
-        Dominant angular frequency (rad/s).
     route : Route
     source, target : Ties
 
     Returns
     -------
-    list of str
+    list of Caution
+        The most serious first.
     """
-    days = 2.0 * np.pi / omega / SECONDS_PER_DAY
-    icy = _icy(validity)
-    found = [
-        (validity.frequency_over_f > FASTEST_SHARE_OF_F,
-         f"ω/|f| reaches {validity.frequency_over_f:.2f} on the route: the wave is not slow beside "
-         "the earth's rotation"),
-        (validity.critical_share >= 0.1,
-         f"{100 * validity.critical_share:.0f} % of the coastal way is below the critical "
-         f"frequency at {days:g} days: sea level rises there almost at once, fed from the equator, "
-         "and leaks Rossby waves"),
-        (validity.coast_radius < SHARPEST_COAST,
-         f"the coast bends within {validity.coast_radius:.1f} R on a twentieth of the way: bends "
-         "shift the phase"),
-        (validity.basin_width < NARROWEST_BASIN,
-         f"the water beside the coast is {validity.basin_width:.1f} R wide on a twentieth of the "
-         "way: the other shore is felt"),
-        (validity.speed_change > LARGEST_CHANGE,
-         f"the phase speed changes by {100 * validity.speed_change:.0f} % over a wavelength/2π: it "
-         "does not vary slowly, and some of the wave is reflected or scattered"),
-        (validity.narrowest_strait < RESOLVED_STRAIT,
-         f"a strait {validity.narrowest_strait / 1e3:.0f} km wide on the route is not resolved by "
-         "the 0.1° bathymetry"),
-        (bool(icy), f"the route reaches {icy}: sea ice is not accounted for"),
-        (validity.upper_share > UPPER_SHARE,
-         f"{100 * validity.upper_share:.0f} % of the speed comes from the upper {UPPER_OCEAN:.0f} "
-         "m, and the stratification is that of the annual mean, whatever the season"),
-        (route.amplitude < FAINT,
-         f"amplitude ratio {route.amplitude:.2g}: too faint to be told from noise"),
-    ]  # fmt: skip
-    told = [text for raised, text in found if raised]
-    ends = [_tied("source", source, route.start), _tied("target", target, route.end)]
-    return told + [text for text in ends if text]
+    found = {
+        "faint signal": (route.amplitude < FAINT, route.amplitude),
+        "fast wave": (
+            validity.frequency_over_f > FASTEST_SHARE_OF_F, validity.frequency_over_f),
+        "sea ice in the north": (validity.northernmost > NORTHERN_ICE, validity.northernmost),
+        "sea ice in the south": (validity.southernmost < SOUTHERN_ICE, -validity.southernmost),
+        "unresolved strait": (
+            validity.narrowest_strait < RESOLVED_STRAIT, validity.narrowest_strait / 1e3),
+        "narrow basin": (validity.basin_width < NARROWEST_BASIN, validity.basin_width),
+        "below the critical frequency": (
+            validity.critical_share >= LARGEST_CRITICAL_SHARE, 100.0 * validity.critical_share),
+        "fast change of speed": (
+            validity.speed_change > LARGEST_CHANGE, 100.0 * validity.speed_change),
+        "curved coast": (validity.coast_radius < SHARPEST_COAST, validity.coast_radius),
+        "season": (validity.upper_share > UPPER_SHARE, 100.0 * validity.upper_share),
+        **_tied("source", source, route.start),
+        **_tied("target", target, route.end),
+    }  # fmt: skip
+    raised = {name: float(number) for name, (beyond, number) in found.items() if beyond}
+    return [Caution(kind.name, raised[kind.name]) for kind in KINDS if kind.name in raised]
 
 
-def _icy(validity: Validity) -> str:
-    """The latitude that a route reaches where there is ice in winter, or nothing."""
-    if validity.northernmost > NORTHERN_ICE:
-        return f"{validity.northernmost:.0f}°N"
-    if validity.southernmost < SOUTHERN_ICE:
-        return f"{-validity.southernmost:.0f}°S"
-    return ""
+def _tied(what: str, ties: Ties, at: int) -> dict[str, tuple[bool, float]]:
+    """How far an end of a route lies off the guide, or on the shelf inshore of it."""
+    where = f"{what} on the shelf" if ties.inshore[at] else f"{what} off the guide"
+    return {where: (bool(ties.radii[at] > FARTHEST_TIE), float(ties.radii[at]))}
 
 
-def _tied(what: str, ties: Ties, at: int) -> str:
-    kilometres, radii = ties.distance[at] / 1e3, ties.radii[at]
-    if ties.inshore[at] and radii > 1.0:
-        return (
-            f"{what} {kilometres:.0f} km shoreward of the guide ({radii:.1f} R): the signal on the "
-            "shelf is taken as that at the shelf edge"
-        )
-    if not ties.inshore[at] and radii > 1.0:
-        return f"{what} {kilometres:.0f} km off the guide ({radii:.1f} R)"
-    return ""
+def rise_cautions(front: float, half_height: float) -> list[Caution]:
+    """The caution of a waveform that does not wait for the front.
+
+    Parameters
+    ----------
+    front, half_height : float
+        Times from the start of the event (s).
+
+    Returns
+    -------
+    list of Caution
+        None or one.
+    """
+    early = (front - half_height) / SECONDS_PER_DAY
+    return [Caution("early rise", early)] if early > EARLIEST_RISE else []
+
+
+def by_seriousness(cautions: list[Caution]) -> list[Caution]:
+    """Cautions in the order of `KINDS`."""
+    order = [kind.name for kind in KINDS]
+    return sorted(cautions, key=lambda caution: order.index(caution.kind))

@@ -68,7 +68,7 @@ def cell(value: Any) -> Any:
     value = plain_value(value)
     if not isinstance(value, str):
         return "" if value is None else value
-    text = plain(value, limit=1000)
+    text = plain(value, limit=4000)
     return f"'{text}" if text.startswith(_FORMULA) else text
 
 

@@ -11,6 +11,7 @@ import numpy as np
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.propagation.answers import ModeAnswer
 from waveguide.propagation.arrivals import REACHED, Arrival
+from waveguide.propagation.cautions import KIND, Caution, by_seriousness, rise_cautions
 from waveguide.propagation.frequency_limits import Criticality
 from waveguide.propagation.legs import Leg
 from waveguide.propagation.routes import Route
@@ -63,6 +64,9 @@ def arrivals_dataset(
             answer = answers[mode]
             arrival = answer.arrivals[target]
             row = _row(scenario, arrival) | _wave_row(answer, target, scenario.event.amplitude_m)
+            cautions = _cautions(answer, target)
+            row["caution"] = "; ".join(caution.text for caution in cautions)
+            _add_remarks(values, target, column, cautions)
             for name, value in row.items():
                 rows[name].append(value)
             for rank, route in enumerate(arrival.routes):
@@ -101,7 +105,6 @@ def _row(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
         "target_distance_km": arrival.target.nearest / 1e3,
         "target_distance_radii": arrival.target.nearest_radii,
         "target_factor": nan,
-        "caution": "; ".join(arrival.cautions),
         **_validity(arrival),
     }
     for name in ("source", "target"):
@@ -142,6 +145,29 @@ def _wave_row(answer: ModeAnswer, target: int, height: float | None) -> dict[str
         "peak_ratio": peak,
         "amplitude_m": float("nan") if height is None else peak * height,
     }
+
+
+def _cautions(answer: ModeAnswer, target: int) -> list[Caution]:
+    """Cautions of the route and of the waveform of one target, the most serious first."""
+    arrival = answer.arrivals[target]
+    if arrival.status != REACHED:
+        return arrival.cautions
+    rise = rise_cautions(arrival.routes[0].time, answer.times[target].half_height)
+    return by_seriousness(arrival.cautions + rise)
+
+
+def _add_remarks(
+    values: dict[str, Any], target: int, column: int, cautions: list[Caution]
+) -> None:
+    """Append the cautions of one target and mode."""
+    for caution in cautions:
+        _append(values, {
+            "remark_target": target,
+            "remark_mode": column,
+            "remark_kind": caution.kind,
+            "remark_number": caution.number,
+            "remark_unit": KIND[caution.kind].unit,
+        })
 
 
 def _waveforms(answers: list[ModeAnswer], start: np.datetime64) -> dict[str, Any]:

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from waveguide.report.routes import legs_of, routes_of
+from waveguide.report.routes import legs_of, remarks_of, routes_of
 from waveguide.schema import ARRIVALS
 
 if TYPE_CHECKING:
@@ -71,9 +71,35 @@ def _arrival(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
     return {
         **_identity(dataset, target, mode),
         **{name: plain_value(dataset.variables[name].values[target, mode]) for name in _ROW},
+        "cautions": cautions_of(dataset, target, mode),
         "legs": _legs(dataset, routes[0]) if routes else [],
         "at_depth": _at_depth(dataset, target, mode),
     }
+
+
+def cautions_of(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, Any]]:
+    """Each caution of a row with its number, the most serious first.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+        Arrivals, or a plan.
+    target, mode : int
+        Indices of the row, along ``target`` and along ``mode``.
+
+    Returns
+    -------
+    list of dict
+        With ``kind``, ``number`` and ``unit``.
+    """
+    return [
+        {
+            "kind": plain_value(dataset.variables["remark_kind"].values[i]),
+            "number": plain_value(dataset.variables["remark_number"].values[i]),
+            "unit": plain_value(dataset.variables["remark_unit"].values[i]),
+        }
+        for i in remarks_of(dataset, target, mode)
+    ]
 
 
 def _at_depth(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, Any]]:

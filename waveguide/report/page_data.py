@@ -28,8 +28,9 @@ _LOST = ("leg_lost_rossby", "leg_lost_friction", "leg_lost_damping", "leg_lost_s
 _CHECKS: tuple[tuple[str, str, str, Callable[[float], bool]], ...] = (
     ("frequency_over_f", "Largest ω/|f| on the coasts", f"below {limit.FASTEST_SHARE_OF_F:g}",
      lambda x: x > limit.FASTEST_SHARE_OF_F),
-    ("critical_share", "Share of coast below the critical frequency", "below 0.1",
-     lambda x: x >= 0.1),
+    ("critical_share", "Share of coast below the critical frequency",
+     f"below {limit.LARGEST_CRITICAL_SHARE:g}",
+     lambda x: x >= limit.LARGEST_CRITICAL_SHARE),
     ("coast_radius_radii", "Radius of curvature of the coast, in R",
      f"above {limit.SHARPEST_COAST:g}", lambda x: x < limit.SHARPEST_COAST),
     ("basin_width_radii", "Width of the water beside the coast, in R (5 or more: 5)",
@@ -44,8 +45,10 @@ _CHECKS: tuple[tuple[str, str, str, Callable[[float], bool]], ...] = (
      f"above {limit.SOUTHERN_ICE:g}", lambda x: x < limit.SOUTHERN_ICE),
     ("upper_ocean_share", "Share of speed from the upper 100 m (season)",
      f"below {limit.UPPER_SHARE:g}", lambda x: x > limit.UPPER_SHARE),
-    ("source_distance_radii", "Source off the guide, in R", "below 1", lambda x: x > 1.0),
-    ("target_distance_radii", "Target off the guide, in R", "below 1", lambda x: x > 1.0),
+    ("source_distance_radii", "Source off the guide, in R", f"below {limit.FARTHEST_TIE:g}",
+     lambda x: x > limit.FARTHEST_TIE),
+    ("target_distance_radii", "Target off the guide, in R", f"below {limit.FARTHEST_TIE:g}",
+     lambda x: x > limit.FARTHEST_TIE),
 )
 """Variables of validity with their names, limits, and when they are beyond them."""
 

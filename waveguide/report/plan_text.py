@@ -10,7 +10,8 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from waveguide.report.document import plain_value
+from waveguide.report.caution_text import cautions_text
+from waveguide.report.document import cautions_of, plain_value
 from waveguide.report.layout import WIDTH, aligned, filled
 from waveguide.report.plan_dataset import PLAN
 from waveguide.report.text import plain
@@ -45,7 +46,7 @@ def plan_table(dataset: xr.Dataset) -> str:
     parts = [
         _head(dataset), _when(dataset, reached),
         "\n".join(["Not reached", *missing]) if missing else "",
-        _what(dataset, reached), _why(dataset, reached), _notes(dataset),
+        _what(dataset, reached), _why(dataset, reached), _notes(dataset), cautions_text(dataset),
     ]  # fmt: skip
     return "\n\n".join(part for part in parts if part)
 
@@ -148,13 +149,13 @@ def _leading(dataset: xr.Dataset, name: str, row: tuple[int, int]) -> str:
 def _notes(dataset: xr.Dataset) -> str:
     error = float(np.nanmax(dataset["sampling_error_days"].values, initial=0.0))
     lines = [
+        "Notes",
         f"  Percentiles of times have standard errors of up to {error:.2g} days from the size of "
         "the ensemble.",
         "  Noise levels (m, m, m/s, m) are round figures to compare instruments: "
         f"{dataset.attrs['noise']}.",
-        f"  {dataset.attrs['caution']}",
     ]
-    return "\n".join(["Cautions", *(filled(line, 4) for line in lines)])
+    return "\n".join(filled(line, 4) for line in lines)
 
 
 def _name(dataset: xr.Dataset, row: tuple[int, int]) -> str:
@@ -196,6 +197,7 @@ def plan_document(dataset: xr.Dataset) -> dict[str, Any]:
         {
             "target": str(target), "mode": int(mode),
             **{name: _plain(dataset, name, (t, m)) for name in _row_names()},
+            "cautions": cautions_of(dataset, t, m),
         }
         for t, target in enumerate(dataset["target"].values)
         for m, mode in enumerate(dataset["mode"].values)
@@ -240,6 +242,8 @@ def write_plan_csv(dataset: xr.Dataset, folder: Path) -> None:
 
 def _flat(row: dict[str, Any]) -> Iterator[tuple[str, Any]]:
     for name, value in row.items():
+        if isinstance(value, list):  # of cautions, which `caution` has in words
+            continue
         if not isinstance(value, dict):
             yield name, value
             continue
@@ -250,5 +254,5 @@ def _flat(row: dict[str, Any]) -> Iterator[tuple[str, Any]]:
 def _cell(value: Any) -> Any:
     if not isinstance(value, str):
         return "" if value is None else value
-    text = plain(value, 1000)
+    text = plain(value, 4000)
     return f"'{text}" if text.startswith(_FORMULA) else text

@@ -31,6 +31,13 @@ def routes_of(dataset: xr.Dataset, target: int, mode: int) -> list[int]:
     return sorted((int(i) for i in np.flatnonzero(mine)), key=lambda i: (later[i], times[i]))
 
 
+def remarks_of(dataset: xr.Dataset, target: int, mode: int) -> list[int]:
+    """Indices of the cautions of one row, the most serious first."""
+    stored = dataset.variables
+    mine = (stored["remark_target"].values == target) & (stored["remark_mode"].values == mode)
+    return [int(i) for i in np.flatnonzero(mine)]
+
+
 def legs_of(dataset: xr.Dataset, route: int) -> range:
     """Indices of the legs of a route, in the order of travel."""
     return _span(dataset.variables["leg_route"].values, route)

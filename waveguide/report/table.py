@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.report.budget import budget_line, budget_text
+from waveguide.report.caution_text import cautions_text
 from waveguide.report.instruments import instruments_text
 from waveguide.report.layout import WIDTH, filled
 from waveguide.report.routes import legs_of, routes_of
@@ -51,7 +52,7 @@ def table(dataset: xr.Dataset, budget: bool = False) -> str:
     parts.append(instruments_text(dataset))
     if budget:
         parts.append(budget_text(dataset))
-    parts.append(_cautions(dataset, rows))
+    parts.append(cautions_text(dataset))
     return "\n\n".join(part for part in parts if part)
 
 
@@ -147,15 +148,16 @@ def _routes(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
 
 
 def _route(dataset: xr.Dataset, route: int) -> str:
+    """The earliest route by its legs, a further one by what tells it from the others."""
     kind = plain(dataset["route_kind"].values[route])
-    via = plain(dataset["route_via"].values[route], 60)
+    via = plain(dataset["route_via"].values[route], 200)
     time = float(dataset["route_front_time_days"].values[route])
     ratio = float(dataset["route_amplitude_ratio"].values[route])
     head = f"{kind} via {via}" if via else kind
-    return (
-        f"{head}: {_legs(dataset, route)} ({time:.2f} days, amplitude ratio {ratio:.3g}; "
-        f"{budget_line(dataset, route)})"
-    )
+    told = f"{time:.2f} days, amplitude ratio {ratio:.3g}"
+    if kind != "earliest":
+        return f"{head}: {told}"
+    return f"{head}: {_legs(dataset, route)} ({told}; {budget_line(dataset, route)})"
 
 
 def _legs(dataset: xr.Dataset, route: int) -> str:
@@ -175,16 +177,6 @@ def _run(dataset: xr.Dataset, kind: str, legs: list[int]) -> str:
     low, high = f"{periods.min():.0f}", f"{periods.max():.0f}"
     days = low if low == high else f"{low} to {high}"
     return f"{text} (quasi-simultaneous, critical period {days} days)"
-
-
-def _cautions(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
-    """Each caution once, with the rows it belongs to, and the one that belongs to all."""
-    found: dict[str, list[str]] = {}
-    for row in rows:
-        for caution in filter(None, str(dataset["caution"].values[row]).split("; ")):
-            found.setdefault(plain(caution, 300), []).append(_row_name(dataset, *row))
-    lines = [filled(f"  {caution} ({', '.join(where)})", 4) for caution, where in found.items()]
-    return "\n".join(["Cautions", *lines, filled(f"  {dataset.attrs['caution']}", 4)])
 
 
 def _row_name(dataset: xr.Dataset, target: int, mode: int) -> str:
