@@ -13,6 +13,14 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
+from waveguide.cli_arguments import (
+    EVENT_SCENARIO,
+    JSON,
+    ending,
+    out_option,
+    print_json,
+    say_where,
+)
 from waveguide.cli_planning import answer_with_page, plan, require_folder
 from waveguide.cli_records import compare, lookout
 from waveguide.cli_sections import atlas, section
@@ -28,20 +36,14 @@ if TYPE_CHECKING:
 app = typer.Typer(
     name="waveguide",
     help="Arrival of sea-level signals along coasts and the equator.",
-    add_completion=False,
+    epilog=ending(
+        "waveguide scenarios", "waveguide arrivals peru_burst --out results",
+        "waveguide COMMAND --help",
+    ),
     rich_markup_mode=None,
     pretty_exceptions_enable=False,
     no_args_is_help=True,
 )
-
-
-app.command()(compare)
-app.command()(lookout)
-app.command()(response)
-app.command()(plan)
-# A negative longitude looks like an option; `section` itself refuses what is neither.
-app.command(context_settings={"ignore_unknown_options": True, "allow_extra_args": True})(section)
-app.command()(atlas)
 
 
 def main() -> None:
@@ -84,25 +86,33 @@ def _options(
     pass
 
 
-@app.command()
+@app.command(
+    epilog=ending(
+        "waveguide arrivals peru_burst", "waveguide arrivals peru_burst --out results --page",
+        "waveguide arrivals my_event.toml --json > arrivals.json",
+    )
+)
 def arrivals(
-    scenario: Annotated[
-        str, typer.Argument(help="A scenario file, or the name of a shipped scenario.")
-    ],
-    out: Annotated[
-        Path | None,
-        typer.Option(help="Also write the formats the scenario asks for to this folder."),
-    ] = None,
-    json: Annotated[bool, typer.Option("--json", help="Print one JSON document.")] = False,
+    scenario: EVENT_SCENARIO,
+    out: Annotated[Path | None, out_option("the formats the scenario asks for")] = None,
+    json: JSON = False,
     budget: Annotated[
-        bool, typer.Option("--budget", help="Also print where the energy goes on every leg.")
+        bool,
+        typer.Option(
+            "--budget",
+            help="Also print where the energy goes on every leg.  [default: not printed]",
+        ),
     ] = False,
     page: Annotated[
         bool,
-        typer.Option("--page", help="Also write page.html, to move through in a browser (--out)."),
+        typer.Option(
+            "--page",
+            help="Also write page.html, to move through in a browser, to the folder of --out.  "
+            "[default: no page]",
+        ),
     ] = False,
 ) -> None:
-    """When, by which route and how strongly a signal reaches each target."""
+    """When, by which route and how strongly a signal arrives."""
     from waveguide.report.files import output_folder, write_outputs
     from waveguide.scenario import read_scenario
 
@@ -113,19 +123,60 @@ def arrivals(
         if folder is not None:
             write_outputs(answer, folder, question.output.formats)
     _show(answer, json, budget)
-    if out is not None:
-        print(f"waveguide: outputs are in {out}", file=sys.stderr)
+    say_where(out)
 
 
-@app.command()
+app.command(
+    epilog=ending("waveguide plan peru_burst", "waveguide plan my_cruise.toml --out results")
+)(plan)
+app.command(
+    epilog=ending(
+        "waveguide lookout pacific_model", "waveguide lookout pacific_model --model run_*.nc"
+    )
+)(lookout)
+app.command(epilog=ending("waveguide compare my_gauges.toml --out results"))(compare)
+app.command(
+    epilog=ending(
+        "waveguide response westerly_burst", "waveguide response pacific_winds --out results"
+    )
+)(response)
+# A negative longitude looks like an option; `section` itself refuses what is neither.
+app.command(
+    context_settings={"ignore_unknown_options": True, "allow_extra_args": True},
+    epilog=ending(
+        "waveguide section -77.2 -12.1", "waveguide section 151.3 -33.9 --period 10 --out results"
+    ),
+)(section)
+app.command(
+    epilog=ending(
+        "waveguide atlas --region -82 -20 -70 0 --bathymetry depths.nc --out my_atlas",
+        more=" 130: interrupted; the same command goes on from there.",
+    )
+)(atlas)
+
+
+@app.command(epilog=ending("waveguide scenarios"))
 def scenarios() -> None:
-    """List the shipped scenarios."""
-    from waveguide.scenario import scenario_title, shipped_scenarios
+    """List the shipped scenarios, and the commands that answer them."""
+    from waveguide.scenario import scenario_title
+    from waveguide.shipped import commands_for, shipped_scenarios
 
     shipped = shipped_scenarios()
     width = max(map(len, shipped), default=0)
     for name, path in shipped.items():
-        print(f"{name:{width}}  {scenario_title(path)}")
+        print(f"{name:{width}}  {scenario_title(path)} ({', '.join(commands_for(path))})")
+
+
+@app.command(epilog=ending("waveguide cite", "waveguide cite --bibtex > waveguide.bib"))
+def cite(
+    bibtex: Annotated[
+        bool, typer.Option("--bibtex", help="Print BibTeX entries.  [default: text]")
+    ] = False,
+) -> None:
+    """How to cite the software, its data and its methods."""
+    from waveguide.report.citation import citation_bibtex, citation_text
+
+    print(citation_bibtex() if bibtex else citation_text())
 
 
 def _answer(question: Scenario) -> xr.Dataset:
@@ -137,11 +188,9 @@ def _answer(question: Scenario) -> xr.Dataset:
 
 def _show(answer: xr.Dataset, as_json: bool, budget: bool) -> None:
     if as_json:
-        import json
-
         from waveguide.report.document import document
 
-        print(json.dumps(document(answer), indent=1, allow_nan=False))
+        print_json(document(answer))
     else:
         from waveguide.report.table import table
 

@@ -6,9 +6,7 @@ from contextlib import nullcontext
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated
 
-import typer
-
-from waveguide.cli_records import JSON, SCENARIO, print_json, say_where
+from waveguide.cli_arguments import EVENT_SCENARIO, JSON, out_option, print_json, say_where
 from waveguide.progress import Progress
 
 if TYPE_CHECKING:
@@ -18,13 +16,11 @@ if TYPE_CHECKING:
 
 
 def plan(
-    scenario: SCENARIO,
-    out: Annotated[
-        Path | None, typer.Option(help="Also write plan.csv and plan.nc to this folder.")
-    ] = None,
+    scenario: EVENT_SCENARIO,
+    out: Annotated[Path | None, out_option("plan.csv and plan.nc")] = None,
     json: JSON = False,
 ) -> None:
-    """When to look for a signal, what to measure, and what the answer hangs on."""
+    """When to look, what to measure, and what the answer hangs on."""
     from waveguide.planning import plan as compute
     from waveguide.report.files import output_folder
     from waveguide.report.plan_files import write_plan

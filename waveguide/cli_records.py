@@ -2,30 +2,29 @@
 
 from __future__ import annotations
 
-import sys
 from contextlib import AbstractContextManager, nullcontext
 from pathlib import Path
 from typing import Annotated
 
 import typer
 
+from waveguide.cli_arguments import (
+    EVENT_SCENARIO,
+    JSON,
+    RECORD_SCENARIO,
+    out_option,
+    print_json,
+    say_where,
+)
 from waveguide.progress import Progress
-
-SCENARIO = Annotated[
-    str, typer.Argument(help="A scenario file, or the name of a shipped scenario.")
-]
-JSON = Annotated[bool, typer.Option("--json", help="Print one JSON document.")]
 
 
 def compare(
-    scenario: SCENARIO,
-    out: Annotated[
-        Path | None,
-        typer.Option(help="Also write tables, prepared records and figures to this folder."),
-    ] = None,
+    scenario: RECORD_SCENARIO,
+    out: Annotated[Path | None, out_option("tables, prepared records and figures")] = None,
     json: JSON = False,
 ) -> None:
-    """Was it a trapped wave? Records of gauges and moorings against the theory."""
+    """Was it a trapped wave? Records against the theory."""
     from waveguide.report.comparison_dataset import comparison_dataset
     from waveguide.report.comparison_files import write_comparison
     from waveguide.report.comparison_text import comparison_document, comparison_table
@@ -49,23 +48,32 @@ def compare(
 
 
 def lookout(
-    scenario: SCENARIO,
+    scenario: EVENT_SCENARIO,
     files: Annotated[
-        list[Path] | None, typer.Argument(help="Further files of --model.", show_default=False)
+        list[Path] | None,
+        typer.Argument(
+            help="Further files of --model, as a shell makes of a pattern.", show_default="none"
+        ),
     ] = None,
     model: Annotated[
-        Path | None, typer.Option(help="Model output: NetCDF files or a Zarr store.")
-    ] = None,
-    out: Annotated[
         Path | None,
-        typer.Option(help="Also write windows, diagrams and the subset to this folder."),
+        typer.Option(
+            metavar="FILE", show_default="windows only",
+            help="Output of an ocean model: NetCDF files, or one Zarr store.",
+        ),
     ] = None,
+    out: Annotated[Path | None, out_option("windows, diagrams and the subset")] = None,
     json: JSON = False,
     dask: Annotated[
-        str | None, typer.Option(help="Address of a dask cluster that does the work.")
+        str | None,
+        typer.Option(
+            metavar="ADDRESS", show_default="this process",
+            help="Scheduler of a running dask cluster that does the work, as in "
+            "tcp://127.0.0.1:8786.",
+        ),
     ] = None,
 ) -> None:
-    """Where and when to look: windows along the routes, and what model output shows there."""
+    """Where and when to look along the routes, also in model output."""
     from waveguide.report.files import output_folder
     from waveguide.report.lookout_files import write_lookout
     from waveguide.report.lookout_text import lookout_document, lookout_table
@@ -150,16 +158,3 @@ def cluster(address: str | None) -> AbstractContextManager[object]:
             "scheduler, as in tcp://127.0.0.1:8786"
         ) from None
     return client
-
-
-def print_json(document: object) -> None:
-    """One JSON document on standard output."""
-    import json
-
-    print(json.dumps(document, indent=1, allow_nan=False))
-
-
-def say_where(out: Path | None) -> None:
-    """Where the files are, on standard error."""
-    if out is not None:
-        print(f"waveguide: outputs are in {out}", file=sys.stderr)

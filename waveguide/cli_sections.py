@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from waveguide.cli_records import JSON, print_json, say_where
+from waveguide.cli_arguments import JSON, out_option, print_json, say_where
 from waveguide.progress import Bar, Progress
 
 if TYPE_CHECKING:
@@ -18,27 +18,43 @@ if TYPE_CHECKING:
 
 def section(
     context: typer.Context,
-    lon: Annotated[str, typer.Argument(help="Longitude, degrees east.")],
-    lat: Annotated[str, typer.Argument(help="Latitude, degrees north.")],
-    out: Annotated[
-        Path | None, typer.Option(help="Also write figure and NetCDF file to this folder.")
-    ] = None,
+    lon: Annotated[str, typer.Argument(help="Longitude of a coast, degrees east.")],
+    lat: Annotated[str, typer.Argument(help="Latitude of a coast, degrees north.")],
+    out: Annotated[Path | None, out_option("a figure and a NetCDF file")] = None,
     profile: Annotated[
-        Path | None, typer.Option(help="Your own depths: CSV with offshore_km,depth_m.")
+        Path | None,
+        typer.Option(
+            metavar="FILE", show_default="the packaged depths",
+            help="Your own depths: CSV with columns offshore_km (km), depth_m (m).",
+        ),
     ] = None,
     stratification: Annotated[
         Path | None,
-        typer.Option(help="Your own: CSV with depth,n2 or depth,temperature,salinity."),
+        typer.Option(
+            metavar="FILE", show_default="the packaged climatology",
+            help="Your own: CSV with columns depth (m), n2 (1/s²), or depth, temperature (°C), "
+            "salinity.",
+        ),
     ] = None,
-    drag: Annotated[float, typer.Option(help="Linear bottom drag (m/s) of the decay length.")]
-    = 5e-4,
-    modes: Annotated[int, typer.Option(help="Highest mode number.")] = 3,
+    drag: Annotated[
+        float,
+        typer.Option(
+            metavar="NUMBER", help="Linear bottom drag of the decay length (m/s).",
+        ),
+    ] = 5e-4,
+    modes: Annotated[
+        int, typer.Option(metavar="NUMBER", help="Highest number of a mode, 1 or more.")
+    ] = 3,
     period: Annotated[
-        float | None, typer.Option(help="Period (days) of phase and group speed.")
+        float | None,
+        typer.Option(
+            metavar="DAYS", show_default="long waves only",
+            help="Period (days) at which phase and group speed are told too.",
+        ),
     ] = None,
     json: JSON = False,
 ) -> None:
-    """Cross-shelf section at a coast, and the speed and shape of its coastal-trapped modes."""
+    """A cross-shelf section and its coastal-trapped modes."""
     from waveguide.report.files import output_folder
     from waveguide.report.section_files import write_section
     from waveguide.report.section_table import section_document, section_table
@@ -64,20 +80,39 @@ def section(
 def atlas(
     region: Annotated[
         tuple[float, float, float, float] | None,
-        typer.Option(help="West, south, east and north limit in degrees; the globe if not given."),
+        typer.Option(
+            metavar="W S E N", show_default="the globe",
+            help="West, south, east and north limit (degrees).",
+        ),
     ] = None,
-    bathymetry: Annotated[Path | None, typer.Option(help="Your own depths (CF NetCDF).")] = None,
+    bathymetry: Annotated[
+        Path | None,
+        typer.Option(
+            metavar="FILE", show_default="the packaged depths", help="Your own depths: CF NetCDF."
+        ),
+    ] = None,
     climatology: Annotated[
-        Path | None, typer.Option(help="Your own temperature and salinity (CF NetCDF).")
+        Path | None,
+        typer.Option(
+            metavar="FILE", show_default="the packaged climatology",
+            help="Your own temperature and salinity: CF NetCDF.",
+        ),
     ] = None,
     temperature: Annotated[
         str | None,
-        typer.Option(help="Its kind, if the file does not say: in-situ, potential, conservative."),
+        typer.Option(
+            metavar="KIND", show_default="what the file says",
+            help="Kind of its temperature: in-situ, potential or conservative.",
+        ),
     ] = None,
-    out: Annotated[Path, typer.Option(help="Folder of atlas_trapped.nc.")] = Path(),
-    workers: Annotated[int, typer.Option(help="Processes.", min=1)] = 2,
+    out: Annotated[
+        Path, typer.Option(metavar="FOLDER", help="Folder of atlas_trapped.nc.")
+    ] = Path(),
+    workers: Annotated[
+        int, typer.Option(metavar="NUMBER", help="Number of processes, 1 or more.", min=1)
+    ] = 2,
 ) -> None:
-    """Compute the coastal-trapped modes of every section of the guide; goes on if interrupted."""
+    """Modes of every section of the guide; goes on if interrupted."""
     from waveguide.network.trapped_build import atlas_file
 
     try:

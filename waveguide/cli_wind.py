@@ -6,21 +6,16 @@ from contextlib import nullcontext
 from pathlib import Path
 from typing import Annotated
 
-import typer
-
-from waveguide.cli_records import JSON, SCENARIO, print_json, say_where
+from waveguide.cli_arguments import JSON, WIND_SCENARIO, out_option, print_json, say_where
 from waveguide.progress import Progress
 
 
 def response(
-    scenario: SCENARIO,
-    out: Annotated[
-        Path | None,
-        typer.Option(help="Also write tables, series and figures to this folder."),
-    ] = None,
+    scenario: WIND_SCENARIO,
+    out: Annotated[Path | None, out_option("tables, series and figures")] = None,
     json: JSON = False,
 ) -> None:
-    """What sea level a wind drives at each target, and which wind did it."""
+    """What sea level a wind drives, and which wind did it."""
     from waveguide.report.files import output_folder
     from waveguide.report.response_dataset import response_dataset
     from waveguide.report.response_text import response_document, response_table

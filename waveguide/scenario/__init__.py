@@ -22,10 +22,10 @@ from waveguide.scenario.reading import (
     read_scenario,
     read_wind_scenario,
     scenario_title,
-    shipped_scenarios,
 )
 from waveguide.scenario.uncertainty import Planning, Uncertainty
 from waveguide.scenario.wind import Wind, WindPatch, WindStorm
+from waveguide.shipped import shipped_scenarios
 
 __all__ = [
     "Compare",

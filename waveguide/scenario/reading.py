@@ -14,6 +14,7 @@ from waveguide.errors import InputError
 from waveguide.scenario.model import Comparison, Scenario, WindScenario
 from waveguide.scenario.problems import problem_lines, shown
 from waveguide.scenario.target_table import TargetTable, read_target_table
+from waveguide.shipped import shipped_scenarios
 
 Model = TypeVar("Model", Scenario, Comparison, WindScenario)
 
@@ -112,22 +113,6 @@ def _read(scenario: str | Path, model: type[Model]) -> Model:
     return result
 
 
-def shipped_scenarios(table: str | None = None) -> dict[str, Path]:
-    """The scenarios that come with the package: name to path, in alphabetical order.
-
-    Parameters
-    ----------
-    table : str or None
-        Only those whose file has this table, such as "event" or "wind".
-
-    Returns
-    -------
-    dict of Path
-    """
-    found = {path.stem: path for path in sorted(_scenario_folder().glob("*.toml"))}
-    return {name: path for name, path in found.items() if table is None or table in _parse(path)}
-
-
 def find_scenario(scenario: str | Path) -> Path:
     """The file that a path or the name of a shipped scenario stands for.
 
@@ -156,13 +141,6 @@ def find_scenario(scenario: str | Path) -> Path:
         f"scenario {shown(str(scenario))}: there is no such file and no shipped scenario of that "
         f"name; {meant}shipped are {', '.join(shipped)}"
     )
-
-
-def _scenario_folder() -> Path:
-    """The shipped scenarios, inside an installed wheel or beside the package in a clone."""
-    package = Path(__file__).resolve().parents[1]
-    installed = package / "_scenarios"
-    return installed if installed.is_dir() else package.parent / "scenarios"
 
 
 def _parse(path: Path) -> dict[str, Any]:
