@@ -277,7 +277,7 @@ def eastern_wall(frequency: ArrayLike, distance: ArrayLike) -> ComplexArray:
     ndarray of complex, shape S + T
         The incident Kelvin wave has amplitude 1 and phase 0 on the equator at the wall.
     """
-    return _wall(frequency, distance, 0, True)
+    return wall_sum(_coefficients(frequency, 0, True), distance, 0)
 
 
 def western_wall(frequency: ArrayLike, distance: ArrayLike) -> ComplexArray:
@@ -297,10 +297,10 @@ def western_wall(frequency: ArrayLike, distance: ArrayLike) -> ComplexArray:
     -------
     ndarray of complex, shape S + T
     """
-    symmetric, mixed = (_wall(frequency, distance, parity, False) for parity in (0, 1))
-    far = np.array(_FAR)
-    ratio = _wall(frequency, far, 0, False) / _wall(frequency, far, 1, False)
-    return symmetric + ratio[(...,) + (None,) * np.ndim(distance)] * mixed
+    series = [_coefficients(frequency, parity, False) for parity in (0, 1)]
+    symmetric, mixed = (wall_sum(q, distance, parity) for parity, q in enumerate(series))
+    far = [wall_sum(q, _FAR, parity) for parity, q in enumerate(series)]
+    return symmetric + (far[0] / far[1])[(...,) + (None,) * np.ndim(distance)] * mixed
 
 
 def rossby_share(frequency: ArrayLike, modes: int) -> Array:
@@ -391,6 +391,6 @@ def _asymmetry_table() -> tuple[Array, ComplexArray]:
     return grid, oblique_asymmetry(grid, _FAR)
 
 
-def _wall(frequency: ArrayLike, distance: ArrayLike, parity: int, eastern: bool) -> ComplexArray:
+def _coefficients(frequency: ArrayLike, parity: int, eastern: bool) -> ComplexArray:
     slow = np.maximum(np.asarray(frequency, float), SLOWEST)
-    return wall_sum(wall_coefficients(slow, TERMS + 1, parity, eastern), distance, parity)
+    return wall_coefficients(slow, TERMS + 1, parity, eastern)

@@ -103,6 +103,13 @@ class JunctionTable:
     lag: Array
     upright: Array
 
+    def at(self, frequencies: slice) -> JunctionTable:
+        """The table at some of its frequencies."""
+        return JunctionTable(
+            self.junctions, self.energy[..., frequencies], self.gain[..., frequencies],
+            self.lag[..., frequencies], self.upright[..., frequencies],
+        )
+
 
 def network_junctions(network: Network, mode: ModeAtNodes) -> Junctions:
     """Junctions of coasts with the equator of oceans, and the lean of the coasts.

@@ -63,6 +63,13 @@ class WallTable:
     lag: Array
     junctions: JunctionTable
 
+    def at(self, frequencies: slice) -> WallTable:
+        """The table at some of its frequencies."""
+        return WallTable(
+            self.matching, self.eastern[:, frequencies], self.western[:, frequencies],
+            self.lag[:, frequencies], self.junctions.at(frequencies),
+        )  # fmt: skip
+
 
 def wall_table(
     omega: Array, speed: float, matching: float, junctions: JunctionTable

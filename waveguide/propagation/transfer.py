@@ -106,6 +106,21 @@ class RouteTransfer:
     leg_nepers: Array
     front_time: float
 
+    def at(self, rows: Index) -> RouteTransfer:
+        """The transfer function at some of its frequencies, in the order given."""
+        return RouteTransfer(
+            self.omega[rows], self.response[rows], self.leg_response[:, rows],
+            self.leg_nepers[:, :, rows], self.front_time,
+        )  # fmt: skip
+
+    def beside(self, other: RouteTransfer) -> RouteTransfer:
+        """The transfer function of the same route at the frequencies of two."""
+        return RouteTransfer(
+            np.append(self.omega, other.omega), np.append(self.response, other.response),
+            np.append(self.leg_response, other.leg_response, axis=-1),
+            np.append(self.leg_nepers, other.leg_nepers, axis=-1), self.front_time,
+        )  # fmt: skip
+
 
 class LegBudget(NamedTuple):
     """Where the energy of the source goes, as shares of it.
@@ -217,10 +232,7 @@ def route_transfers(
     """
     if not paths:
         return []
-    nodes = np.concatenate([_leg_nodes(network, path) for path in paths])
-    blocks = np.array_split(omega, max(1, -(-omega.size // _FREQUENCIES_AT_ONCE)))
-    parts = [_leg_sums(network, mode, paths, nodes, block, conditions) for block in blocks]
-    lag, nepers, at_nodes = (np.concatenate(part, axis=-1) for part in zip(*parts, strict=True))
+    lag, nepers, at_nodes = _leg_sums(network, mode, paths, omega, conditions)
     transfers, leg = [], 0
     for row, path in enumerate(paths):
         legs = slice(leg, leg + path.leg_ends.size)
@@ -260,19 +272,26 @@ def _leg_nodes(network: Network, path: Path) -> Index:
 
 
 def _leg_sums(
-    network: Network, mode: ModeAtNodes, paths: Sequence[Path], nodes: Index, omega: Array,
+    network: Network, mode: ModeAtNodes, paths: Sequence[Path], omega: Array,
     conditions: Conditions,
 ) -> tuple[Array, Array, Array]:
-    """Lag and nepers of every leg of every path, and the potential at `nodes`."""
+    """Lag and nepers of every leg of every path, and the potential at their `_leg_nodes`."""
+    nodes = np.concatenate([_leg_nodes(network, path) for path in paths])
     steps, column = np.unique(np.concatenate([path.steps for path in paths]), return_inverse=True)
     ends = np.concatenate([nodes, network.tail[steps], network.head[steps]])
     table = network_wall_table(network, mode, omega, ends)
-    response = step_response(network, mode, steps, omega, table, conditions)
     sizes = np.concatenate([np.diff(path.leg_ends, prepend=0) for path in paths])
     bounds = np.concatenate([[0], np.cumsum(sizes)])
     legs = csr_array((np.ones(column.size), column, bounds), shape=(sizes.size, steps.size))
-    nepers = np.stack([legs @ response.nepers[fate] for fate in range(len(FATES))])
-    return legs @ response.lag, nepers, potential(network, mode, nodes, table)
+    lag = np.empty((sizes.size, omega.size))
+    nepers = np.empty((len(FATES), *lag.shape))
+    for first in range(0, omega.size, _FREQUENCIES_AT_ONCE):
+        part = slice(first, first + _FREQUENCIES_AT_ONCE)
+        response = step_response(network, mode, steps, omega[part], table.at(part), conditions)
+        lag[:, part] = legs @ response.lag
+        for fate in range(len(FATES)):
+            nepers[fate][:, part] = legs @ response.nepers[fate]
+    return lag, nepers, potential(network, mode, nodes, table)
 
 
 def _times(network: Network, mode: ModeAtNodes, path: Path, conditions: Conditions) -> _Times:

@@ -23,6 +23,8 @@ Clarke (1983), J. Phys. Oceanogr. 13, 1193.
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
@@ -122,9 +124,9 @@ def wall_sum(coefficients: ComplexArray, distance: ArrayLike, parity: int) -> Co
     -------
     ndarray of complex, shape S + T
     """
-    count = len(coefficients)
-    psi = hermite_functions(2 * count + parity, distance)[parity::2] * np.pi**0.25
-    weights = psi * _taper(count)[(...,) + (None,) * np.ndim(distance)]
+    places = np.asarray(distance, float)
+    weights = _weights(len(coefficients), parity, tuple(places.ravel().tolist()))
+    weights = weights.reshape(len(coefficients), *places.shape)
     return np.asarray(np.tensordot(np.moveaxis(coefficients, 0, -1), weights, axes=(-1, 0)))
 
 
@@ -172,6 +174,13 @@ def oblique_asymmetry(frequency: ArrayLike, distance: float) -> ComplexArray:
 def _untapered_sum(coefficients: ComplexArray, distance: float) -> ComplexArray:
     psi = hermite_functions(2 * len(coefficients) + 1, distance)[1::2] * np.pi**0.25
     return np.asarray(np.tensordot(np.moveaxis(coefficients, 0, -1), psi, axes=(-1, 0)))
+
+
+@lru_cache(maxsize=64)
+def _weights(count: int, parity: int, places: tuple[float, ...]) -> Array:
+    """Tapered ψ_m(ŷ)/ψ_0(0), m = parity, parity + 2, …, which many frequencies share."""
+    psi = hermite_functions(2 * count + parity, np.array(places))[parity::2] * np.pi**0.25
+    return np.asarray(psi * _taper(count)[:, None])
 
 
 def _orders(stop: int, first: int, omega: Array) -> Array:

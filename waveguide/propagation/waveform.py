@@ -32,7 +32,7 @@ equatorial wave is as wide as its radius and cuts the corner. The front does not
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import NamedTuple
 
 import numpy as np
@@ -47,6 +47,7 @@ from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.sources import SourceFunction, time_step
 from waveguide.propagation.step_response import STILL, Conditions
 from waveguide.propagation.transfer import (
+    Path,
     RouteTransfer,
     independent_paths,
     paths_of_arrival,
@@ -91,7 +92,7 @@ class ModeWaveforms:
     added : list of list of int
         For every target, the routes that are in the sum.
     transfers : list of list of RouteTransfer
-        For every target and route, at `omega`.
+        For every target and route, at `omega`, each as one leg.
     omega, power : ndarray, shape (nω,)
         Frequencies of the source (rad/s) and its energy spectrum |S|², with sum 1.
     wrapped : float
@@ -164,12 +165,14 @@ def mode_waveforms(
     step = time_step(source) if step is None else step
     _require_window(source, window, step)
     paths = [paths_of_arrival(arrival) for arrival in arrivals]
-    together = [path for target in paths for path in target]
+    together = [_in_one_leg(path) for target in paths for path in target]
+    each: list[RouteTransfer] = []
     added = [independent_paths(target) for target in paths]
     shown = np.arange(int(window / step) + 1)
     for doubling in range(_MOST_DOUBLINGS + 1):
         spectrum = source_spectrum(source, step, _first_period(source, window) * 2.0**doubling)
-        found = iter(route_transfers(network, mode, together, spectrum.omega, conditions))
+        each = _at_frequencies(network, mode, together, spectrum.omega, conditions, each)
+        found = iter(each)
         transfers = [[next(found) for _ in target] for target in paths]
         whole = [synthesise(spectrum, [t.response for t in target]) for target in transfers]
         sums = np.array([waves[rows].sum(axis=0) for waves, rows in zip(whole, added, strict=True)])
@@ -296,6 +299,29 @@ def mode_shares(coastal_value: ArrayLike) -> Array:
     """
     square = np.asarray(coastal_value, float) ** 2
     return np.asarray(square / square.sum())
+
+
+def _in_one_leg(path: Path) -> Path:
+    """A path of which only the whole is wanted."""
+    return replace(path, leg_ends=path.leg_ends[-1:])
+
+
+def _at_frequencies(
+    network: Network, mode: ModeAtNodes, paths: Sequence[Path], omega: Array,
+    conditions: Conditions, known: list[RouteTransfer],
+) -> list[RouteTransfer]:
+    """Transfer functions of paths, given those at some frequencies.
+
+    A period of twice the length has its frequencies twice as close: every other one is known.
+    """
+    if not known:
+        return route_transfers(network, mode, paths, omega, conditions)
+    new = omega[~np.isin(omega, known[0].omega)]
+    added = route_transfers(network, mode, paths, new, conditions)
+    frequencies = np.append(known[0].omega, new)
+    order = np.argsort(frequencies)
+    rows = order[np.searchsorted(frequencies, omega, sorter=order)]
+    return [one.beside(other).at(rows) for one, other in zip(known, added, strict=True)]
 
 
 def _require_window(source: SourceFunction, window: float, step: float) -> None:
