@@ -46,6 +46,9 @@ app = typer.Typer(
 )
 
 
+_LONGEST_PROBLEM = 2000  # characters: a message is to be read
+
+
 def main() -> None:
     """Run the command line and end the process with its exit status."""
     # A terminal that cannot show a name gets it escaped, not a traceback.
@@ -57,8 +60,10 @@ def main() -> None:
     try:
         app()
     except InputError as error:
-        for problem in error.problems:
-            print(f"waveguide: {problem}", file=sys.stderr)
+        from waveguide.report.text import plain
+
+        for problem in error.problems:  # which may quote a file, whatever it holds
+            print(f"waveguide: {plain(problem, _LONGEST_PROBLEM)}", file=sys.stderr)
         sys.exit(2)
     except Exception:
         traceback.print_exc()

@@ -19,6 +19,7 @@ def test_names_cannot_break_a_line():
     text = plain("a\nb\t\x1b[31m\u202e\u2028\u00a0z", 80)
     assert text == r"a\x0ab\x09\x1b[31m\u202e\u2028 z"
     assert len(plain("x" * 1000)) == 40
+    assert columns(plain("東" * 1000)) == 39  # two columns each, and an ellipsis of one
     assert plain("e\u0301") == "é"
 
 

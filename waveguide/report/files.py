@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import shutil
 import tempfile
+import warnings
 from collections.abc import Callable, Iterable, Iterator
 from contextlib import contextmanager
 from importlib import import_module
@@ -35,8 +36,11 @@ def write_outputs(dataset: xr.Dataset, folder: Path, formats: Iterable[str]) -> 
         Where the files cannot be written, for example because the disk is full.
     """
     try:
-        for name in formats:
-            _writer(name)(dataset, folder)
+        with warnings.catch_warnings():
+            # Letters that the font of the figures lacks are boxes; README says so.
+            warnings.filterwarnings("ignore", r"Glyph .* missing from font")
+            for name in formats:
+                _writer(name)(dataset, folder)
     except OSError as error:
         raise InputError(
             f"the outputs cannot be written ({error.strerror}); free some space, or choose "

@@ -59,7 +59,7 @@ def _source(dataset: xr.Dataset) -> dict[str, Any]:
         _point(attributes["source_longitude"], attributes["source_latitude"]),
         {
             "feature": "source",
-            "name": plain(attributes["event_name"]),
+            "name": plain(attributes["event_name"], 120),
             "start": attributes["event_start"],
         },
     )
@@ -67,7 +67,7 @@ def _source(dataset: xr.Dataset) -> dict[str, Any]:
 
 def _targets(dataset: xr.Dataset) -> Iterator[dict[str, Any]]:
     for t, name in enumerate(dataset["target"].values):
-        properties: dict[str, Any] = {"feature": "target", "name": plain(name)}
+        properties: dict[str, Any] = {"feature": "target", "name": plain(name, 120)}
         for m, mode in enumerate(dataset["mode"].values):
             properties[f"mode_{mode}_status"] = dataset["status"].values[t, m]
             properties[f"mode_{mode}_front_time_days"] = dataset["front_time_days"].values[t, m]
@@ -80,7 +80,7 @@ def _legs(dataset: xr.Dataset) -> Iterator[dict[str, Any]]:
         target = dataset["target"].values[dataset["route_target"].values[route]]
         head = {
             "feature": "leg",
-            "target": plain(target),
+            "target": plain(target, 120),
             "mode": dataset["mode"].values[dataset["route_mode"].values[route]],
             "route": route,
             "route_kind": dataset["route_kind"].values[route],

@@ -7,6 +7,7 @@ fill the screen.
 from __future__ import annotations
 
 import unicodedata
+from itertools import accumulate
 
 _JOINERS = "\u200c\u200d"
 """Zero-width joiners: format characters too, but Persian and Indic spelling needs them."""
@@ -20,7 +21,7 @@ _LEFT_TO_RIGHT_MARK = "\u200e"
 
 
 def plain(text: object, limit: int = 40) -> str:
-    r"""A text on one line, of at most `limit` characters, with unsafe characters escaped.
+    r"""A text on one line, of at most `limit` columns, with unsafe characters escaped.
 
     Parameters
     ----------
@@ -41,7 +42,10 @@ def plain(text: object, limit: int = 40) -> str:
     'Llanfai…'
     """
     escaped = "".join(_escape(c) for c in unicodedata.normalize("NFC", str(text)))
-    return escaped if len(escaped) <= limit else escaped[: limit - 1] + "…"
+    if columns(escaped) <= limit:
+        return escaped
+    widths = accumulate(_columns(character) for character in escaped)
+    return escaped[: sum(width < limit for width in widths)] + "…"
 
 
 def columns(text: str) -> int:
