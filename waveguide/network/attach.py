@@ -138,7 +138,10 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
     -------
     Ties
     """
-    node, off_lon, off_lat = _within_reach(network, speed, box)
+    lon, lat = closest_in_box(box, network.lon, network.lat)
+    rough = arc(np.linalg.norm(unit_vectors(lon, lat) - network.vectors, axis=1))
+    node = _within_reach(network, speed, rough)
+    off_lon, off_lat = lon[node], lat[node]
     if not node.size:
         return _none(network, speed, box)
     distance, along, foot_lon, foot_lat = _feet(network, node, off_lon, off_lat)
@@ -152,7 +155,7 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
         np.where(inshore, 0.0, radii),
     )
     keep = np.where(inshore, distance <= WIDEST_SHELF, radii <= FARTHEST_RADII)
-    keep &= _closest_on_line(network, node, distance, _rough_distance(network, box))
+    keep &= _closest_on_line(network, node, distance, rough)
     keep &= _mostly_water(network, node, off_lon, off_lat, distance, depths)
     keep &= _not_round_a_corner(network, node, distance)
     if not keep.any():
@@ -167,25 +170,12 @@ def tie(network: Network, speed: Array, box: Box, depths: Bathymetry) -> Ties:
     )
 
 
-def _rough_distance(network: Network, box: Box) -> Array:
-    """Distance on the sphere from every node to a box (m)."""
-    lon, lat = closest_in_box(box, network.lon, network.lat)
-    return arc(np.linalg.norm(
-        unit_vectors(lon, lat) - unit_vectors(network.lon, network.lat), axis=1
-    ))
-
-
-def _within_reach(
-    network: Network, speed: Array, box: Box
-) -> tuple[Index, Array, Array]:
-    """Nodes near a box that carry the mode, and the place in the box nearest each."""
-    lon, lat = closest_in_box(box, network.lon, network.lat)
-    rough = _rough_distance(network, box)
+def _within_reach(network: Network, speed: Array, rough: Array) -> Index:
+    """Nodes that carry the mode, and by their distance on the sphere (m) may be tied."""
     carried = np.isfinite(speed)
     radius = deformation_radius(np.where(carried, speed, 0.0), network.lat)
     reach = np.maximum(FARTHEST_RADII * radius, WIDEST_SHELF) * 1.01
-    node = np.nonzero(carried & (rough <= reach))[0]
-    return node, lon[node], lat[node]
+    return np.nonzero(carried & (rough <= reach))[0]
 
 
 def _feet(
@@ -205,7 +195,7 @@ def _feet(
     lines = np.isin(network.kind, (StepKind.COAST, StepKind.EQUATOR, StepKind.STRAIT))
     row = np.full(network.size, -1)
     row[node] = np.arange(node.size)
-    place, here = unit_vectors(lon, lat), unit_vectors(network.lon[node], network.lat[node])
+    place, here = unit_vectors(lon, lat), network.vectors[node]
     foot, along = here.copy(), np.zeros(node.size)
     nearest = np.linalg.norm(place - here, axis=1)
     for start, end, sign in (
@@ -214,7 +204,7 @@ def _feet(
     ):
         step = np.nonzero(row[start] >= 0)[0]
         at = row[start[step]]
-        span = unit_vectors(network.lon[end[step]], network.lat[end[step]]) - here[at]
+        span = network.vectors[end[step]] - here[at]
         share = ((place[at] - here[at]) * span).sum(axis=1) / (span**2).sum(axis=1)
         # beyond half-way the other node is the closer one
         reached = here[at] + np.clip(share, 0.0, 0.5)[:, None] * span
@@ -249,7 +239,7 @@ def _none(network: Network, speed: Array, box: Box) -> Ties:
 
 def _is_inshore(network: Network, node: Index, lon: Array, lat: Array) -> NDArray[np.bool_]:
     """Whether places lie on the landward side of the coast at their nodes."""
-    here = unit_vectors(network.lon[node], network.lat[node])
+    here = network.vectors[node]
     azimuth = np.radians(np.nan_to_num(network.offshore[node]))
     lam = np.radians(network.lon[node])
     east = np.stack([-np.sin(lam), np.cos(lam), np.zeros_like(lam)], axis=1)
@@ -294,9 +284,7 @@ def _mostly_water(
 ) -> NDArray[np.bool_]:
     """Whether the way between node and place is not mainly over land."""
     share = np.linspace(0.0, 1.0, 41)[:, None, None]
-    way = (1.0 - share) * unit_vectors(lon, lat) + share * unit_vectors(
-        network.lon[node], network.lat[node]
-    )
+    way = (1.0 - share) * unit_vectors(lon, lat) + share * network.vectors[node]
     land = (depths.sample(*positions(way)) <= 0.0).mean(axis=0)
     short = distance <= 1.5 * _spacing(network)
     return np.asarray((land <= MOST_LAND) | short)
@@ -323,6 +311,8 @@ def distance_to_water(lon: float, lat: float, depths: Bathymetry, reach: float) 
     float
         m; infinite if there is no sea within reach.
     """
+    if depths.sample(lon, lat) > 0.0:
+        return 0.0
     half = np.degrees(chord(reach))
     stretch = 1.0 / max(np.cos(np.radians(lat)), 0.05)
     offset = np.linspace(-half, half, 61)

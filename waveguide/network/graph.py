@@ -11,9 +11,12 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import IntEnum
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
+
+from waveguide.geodesy import unit_vectors
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -91,6 +94,11 @@ class Network:
     def size(self) -> int:
         """Number of nodes."""
         return int(self.lon.size)
+
+    @cached_property
+    def vectors(self) -> Array:
+        """Nodes as unit vectors, shape (n, 3)."""
+        return unit_vectors(self.lon, self.lat)
 
     @property
     def in_strait(self) -> NDArray[np.bool_]:

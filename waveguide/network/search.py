@@ -55,10 +55,9 @@ class Reach:
     def steps_to(self, node: int, network: Network) -> Index:
         """Steps of the path to a node, in order of travel, shape (k,)."""
         steps = []
-        while self.entry_step[node] >= 0:
-            step = int(self.entry_step[node])
+        while (step := self.entry_step.item(node)) >= 0:
             steps.append(step)
-            node = int(network.tail[step])
+            node = network.tail.item(step)
         return np.array(steps[::-1], dtype=np.int64)
 
 

@@ -12,15 +12,15 @@ energy lie; with `FREQUENCIES` of them shares of energy are right to about 0.001
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from waveguide.network.graph import Network
 from waveguide.propagation.modes import ModeAtNodes
-from waveguide.propagation.step_response import FATES, STILL, Conditions
-from waveguide.propagation.transfer import LegBudget, Path, leg_budget, route_transfers
+from waveguide.propagation.near_equator import network_wall_table
+from waveguide.propagation.step_response import FATES, STILL, Conditions, step_response
+from waveguide.propagation.transfer import LegBudget, Path, energy_budget
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -70,10 +70,16 @@ def step_budgets(
     list of LegBudget
         One for each path, with its steps in place of legs.
     """
-    stepwise = [replace(path, leg_ends=np.arange(1, path.steps.size + 1)) for path in paths]
+    if not paths:
+        return []
+    steps, row = np.unique(np.concatenate([path.steps for path in paths]), return_inverse=True)
     frequencies = equal_energy_frequencies(omega, power)
-    transfers = route_transfers(network, mode, stepwise, frequencies, conditions)
-    return [leg_budget(transfer, np.ones(frequencies.size)) for transfer in transfers]
+    ends = np.append(network.tail[steps], network.head[steps])
+    table = network_wall_table(network, mode, frequencies, ends)
+    nepers = step_response(network, mode, steps, frequencies, table, conditions).nepers
+    alike = np.ones(frequencies.size)
+    bounds = np.cumsum([path.steps.size for path in paths])[:-1]
+    return [energy_budget(nepers[:, mine], alike) for mine in np.split(row, bounds)]
 
 
 def budget_of_legs(steps: LegBudget, leg_ends: Index) -> LegBudget:

@@ -76,8 +76,9 @@ def leg_criticality(
     -------
     Criticality
     """
-    f = np.abs(coriolis(network.lat))
-    first, last = f[network.tail[steps]], f[network.head[steps]]
+    first, last = (
+        np.abs(coriolis(network.lat[node[steps]])) for node in (network.tail, network.head)
+    )
     poleward = (network.kind[steps] == StepKind.COAST) & (last > first)
     if not poleward.any():
         return Criticality(np.nan, np.nan, 0.0)

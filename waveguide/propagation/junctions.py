@@ -177,8 +177,8 @@ def excess_lengths(network: Network, mode: ModeAtNodes, steps: Index) -> Array:
     """
     ends = network.tail[steps], network.head[steps]
     near = np.maximum(*(scaled_distance(network, mode, node) for node in ends)) < mode.matching
-    f = np.abs(coriolis(network.lat))
-    rise = np.abs(f[ends[1]] - f[ends[0]]) / BETA_EQUATOR
+    first, last = (np.abs(coriolis(network.lat[node])) for node in ends)
+    rise = np.abs(last - first) / BETA_EQUATOR
     return np.where(near, np.maximum(network.length[steps] - rise, 0.0), 0.0)
 
 

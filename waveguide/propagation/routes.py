@@ -112,7 +112,7 @@ class RouteFinder:
     def _detours(self, target: Ties, headline: Route) -> list[Route]:
         """Routes that do without one of the gaps the headline route crosses."""
         network = self._searcher.network
-        gaps = [int(s) for s in headline.steps if network.gap[s] >= 0]
+        gaps = headline.steps[network.gap[headline.steps] >= 0].tolist()
         found = [self._best(target, PATIENCE_DAYS[2], step) for step in gaps[:4]]
         return [route for route in found if route is not None]
 

@@ -256,12 +256,29 @@ def leg_budget(transfer: RouteTransfer, weight: Array) -> LegBudget:
     -------
     LegBudget
     """
+    return energy_budget(transfer.leg_nepers, weight)
+
+
+def energy_budget(nepers: Array, weight: Array) -> LegBudget:
+    """Where the energy goes, leg by leg or step by step.
+
+    Parameters
+    ----------
+    nepers : ndarray, shape (5, legs, nω)
+        What every leg takes, by fate in the order of `FATES`.
+    weight : ndarray, shape (nω,)
+        Weight of the frequencies.
+
+    Returns
+    -------
+    LegBudget
+    """
     share = weight / weight.sum()
-    total = transfer.leg_nepers.sum(axis=0)
+    total = nepers.sum(axis=0)
     after = np.exp(-2.0 * np.cumsum(total, axis=0))
     before = np.concatenate([np.ones((1, share.size)), after])[:-1]
     with np.errstate(invalid="ignore"):
-        parts = np.where(total > 0.0, transfer.leg_nepers / total, 0.0)
+        parts = np.where(total > 0.0, nepers / total, 0.0)
     return LegBudget(after @ share, ((before - after) * parts @ share).T)
 
 

@@ -14,7 +14,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 from waveguide.constants import coriolis, deformation_radius
 from waveguide.geodesy import destination, wrap_longitude
@@ -142,10 +142,9 @@ class Survey:
         if self._climatology is None or self._mode.number == 0:
             return float("nan")
         known = nodes[:: max(1, nodes.size // _NODES)]
-        for node in (n for n in known.tolist() if n not in self._upper):
-            self._upper[node] = upper_share(
-                self._climatology, self._network.lon[node], self._network.lat[node]
-            )
+        new = np.array([n for n in known.tolist() if n not in self._upper], dtype=np.int64)
+        found = upper_share(self._climatology, self._network.lon[new], self._network.lat[new])
+        self._upper.update(zip(new.tolist(), found.tolist(), strict=True))
         shares = np.array([self._upper[n] for n in known.tolist()])
         return float(np.nanmean(shares)) if np.isfinite(shares).any() else float("nan")
 
@@ -256,34 +255,37 @@ def speed_change(speed: Array, length: Array, omega: float) -> float:
     return float(np.quantile(change, 1.0 - _ORDINARY))
 
 
-def upper_share(climatology: Climatology, lon: float, lat: float) -> float:
-    """Share of ∫N dz within the upper ocean in the best known column near a position.
+def upper_share(climatology: Climatology, lon: ArrayLike, lat: ArrayLike) -> Array:
+    """Share of ∫N dz within the upper ocean in the best known column near positions.
 
     Parameters
     ----------
     climatology : Climatology
-    lon, lat : float
+    lon, lat : array_like, shape S
         Degrees.
 
     Returns
     -------
-    float
+    ndarray, shape S
         NaN where no column within two cells is known.
     """
-    row = int(np.argmin(np.abs(climatology.lat - lat)))
-    column = int(np.argmin(np.abs(wrap_longitude(climatology.lon - lon))))
-    rows = np.clip(row + np.arange(-2, 3), 0, climatology.lat.size - 1)
-    columns = (column + np.arange(-2, 3)) % climatology.lon.size
-    n2 = climatology.n2[:, rows[:, None], columns].reshape(climatology.depth.size, -1)
-    n2 = n2[:, np.argmax(np.isfinite(n2).sum(axis=0))]
-    known = np.isfinite(n2)
-    if not known.any():
-        return float("nan")
+    x, y = (np.asarray(at, float)[..., None] for at in (lon, lat))
+    row = np.argmin(np.abs(climatology.lat - y), axis=-1)
+    column = np.argmin(np.abs(wrap_longitude(climatology.lon - x)), axis=-1)
+    south, west = (side.ravel() for side in np.mgrid[-2:3, -2:3])
+    rows = np.clip(row[..., None] + south, 0, climatology.lat.size - 1)
+    columns = (column[..., None] + west) % climatology.lon.size
+    n2 = climatology.n2[:, rows, columns]
+    best = np.argmax(np.isfinite(n2).sum(axis=0), axis=-1)
+    n2 = np.take_along_axis(n2, best[None, ..., None], axis=-1)[..., 0]
     edge = np.concatenate([[0.0], 0.5 * (climatology.depth[1:] + climatology.depth[:-1])])
     thickness = np.diff(np.append(edge, climatology.depth[-1]))
     upper = np.clip(UPPER_OCEAN - edge, 0.0, thickness)
-    n = np.sqrt(n2[known])
-    return float((n * upper[known]).sum() / (n * thickness[known]).sum())
+    n = np.sqrt(np.where(np.isfinite(n2), n2, 0.0))
+    whole = np.tensordot(thickness, n, 1)
+    share = np.full(whole.shape, np.nan)
+    np.divide(np.tensordot(upper, n, 1), whole, out=share, where=whole > 0.0)
+    return share
 
 
 def _narrowest_strait(network: Network, steps: Index) -> float:
