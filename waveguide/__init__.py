@@ -12,17 +12,31 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from waveguide.pipeline import arrivals
     from waveguide.planning import plan
-    from waveguide.scenario import read_scenario, read_wind_scenario
+    from waveguide.records import compare_records
+    from waveguide.scenario import read_comparison, read_scenario, read_wind_scenario
+    from waveguide.sections import section
     from waveguide.wind_response import response
 
-__all__ = ["arrivals", "plan", "read_scenario", "read_wind_scenario", "response"]
+__all__ = [
+    "arrivals",
+    "compare_records",
+    "plan",
+    "read_comparison",
+    "read_scenario",
+    "read_wind_scenario",
+    "response",
+    "section",
+]
 
 _HOME = {
     "arrivals": "waveguide.pipeline",
+    "compare_records": "waveguide.records",
     "plan": "waveguide.planning",
+    "read_comparison": "waveguide.scenario",
     "read_scenario": "waveguide.scenario",
     "read_wind_scenario": "waveguide.scenario",
     "response": "waveguide.wind_response",
+    "section": "waveguide.sections",
 }
 
 
