@@ -125,3 +125,14 @@ def test_shipped_winds():
     for name in names:
         assert read_wind_scenario(name).targets
     assert read_scenario("westerly_burst").wind is not None  # serves both commands
+
+
+def test_a_scenario_may_hold_the_tables_of_every_command(tmp_path):
+    from waveguide.scenario import Scenario, WindScenario
+    from waveguide.shipped import shipped_scenarios
+
+    assert set(WindScenario.model_fields) == set(Scenario.model_fields)
+    path = tmp_path / "all.toml"
+    path.write_text(shipped_scenarios()["westerly_burst"].read_text(encoding="utf-8")
+                    + "\n[uncertainty]\nmembers = 64\n[plan]\nchance_percent = 50\n")  # fmt: skip
+    assert read_wind_scenario(path).wind == read_scenario(path).wind

@@ -289,7 +289,7 @@ class WindScenario(Table):
     name, title, description, targets, waves, ocean, output
         As in a `Scenario`.
     wind : Wind
-    event, observations, compare, lookout
+    event, observations, compare, lookout, uncertainty, plan
         As in a `Scenario`; they are not looked at.
     """
 
@@ -305,6 +305,8 @@ class WindScenario(Table):
     observations: tuple[Observation, ...] = ()
     compare: Compare | None = None
     lookout: Lookout = Lookout()
+    uncertainty: Uncertainty = Uncertainty()
+    plan: Planning = Planning()
 
     @model_validator(mode="after")
     def _distinct_names(self) -> WindScenario:
