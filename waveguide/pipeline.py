@@ -16,6 +16,7 @@ from waveguide.network.trapped_store import packaged_guide
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import used_files
 from waveguide.ocean.stratification import Climatology, packaged_climatology
+from waveguide.propagation.adaptation import adapted
 from waveguide.propagation.answers import ModeAnswer, mode_answer
 from waveguide.propagation.arrivals import REACHED, Arrival, mode_arrivals
 from waveguide.propagation.dispersion import interior_damping_rate
@@ -200,9 +201,7 @@ def damping_rate(days: float | None, mode: ModeAtNodes) -> float:
 
 def _conditions(scenario: Scenario, network: Network, mode: ModeAtNodes) -> Conditions:
     """Friction and damping of a mode."""
-    friction = friction_of_steps(
-        network, mode, scenario.waves.drag_m_s, _omega(scenario)
-    )
+    friction = friction_of_steps(network, mode, scenario.waves.drag_m_s)
     damping = damping_rate(scenario.waves.damping_days, mode)
     return Conditions(friction=friction, damping=damping)
 
@@ -232,10 +231,10 @@ def _annual_mean(scenario: Scenario) -> Climatology | None:
 def _mode(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAtNodes]:
     """The network of a mode and what its nodes know of it in the scenario's ocean."""
     network, atlas = packaged_guide(family_of(mode))
-    ocean = scenario.ocean
+    ocean, omega = scenario.ocean, _omega(scenario)
     if ocean.phase_speed_m_s is not None:
         return network, uniform_mode(network, mode, ocean.phase_speed_m_s)
-    packaged = atlas_mode(atlas, mode)
+    packaged = adapted(network, atlas_mode(atlas, mode), omega)
     if ocean.source == "packaged":
         return network, packaged
     from waveguide.network.own import own_atlas
@@ -245,7 +244,7 @@ def _mode(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAt
         own_atlas(family_of(mode), ocean.bathymetry, ocean.climatology, ocean.temperature), mode
     )
     _require_coverage(scenario, network, packaged, own)
-    return network, own
+    return network, adapted(network, own, omega)
 
 
 def _require_coverage(

@@ -28,6 +28,7 @@ from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import WIND_RECORD, packaged_file
 from waveguide.ocean.stratification import packaged_climatology
 from waveguide.pipeline import check_places, damping_rate
+from waveguide.propagation.adaptation import adapted
 from waveguide.propagation.losses import step_physics
 from waveguide.propagation.modes import ModeAtNodes, atlas_mode, friction_of_steps
 from waveguide.propagation.step_response import Conditions
@@ -128,14 +129,14 @@ def _of_mode(
     question: WindScenario, number: int, omega: float, forcer: Forcer
 ) -> tuple[Network, ModeResponse, dict[int, MooringRatios]]:
     """Responses of one mode, and what moorings on the equator see of it, by target."""
-    network, mode, depth = _mode(question, number)
+    network, mode, depth = _mode(question, number, omega)
     damping, drag = damping_rate(question.waves.damping_days, mode), question.waves.drag_m_s
     physics = step_physics(network, mode, omega, damping, drag)
-    friction = friction_of_steps(network, mode, drag, np.inf)  # to first order
+    friction = friction_of_steps(network, mode, drag)
     places = [target.position for target in question.targets]
     found = mode_response(
-        network, mode, physics, Conditions(friction, damping), drag, packaged_bathymetry(),
-        places, omega, forcer,
+        network, mode, physics, Conditions(friction, damping), packaged_bathymetry(), places,
+        omega, forcer,
     )
     ratios = {
         i: mooring_ratios(packaged_climatology(), *places[i], float(depth[answer.node]), number)
@@ -145,7 +146,9 @@ def _of_mode(
     return network, found, ratios
 
 
-def _mode(question: WindScenario, number: int) -> tuple[Network, ModeAtNodes, Array]:
+def _mode(
+    question: WindScenario, number: int, omega: float
+) -> tuple[Network, ModeAtNodes, Array]:
     """Network, mode and depth at its nodes in the scenario's ocean."""
     network, atlas = packaged_guide(family_of(number))
     ocean = question.ocean
@@ -155,7 +158,7 @@ def _mode(question: WindScenario, number: int) -> tuple[Network, ModeAtNodes, Ar
         atlas = own_atlas(
             family_of(number), ocean.bathymetry, ocean.climatology, ocean.temperature
         )
-    return network, atlas_mode(atlas, number), atlas.depth
+    return network, adapted(network, atlas_mode(atlas, number), omega), atlas.depth
 
 
 def _forcer(question: WindScenario) -> tuple[Forcer, list[str], list[Path]]:

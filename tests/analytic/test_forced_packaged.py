@@ -25,7 +25,7 @@ def guide():
     mode = atlas_mode(atlas, 1)
     damping, drag = 1.0 / (365.0 * DAY), 5e-4
     physics = step_physics(network, mode, 2.0 * np.pi / (40.0 * DAY), damping, drag)
-    friction = friction_of_steps(network, mode, drag, np.inf)
+    friction = friction_of_steps(network, mode, drag)
     return network, mode, physics, Conditions(friction, damping)
 
 

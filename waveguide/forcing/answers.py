@@ -103,8 +103,7 @@ class ModeResponse:
 
 def mode_response(
     network: Network, mode: ModeAtNodes, physics: StepPhysics, conditions: Conditions,
-    drag: float, depths: Bathymetry, targets: Sequence[tuple[float, float]], omega: float,
-    forcer: Forcer,
+    depths: Bathymetry, targets: Sequence[tuple[float, float]], omega: float, forcer: Forcer,
 ) -> ModeResponse:
     """Response of one mode at every target.
 
@@ -115,9 +114,7 @@ def mode_response(
     physics : StepPhysics
         At the dominant frequency, which tells the ways upstream.
     conditions : Conditions
-        Friction to first order and damping.
-    drag : float
-        Coefficient of the linear bottom stress behind the friction (m/s).
+        Friction and damping.
     depths : Bathymetry
     targets : sequence of (lon, lat)
         Degrees.
@@ -145,7 +142,7 @@ def mode_response(
         if place is None or found is None or not found.weight.any():
             answers.append(_silent(tied, found, forcing.time.size))
         else:
-            answers.append(_answer(network, mode, conditions, drag, place, found, forcing, omega,
+            answers.append(_answer(network, mode, conditions, place, found, forcing, omega,
                                    float(tied.distance[_best(tied)])))
     return ModeResponse(forcing, answers)
 
@@ -165,15 +162,13 @@ def _place(mode: ModeAtNodes, tied: Ties) -> Place | None:
 
 
 def _answer(
-    network: Network, mode: ModeAtNodes, conditions: Conditions, drag: float, place: Place,
-    found: Influence, forcing: Forcing, omega: float, distance: float,
+    network: Network, mode: ModeAtNodes, conditions: Conditions, place: Place, found: Influence,
+    forcing: Forcing, omega: float, distance: float,
 ) -> TargetResponse:
     """Sum up what lies upstream of one target."""
     windy = windy_rows(found, forcing)
     period = Period.of(forcing, float(found.delay[windy].max(initial=0.0)))
-    transfer = wind_transfer(
-        network, mode, conditions, found, place, windy, period.few_omega, drag
-    )
+    transfer = wind_transfer(network, mode, conditions, found, place, windy, period.few_omega)
     told = group_delays(transfer, found, omega)
     stretches, of_row = cut_into_stretches(network, told)
     parts = period.series(

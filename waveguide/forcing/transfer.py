@@ -21,10 +21,9 @@ from numpy.typing import NDArray
 from waveguide.constants import GRAVITY, REFERENCE_DENSITY
 from waveguide.forcing.influence import Influence, lifted_near_equator
 from waveguide.network.graph import Network, StepKind
-from waveguide.propagation.modes import ModeAtNodes, arrested_share
+from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.near_equator import network_wall_table, potential
 from waveguide.propagation.step_response import (
-    FATES,
     Conditions,
     step_response,
     step_speeds,
@@ -124,7 +123,7 @@ class Place:
 
 def wind_transfer(
     network: Network, mode: ModeAtNodes, conditions: Conditions, influence: Influence,
-    place: Place, windy: NDArray[np.bool_], omega: Array, drag: float = 0.0,
+    place: Place, windy: NDArray[np.bool_], omega: Array,
 ) -> WindTransfer:
     """Weights at many frequencies.
 
@@ -133,7 +132,7 @@ def wind_transfer(
     network : Network
     mode : ModeAtNodes
     conditions : Conditions
-        Friction to first order and damping.
+        Friction and damping.
     influence : Influence
         Which steps lie upstream, and by which way.
     place : Place
@@ -142,9 +141,6 @@ def wind_transfer(
         Rows of `influence` whose wind is wanted.
     omega : ndarray, shape (nω,)
         rad/s, > 0.
-    drag : float
-        Coefficient of the linear bottom stress behind the friction (m/s), by which it is less
-        where it is faster than the wave (`waveguide.propagation.modes.arrested_share`).
 
     Returns
     -------
@@ -154,9 +150,7 @@ def wind_transfer(
     nodes = np.unique(np.concatenate([[place.node], network.tail[steps], network.head[steps]]))
     table = network_wall_table(network, mode, omega, nodes)
     response = step_response(network, mode, steps, omega, table, conditions)
-    share = np.array([arrested_share(drag, float(w)) for w in omega])
-    rubbed = response.nepers[FATES.index("bottom friction")]
-    exponent = rubbed * (1.0 - share) - response.nepers.sum(axis=0) + 1j * response.lag
+    exponent = 1j * response.lag - response.nepers.sum(axis=0)
     at_head = _gathered(influence, exponent) + 1j * omega * place.beyond
     log_potential = np.log(np.maximum(np.abs(potential(network, mode, nodes, table)), _NOTHING))
     target = log_potential[np.searchsorted(nodes, place.node)] + np.log(place.factor)

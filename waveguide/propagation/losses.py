@@ -84,7 +84,7 @@ def step_physics(
     frequency = np.array([omega])
     nodes = np.arange(network.size)
     table = network_wall_table(network, mode, frequency, nodes)
-    conditions = Conditions(friction=friction_of_steps(network, mode, drag, omega), damping=damping)
+    conditions = Conditions(friction=friction_of_steps(network, mode, drag), damping=damping)
     response = step_response(network, mode, carried, frequency, table, conditions)
     loss[carried] = response.nepers.sum(axis=0)[:, 0]
     return StepPhysics(time, loss, slowness, potential(network, mode, nodes, table)[:, 0])
