@@ -47,6 +47,29 @@ def test_the_table_tells_the_answer(arrivals):
     assert "(m)" not in units  # the event's amplitude is unknown
 
 
+def test_modes_are_summed_with_their_shares(arrivals):
+    text = table(arrivals)
+    line = next(line for line in text.splitlines() if line.startswith("Callao") and " sum " in line)
+    # By hand (conftest): 0.7 × mode 1 is the larger peak, 0.5 at 70.28 d, in steps of half a day.
+    assert line.split() == ["Callao", "sum", "70.5", "0.348"]
+    expected = 0.35 * np.exp(-(((70.5 - float(arrivals["peak_time_days"][0, 0])) / 3.0) ** 2))
+    assert "70 % mode 1, 30 % mode 2." in " ".join(text.split())
+    assert not any(line.startswith("=Lima") and " sum " in line for line in text.splitlines())
+    (first, second) = document(arrivals)["sums"]
+    assert (first["target"], first["peak_time_days"]) == ("Callao", 70.5)
+    assert first["amplitude_m"] is None
+    assert first["peak_ratio"] == pytest.approx(expected, rel=1e-8)
+    assert second["target"] == "Acapulco"
+
+
+def test_one_mode_has_no_sum(arrivals):
+    one = arrivals.isel(
+        mode=[0], route=[0], leg=slice(0, 3), vertex=slice(0, 11), remark=[], instrument=[]
+    )
+    assert " sum " not in table(one)
+    assert document(one)["sums"] == []
+
+
 def test_cautions_are_told_once_with_the_range_of_their_numbers(arrivals):
     told = table(arrivals).split("Cautions, the most serious first")[1].splitlines()[1:]
     assert told[:6] == [

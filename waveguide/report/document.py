@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.report.routes import legs_of, remarks_of, routes_of
+from waveguide.report.sums import sum_of_modes
 from waveguide.schema import ARRIVALS
 
 if TYPE_CHECKING:
@@ -35,8 +36,9 @@ def document(dataset: xr.Dataset) -> dict[str, Any]:
     -------
     dict
         ``arrivals`` has one entry for each target and mode, reached or not, with the legs of the
-        earliest route; ``alternatives`` has the further routes; then the event and what the
-        answer was computed from. Missing numbers are None.
+        earliest route; ``alternatives`` has the further routes; ``sums`` the peak of all modes
+        together at each target; then the event and what the answer was computed from. Missing
+        numbers are None.
     """
     rows = [(t, m) for t in range(dataset.sizes["target"]) for m in range(dataset.sizes["mode"])]
     further = [route for row in rows for route in routes_of(dataset, *row)[1:]]
@@ -48,9 +50,25 @@ def document(dataset: xr.Dataset) -> dict[str, Any]:
     return {
         "arrivals": [_arrival(dataset, *row) for row in rows],
         "alternatives": [_alternative(dataset, route) for route in further],
+        "sums": _sums(dataset),
+        "mode_share": [plain_value(share) for share in dataset["mode_share"].values],
         "event": event,
         **head,
     }
+
+
+def _sums(dataset: xr.Dataset) -> list[dict[str, Any]]:
+    """The peak of the sum of modes at every target that has one."""
+    found = [(t, sum_of_modes(dataset, t)) for t in range(dataset.sizes["target"])]
+    return [
+        {
+            "target": plain_value(dataset["target"].values[t]),
+            "peak_time_days": plain_value(total.peak_time),
+            "peak_ratio": plain_value(total.peak_ratio),
+            "amplitude_m": plain_value(total.metres),
+        }
+        for t, total in found if total is not None
+    ]
 
 
 def plain_value(value: Any) -> Any:

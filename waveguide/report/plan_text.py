@@ -20,6 +20,9 @@ if TYPE_CHECKING:
     import xarray as xr
 
 _ABSENT = "–"
+_ONE_BY_ONE = (
+    " Each mode is told as if all of the signal were in it: `waveguide arrivals` has their shares."
+)
 _FORMULA = ("=", "+", "-", "@")
 _MOST_NAMED = 3  # inputs that are named as the ones the spread comes from
 _LEAST_NAMED = 0.05  # share of the variance below which an input is not worth naming
@@ -84,7 +87,7 @@ def _when(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
     title = (
         f"When to look: with a chance of {chance:g} % this holds the rise to half height and the "
         f"peak. Days are from the start of the event, as P10 P50 P90. Seen: chance of a peak "
-        f"above {100 * threshold:g} cm."
+        f"above {100 * threshold:g} cm.{_ONE_BY_ONE if dataset.sizes['mode'] > 1 else ''}"
     )
     return filled(title, 0) + "\n" + aligned(lines, right=range(4, 8))
 

@@ -14,6 +14,7 @@ from waveguide.report.caution_text import cautions_text
 from waveguide.report.instruments import instruments_text
 from waveguide.report.layout import WIDTH, filled
 from waveguide.report.routes import legs_of, routes_of
+from waveguide.report.sums import SumOfModes, shares_text, sum_of_modes
 from waveguide.report.text import columns, pad, plain
 from waveguide.report.ways import guided_legs
 
@@ -29,6 +30,12 @@ _NOTE = (
     "at once: most of the way is quasi-simultaneous. Below its critical frequency a coast that "
     "leads\n         poleward has no wave to follow; the front still has ∫ds/c, and little comes "
     "with it."
+)
+
+
+_SUM_NOTE = (
+    "sum: each mode is told as if all of the signal were in it; a gauge sees their sum, here with "
+    "the shares that a lasting wind raises at the source:"
 )
 
 
@@ -77,8 +84,32 @@ def _position(lon: float, lat: float) -> str:
 
 
 def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
-    """The table itself: a heading of two lines and one line for each target and mode."""
-    show: list[tuple[str, str, Callable[[int, int], str]]] = [
+    """The table itself: a heading, a line for each target and mode, and one for their sum."""
+    show = _columns(dataset)
+    lines = [("Target", *(top for top, _, _ in show), "Status"), ("", *(u for _, u, _ in show), "")]
+    summed = False
+    for target, mode in rows:
+        name = plain(dataset["target"].values[target], 28)
+        status = plain(dataset["status"].values[target, mode], 28)
+        lines.append((name, *(cell(target, mode) for _, _, cell in show), status))
+        total = sum_of_modes(dataset, target) if mode == rows[-1][1] else None
+        if total is not None:
+            lines.append((name, *(_sum_cell(total, top, unit) for top, unit, _ in show), ""))
+            summed = True
+    padded = [_filled_column(list(cells), 0 < k <= len(show))
+              for k, cells in enumerate(zip(*lines, strict=True))]  # fmt: skip
+    text = ["  ".join(cells).rstrip() for cells in zip(*padded, strict=True)]
+    rule = "─" * max(columns(line) for line in text)
+    notes = [_NOTE] if any(_quasi_simultaneous(dataset, *row) for row in rows) else []
+    if summed:
+        notes.append(filled(f"{_SUM_NOTE} {shares_text(dataset)}.", 9))
+    return "\n".join([*text[:2], rule, *text[2:], *notes])
+
+
+def _columns(dataset: xr.Dataset) -> list[tuple[str, str, Callable[[int, int], str]]]:
+    """Heading, unit and cells of the columns between target and status."""
+    metres = np.isfinite(dataset["amplitude_m"].values).any()
+    return [
         ("Mode", "", lambda t, m: str(int(dataset["mode"].values[m]))),
         ("Front", "(days)", _column(dataset, "front_time_days", ".2f")),
         ("Half", "(days)", _column(dataset, "half_height_time_days", ".2f")),
@@ -87,17 +118,17 @@ def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
         ("Speed", "(m/s)", _speed(dataset)),
         ("Path", "(km)", _column(dataset, "path_length_km", ".0f")),
         ("Peak", "ratio", _column(dataset, "peak_ratio", ".3g")),
+        *([("Peak", "(m)", _column(dataset, "amplitude_m", ".3f"))] if metres else []),
     ]
-    if np.isfinite(dataset["amplitude_m"].values).any():
-        show.append(("Peak", "(m)", _column(dataset, "amplitude_m", ".3f")))
-    names = ["Target", ""] + [plain(dataset["target"].values[t], 28) for t, _ in rows]
-    status = ["Status", ""] + [plain(dataset["status"].values[row], 28) for row in rows]
-    middle = [[top, unit, *(cell(*row) for row in rows)] for top, unit, cell in show]
-    padded = [_filled_column(names), *(_filled_column(c, right=True) for c in middle), status]
-    lines = ["  ".join(cells).rstrip() for cells in zip(*padded, strict=True)]
-    rule = "─" * max(columns(line) for line in lines)
-    note = [_NOTE] if any(_quasi_simultaneous(dataset, *row) for row in rows) else []
-    return "\n".join([*lines[:2], rule, *lines[2:], *note])
+
+
+def _sum_cell(total: SumOfModes, top: str, unit: str) -> str:
+    """What the line of the sum has in a column; fronts and routes belong to modes."""
+    told = {
+        "Mode": "sum", "Peak (days)": f"{total.peak_time:.1f}",
+        "Peak ratio": f"{total.peak_ratio:.3g}", "Peak (m)": f"{total.metres:.3f}",
+    }  # fmt: skip
+    return told.get(f"{top} {unit}".strip(), "")
 
 
 def _speed(dataset: xr.Dataset) -> Callable[[int, int], str]:

@@ -1,0 +1,76 @@
+"""What all modes together do at a target, each weighted by its share in the signal."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+if TYPE_CHECKING:
+    import xarray as xr
+
+
+@dataclass(frozen=True)
+class SumOfModes:
+    """The peak of the sum of all modes at a target.
+
+    Attributes
+    ----------
+    peak_time : float
+        From the start of the event (days), to the step of the waveforms.
+    peak_ratio : float
+        Of its size to the peak at the source.
+    metres : float
+        The same in metres, NaN where the amplitude of the event is unknown.
+    """
+
+    peak_time: float
+    peak_ratio: float
+    metres: float
+
+
+def sum_of_modes(dataset: xr.Dataset, target: int) -> SumOfModes | None:
+    """The sum of modes at a target, where several modes have a share.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+        Arrivals that pass :func:`waveguide.schema.check`.
+    target : int
+        Index along ``target``.
+
+    Returns
+    -------
+    SumOfModes or None
+        None with one mode, and for a target that no mode reaches.
+    """
+    level = np.abs(dataset["waveform_sum"].values[target])
+    if dataset.sizes["mode"] < 2 or not level.max() > 0.0:
+        return None
+    at = int(np.argmax(level))
+    ratio = float(level[at] / np.abs(dataset["source_waveform"].values).max())
+    return SumOfModes(
+        peak_time=float(dataset["time_days"].values[at]), peak_ratio=ratio,
+        metres=ratio * float(dataset.attrs["event_amplitude_m"]),
+    )  # fmt: skip
+
+
+def shares_text(dataset: xr.Dataset) -> str:
+    """The shares of the modes in the signal at the source, in words.
+
+    Parameters
+    ----------
+    dataset : xarray.Dataset
+
+    Returns
+    -------
+    str
+        As in "76 % mode 1, 24 % mode 2".
+    """
+    return ", ".join(
+        f"{100.0 * share:.0f} % mode {mode}"
+        for mode, share in zip(
+            dataset["mode"].values.tolist(), dataset["mode_share"].values.tolist(), strict=True
+        )
+    )
