@@ -29,9 +29,9 @@ from waveguide.cli_wind import response
 from waveguide.progress import Progress
 
 if TYPE_CHECKING:
-    import xarray as xr
-
+    from waveguide.pipeline import Study
     from waveguide.scenario import Scenario
+    from waveguide.stored import Stored
 
 # Rich help and tracebacks are left out: importing them takes longer than many an answer.
 app = typer.Typer(
@@ -130,8 +130,8 @@ def arrivals(
     with nullcontext() if out is None else output_folder(out) as folder:
         answer = answer_with_page(question, folder) if page and folder else _answer(question)
         if folder is not None:
-            write_outputs(answer, folder, question.output.formats)
-    _show(answer, json, budget)
+            write_outputs(answer.dataset, folder, question.output.formats)
+    _show(answer.arrays, json, budget)
     say_where(out)
 
 
@@ -188,14 +188,14 @@ def cite(
     print(citation_bibtex() if bibtex else citation_text())
 
 
-def _answer(question: Scenario) -> xr.Dataset:
-    from waveguide.pipeline import arrivals as compute
+def _answer(question: Scenario) -> Study:
+    from waveguide.pipeline import study
 
     with Progress() as progress:
-        return compute(question, progress=progress)
+        return study(question, progress=progress)
 
 
-def _show(answer: xr.Dataset, as_json: bool, budget: bool) -> None:
+def _show(answer: Stored, as_json: bool, budget: bool) -> None:
     if as_json:
         from waveguide.report.document import document
 

@@ -10,8 +10,7 @@ from waveguide.cli_arguments import EVENT_SCENARIO, JSON, out_option, print_json
 from waveguide.progress import Progress
 
 if TYPE_CHECKING:
-    import xarray as xr
-
+    from waveguide.pipeline import Study
     from waveguide.scenario import Scenario
 
 
@@ -48,8 +47,8 @@ def require_folder(page: bool, out: Path | None) -> None:
         raise InputError("--page: there is no folder to write the page to; name one with --out")
 
 
-def answer_with_page(question: Scenario, folder: Path) -> xr.Dataset:
-    """Arrivals of a scenario, written to ``page.html`` together with its plan."""
+def answer_with_page(question: Scenario, folder: Path) -> Study:
+    """Arrivals of a scenario, written to ``page.html`` together with their plan."""
     from waveguide.planning import planned
     from waveguide.report.page import write_page
     from waveguide.route_sections import route_sections
@@ -57,6 +56,5 @@ def answer_with_page(question: Scenario, folder: Path) -> xr.Dataset:
     with Progress() as progress:
         answer = planned(question, progress=progress)
         progress("page")
-        arrivals = answer.study.dataset
-        write_page(arrivals, answer.dataset, route_sections(answer.study), folder)
-    return arrivals
+        write_page(answer.study.dataset, answer.dataset, route_sections(answer.study), folder)
+    return answer.study

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -31,9 +32,10 @@ from waveguide.propagation.sources import (
 from waveguide.propagation.step_response import Conditions
 from waveguide.propagation.waveform import default_window
 from waveguide.report.attributes import arrivals_attributes
-from waveguide.report.dataset import arrivals_dataset
+from waveguide.report.dataset import arrivals_arrays
 from waveguide.scenario import Scenario
 from waveguide.scenario.source_series import read_source_series
+from waveguide.stored import Arrays
 
 if TYPE_CHECKING:
     import xarray as xr
@@ -59,7 +61,7 @@ class Study:
         By mode, like the next two.
     answers : dict of int to ModeAnswer
     conditions : dict of int to Conditions
-    dataset : xarray.Dataset
+    arrays : Arrays
         As declared in :data:`waveguide.schema.ARRIVALS`.
     """
 
@@ -68,7 +70,12 @@ class Study:
     networks: dict[int, Network]
     answers: dict[int, ModeAnswer]
     conditions: dict[int, Conditions]
-    dataset: xr.Dataset
+    arrays: Arrays
+
+    @cached_property
+    def dataset(self) -> xr.Dataset:
+        """The same for xarray."""
+        return self.arrays.dataset()
 
 
 def arrivals(scenario: Scenario, progress: Progress | None = None) -> xr.Dataset:
@@ -138,9 +145,9 @@ def study(scenario: Scenario, progress: Progress | None = None) -> Study:
         say("moorings")
         moorings = mooring_views(scenario, guides, found, omega)
     attributes = arrivals_attributes(scenario, used_files())
-    dataset = arrivals_dataset(scenario, answers, attributes, moorings)
+    arrays = arrivals_arrays(scenario, answers, attributes, moorings)
     networks = {mode: network for mode, (network, _) in guides.items()}
-    return Study(source, omega, networks, answers, conditions, dataset)
+    return Study(source, omega, networks, answers, conditions, arrays)
 
 
 def _omega(scenario: Scenario) -> float:

@@ -13,6 +13,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from waveguide.errors import WaveguideError
+from waveguide.stored import Arrays, Column, Stored
 
 if TYPE_CHECKING:
     import xarray as xr
@@ -284,6 +285,23 @@ def assemble(
 ) -> xr.Dataset:
     """Put arrays into a dataset with the dimensions, types and attributes of a table.
 
+    Its parameters and errors are those of :func:`arranged`.
+
+    Returns
+    -------
+    xarray.Dataset
+        Not yet checked: see :func:`check`.
+    """
+    return arranged(values, attributes, table).dataset()
+
+
+def arranged(
+    values: Mapping[str, ArrayLike],
+    attributes: Mapping[str, Any],
+    table: Mapping[str, Variable] = ARRIVALS,
+) -> Arrays:
+    """Give arrays the dimensions, types and attributes of a table.
+
     Parameters
     ----------
     values : mapping of str to array_like
@@ -294,7 +312,7 @@ def assemble(
 
     Returns
     -------
-    xarray.Dataset
+    Arrays
         Not yet checked: see :func:`check`.
 
     Raises
@@ -302,29 +320,22 @@ def assemble(
     SchemaError
         Where a variable of the table has no values, or a value has no variable.
     """
-    import xarray as xr
-
     if set(values) != set(table):
         raise SchemaError(_difference(set(table), set(values)))
-    arrays = {
-        name: (variable.dims, _typed(values[name], variable.kind), variable.attributes())
+    columns = {
+        name: Column(variable.dims, _typed(values[name], variable.kind), variable.attributes())
         for name, variable in table.items()
     }
-    # lists, not sets: their order is that of the file, and must be the same in every run
     coordinates = [name for name, variable in table.items() if variable.coordinate]
-    return xr.Dataset(
-        {name: array for name, array in arrays.items() if name not in coordinates},
-        {name: arrays[name] for name in coordinates},
-        dict(attributes),
-    )
+    return Arrays(columns, coordinates, dict(attributes))
 
 
-def check(dataset: xr.Dataset) -> None:
+def check(dataset: Stored) -> None:
     """Refuse arrivals that are not what the table declares.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
 
     Raises
     ------
@@ -335,7 +346,7 @@ def check(dataset: xr.Dataset) -> None:
     names = {str(name) for name in dataset.variables}
     problems = [] if names == set(ARRIVALS) else [_difference(set(ARRIVALS), names)]
     for name in sorted(names & set(ARRIVALS)):
-        problems += _variable_problems(dataset[name], ARRIVALS[name])
+        problems += _variable_problems(name, dataset[name], ARRIVALS[name])
     absent = [name for name in ARRIVALS_ATTRIBUTES if name not in dataset.attrs]
     if absent:
         problems.append(f"global attributes missing: {', '.join(absent)}")
@@ -355,18 +366,18 @@ def _typed(values: ArrayLike, kind: Kind) -> NDArray[Any]:
     return np.asarray(values, dtype=dtype.get(kind, "datetime64[ns]"))
 
 
-def _variable_problems(array: xr.DataArray, variable: Variable) -> list[str]:
+def _variable_problems(name: str, array: xr.DataArray | Column, variable: Variable) -> list[str]:
     problems = []
     if array.dims != variable.dims:
-        problems.append(f"{array.name} has dimensions {array.dims}, not {variable.dims}")
-    if array.dtype.kind not in _KINDS[variable.kind]:
-        problems.append(f"{array.name} has type {array.dtype}, not {variable.kind}")
+        problems.append(f"{name} has dimensions {array.dims}, not {variable.dims}")
+    if array.values.dtype.kind not in _KINDS[variable.kind]:
+        problems.append(f"{name} has type {array.values.dtype}, not {variable.kind}")
     if variable.units is not None and array.attrs.get("units") != variable.units:
-        problems.append(f"{array.name} has units {array.attrs.get('units')}, not {variable.units}")
+        problems.append(f"{name} has units {array.attrs.get('units')}, not {variable.units}")
     return problems
 
 
-def _index_problems(dataset: xr.Dataset) -> list[str]:
+def _index_problems(dataset: Stored) -> list[str]:
     problems = []
     for name, parent in _PARENTS.items():
         index = dataset[name].values
@@ -377,7 +388,7 @@ def _index_problems(dataset: xr.Dataset) -> list[str]:
     return problems
 
 
-def _row_problems(dataset: xr.Dataset) -> list[str]:
+def _row_problems(dataset: Stored) -> list[str]:
     reached = dataset["status"].values == "reached"
     problems = []
     for name in ("front_time_days", "path_length_km", "amplitude_ratio"):

@@ -19,7 +19,7 @@ from waveguide.report.text import plain
 from waveguide.report.ways import guided_legs
 
 if TYPE_CHECKING:
-    import xarray as xr
+    from waveguide.stored import Stored
 
 LOSSES = {
     "leg_lost_rossby": "Rossby waves", "leg_lost_friction": "bottom friction",
@@ -37,19 +37,19 @@ _NO_BREAK = "\u00a0"
 _LEAST = 0.005  # of the source's energy, to be worth a word
 
 
-def write_budget(dataset: xr.Dataset, folder: Path) -> None:
+def write_budget(dataset: Stored, folder: Path) -> None:
     """Write ``budget.csv``, a line for each leg and one for the whole of each route.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals that pass :func:`waveguide.schema.check`.
     folder : Path
     """
     write_rows(folder / "budget.csv", _COLUMNS, _lines(dataset))
 
 
-def _lines(dataset: xr.Dataset) -> Iterator[list[Any]]:
+def _lines(dataset: Stored) -> Iterator[list[Any]]:
     for route in _routes(dataset):
         target, mode = (
             dataset[dim].values[dataset[f"route_{dim}"].values[route]] for dim in ("target", "mode")
@@ -72,12 +72,12 @@ def _lines(dataset: xr.Dataset) -> Iterator[list[Any]]:
         yield [*head, "all", "", length, np.nan, "", 1.0, energy, *taken]
 
 
-def budget_line(dataset: xr.Dataset, route: int) -> str:
+def budget_line(dataset: Stored, route: int) -> str:
     """What arrives by a route and where the rest goes, the largest part first.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals.
     route : int
 
@@ -98,12 +98,12 @@ def budget_line(dataset: xr.Dataset, route: int) -> str:
     return f"energy: {', '.join(parts)}"
 
 
-def budget_text(dataset: xr.Dataset) -> str:
+def budget_text(dataset: Stored) -> str:
     """The budget of every route as a table for the terminal.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals that pass :func:`waveguide.schema.check`.
 
     Returns
@@ -128,14 +128,14 @@ def budget_text(dataset: xr.Dataset) -> str:
     return f"{heading}\n{aligned(shown, range(2, len(shown[0])))}"
 
 
-def _routes(dataset: xr.Dataset) -> Iterator[int]:
+def _routes(dataset: Stored) -> Iterator[int]:
     """Routes in the order of the rows, the earliest of each first."""
     for target in range(dataset.sizes["target"]):
         for mode in range(dataset.sizes["mode"]):
             yield from routes_of(dataset, target, mode)
 
 
-def _leg(dataset: xr.Dataset, leg: int) -> list[str]:
+def _leg(dataset: Stored, leg: int) -> list[str]:
     period = float(dataset["leg_critical_period_days"].values[leg])
     at_once = ", at once" if dataset["leg_quasi_simultaneous"].values[leg] else ""
     shares = [float(dataset[name].values[leg]) for name in ("leg_energy_share", *LOSSES)]

@@ -11,7 +11,7 @@ from waveguide.report.layout import filled
 from waveguide.report.text import plain
 
 if TYPE_CHECKING:
-    import xarray as xr
+    from waveguide.stored import Stored
 
 _MOST_TARGETS = 8
 """Targets that are named; of longer lists the rest is counted."""
@@ -24,12 +24,12 @@ _HEADING = (
 )
 
 
-def cautions_text(dataset: xr.Dataset) -> str:
+def cautions_text(dataset: Stored) -> str:
     """Each kind of caution once, with the range of its numbers and the answers it concerns.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals that pass :func:`waveguide.schema.check`.
 
     Returns
@@ -43,7 +43,7 @@ def cautions_text(dataset: xr.Dataset) -> str:
     return "\n".join([_HEADING if told else "Cautions", *told, general])
 
 
-def _of_kind(dataset: xr.Dataset, kind: Kind) -> str:
+def _of_kind(dataset: Stored, kind: Kind) -> str:
     """A kind of caution in words, and below it whom it concerns."""
     mine = dataset["remark_kind"].values == kind.name
     rows = [
@@ -62,7 +62,7 @@ def _span(kind: Kind, numbers: np.ndarray[tuple[int], np.dtype[np.float64]]) -> 
     return low if low == high else f"{low} to {high}"
 
 
-def _concerned(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
+def _concerned(dataset: Stored, rows: list[tuple[int, int]]) -> str:
     """Targets with their modes, in the shortest words that are exact."""
     status = dataset["status"].values
     reached = [(int(t), int(m)) for t, m in zip(*np.nonzero(status == "reached"), strict=True)]
@@ -77,7 +77,7 @@ def _concerned(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
     return _listed(dataset, rows)
 
 
-def _listed(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
+def _listed(dataset: Stored, rows: list[tuple[int, int]]) -> str:
     """Targets with their modes; those with the same modes together."""
     targets: dict[tuple[int, ...], list[int]] = {}
     for target in dict.fromkeys(t for t, _ in rows):
@@ -88,12 +88,12 @@ def _listed(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
     return "; ".join(parts)
 
 
-def _names(dataset: xr.Dataset, targets: list[int]) -> str:
+def _names(dataset: Stored, targets: list[int]) -> str:
     named = [plain(dataset["target"].values[t], 28) for t in targets[:_MOST_TARGETS]]
     more = len(targets) - len(named)
     return " · ".join([*named, *([f"{more} more"] if more else [])])
 
 
-def _modes(dataset: xr.Dataset, modes: list[int]) -> str:
+def _modes(dataset: Stored, modes: list[int]) -> str:
     numbers = [str(int(dataset["mode"].values[m])) for m in modes]
     return f"mode {numbers[0]}" if len(numbers) == 1 else f"modes {', '.join(numbers)}"

@@ -1,4 +1,4 @@
-"""Arrivals as one xarray Dataset, the form in which they are saved, printed and drawn."""
+"""Arrivals in the form in which they are saved, printed and drawn."""
 
 from __future__ import annotations
 
@@ -20,20 +20,19 @@ from waveguide.propagation.transfer import LegBudget
 from waveguide.propagation.validity import Validity
 from waveguide.propagation.waveform import ArrivalTimes, mode_shares
 from waveguide.report.instruments import instrument_columns
-from waveguide.schema import ARRIVALS, assemble, check
+from waveguide.schema import ARRIVALS, arranged, check
+from waveguide.stored import Arrays
 
 if TYPE_CHECKING:
-    import xarray as xr
-
     from waveguide.propagation.moorings import MooringAnswer
     from waveguide.scenario import Scenario
 
 
-def arrivals_dataset(
+def arrivals_arrays(
     scenario: Scenario, answers: Mapping[int, ModeAnswer], attributes: Mapping[str, Any],
     moorings: Mapping[tuple[int, int], MooringAnswer],
-) -> xr.Dataset:
-    """Put arrivals into a Dataset that follows the schema.
+) -> Arrays:
+    """Put arrivals into arrays that follow the schema.
 
     Parameters
     ----------
@@ -47,7 +46,7 @@ def arrivals_dataset(
 
     Returns
     -------
-    xarray.Dataset
+    Arrays
         See :data:`waveguide.schema.ARRIVALS`.
     """
     modes = list(answers)
@@ -83,9 +82,9 @@ def arrivals_dataset(
     values.update(instrument_columns(moorings, [target.depth_m for target in scenario.targets]))
     values["fate_name"] = FATES
     values["vertex_taken"] = np.reshape(values["vertex_taken"], (-1, len(FATES)))
-    dataset = assemble(values, attributes)
-    check(dataset)
-    return dataset
+    arrays = arranged(values, attributes)
+    check(arrays)
+    return arrays
 
 
 def _row(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:

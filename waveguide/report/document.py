@@ -12,7 +12,7 @@ from waveguide.report.sums import sum_of_modes
 from waveguide.schema import ARRIVALS
 
 if TYPE_CHECKING:
-    import xarray as xr
+    from waveguide.stored import Stored
 
 _ROW = [name for name, v in ARRIVALS.items() if v.dims == ("target", "mode")]
 _INSTRUMENT = [
@@ -24,12 +24,12 @@ _EVENT = ("event_name", "event_start", "event_duration_days", "event_amplitude_m
 _HEAD = ("scenario", "title", "summary", "period_days", "ocean", "source", "data_sha256", "caution")
 
 
-def document(dataset: xr.Dataset) -> dict[str, Any]:
+def document(dataset: Stored) -> dict[str, Any]:
     """The arrivals as nested dictionaries and lists that JSON can hold.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals that pass :func:`waveguide.schema.check`.
 
     Returns
@@ -57,7 +57,7 @@ def document(dataset: xr.Dataset) -> dict[str, Any]:
     }
 
 
-def _sums(dataset: xr.Dataset) -> list[dict[str, Any]]:
+def _sums(dataset: Stored) -> list[dict[str, Any]]:
     """The peak of the sum of modes at every target that has one."""
     found = [(t, sum_of_modes(dataset, t)) for t in range(dataset.sizes["target"])]
     return [
@@ -84,7 +84,7 @@ def plain_value(value: Any) -> Any:
     return str(value) if isinstance(value, np.str_) else value
 
 
-def _arrival(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
+def _arrival(dataset: Stored, target: int, mode: int) -> dict[str, Any]:
     routes = routes_of(dataset, target, mode)
     return {
         **_identity(dataset, target, mode),
@@ -95,12 +95,12 @@ def _arrival(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
     }
 
 
-def cautions_of(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, Any]]:
+def cautions_of(dataset: Stored, target: int, mode: int) -> list[dict[str, Any]]:
     """Each caution of a row with its number, the most serious first.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals, or a plan.
     target, mode : int
         Indices of the row, along ``target`` and along ``mode``.
@@ -120,7 +120,7 @@ def cautions_of(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, A
     ]
 
 
-def _at_depth(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, Any]]:
+def _at_depth(dataset: Stored, target: int, mode: int) -> list[dict[str, Any]]:
     """What the instruments of a mooring see of a mode, one entry for each depth."""
     mine = (dataset.variables["instrument_target"].values == target) & (
         dataset.variables["instrument_mode"].values == mode
@@ -134,7 +134,7 @@ def _at_depth(dataset: xr.Dataset, target: int, mode: int) -> list[dict[str, Any
     ]
 
 
-def _alternative(dataset: xr.Dataset, route: int) -> dict[str, Any]:
+def _alternative(dataset: Stored, route: int) -> dict[str, Any]:
     target, mode = (
         int(dataset.variables[f"route_{dim}"].values[route]) for dim in ("target", "mode")
     )
@@ -149,7 +149,7 @@ def _alternative(dataset: xr.Dataset, route: int) -> dict[str, Any]:
     }
 
 
-def _identity(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
+def _identity(dataset: Stored, target: int, mode: int) -> dict[str, Any]:
     return {
         "target": plain_value(dataset.variables["target"].values[target]),
         "mode": plain_value(dataset.variables["mode"].values[mode]),
@@ -160,11 +160,11 @@ def _identity(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
     }
 
 
-def _legs(dataset: xr.Dataset, route: int) -> list[dict[str, Any]]:
+def _legs(dataset: Stored, route: int) -> list[dict[str, Any]]:
     return [_leg(dataset, leg) for leg in legs_of(dataset, route)]
 
 
-def _leg(dataset: xr.Dataset, leg: int) -> dict[str, Any]:
+def _leg(dataset: Stored, leg: int) -> dict[str, Any]:
     def value(name: str) -> Any:
         return plain_value(dataset.variables[f"leg_{name}"].values[leg])
 

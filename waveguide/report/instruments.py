@@ -14,9 +14,8 @@ from waveguide.report.text import plain
 from waveguide.schema import ARRIVALS
 
 if TYPE_CHECKING:
-    import xarray as xr
-
     from waveguide.propagation.moorings import MooringAnswer
+    from waveguide.stored import Stored
 
 _VARIABLES = [name for name, v in ARRIVALS.items() if v.dims == ("instrument",)]
 _HEADING = ["Mooring", "Mode", "Off (km)", "Depth (m)", "Isopycnals (m)", "Current (cm/s)",
@@ -74,7 +73,7 @@ def _row(answer: MooringAnswer, place: int) -> dict[str, Any]:
     }
 
 
-def _whose(dataset: xr.Dataset, instrument: int) -> list[Any]:
+def _whose(dataset: Stored, instrument: int) -> list[Any]:
     """Target and mode of an instrument."""
     return [
         dataset[dim].values[dataset[f"instrument_{dim}"].values[instrument]]
@@ -82,12 +81,12 @@ def _whose(dataset: xr.Dataset, instrument: int) -> list[Any]:
     ]
 
 
-def instruments_text(dataset: xr.Dataset) -> str:
+def instruments_text(dataset: Stored) -> str:
     """The instruments as a table for the terminal.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals that pass :func:`waveguide.schema.check`.
 
     Returns
@@ -106,7 +105,7 @@ def instruments_text(dataset: xr.Dataset) -> str:
     return f"{heading}\n{aligned([_HEADING, *cells], range(1, len(_HEADING) - 1))}"
 
 
-def _cells(dataset: xr.Dataset, i: int) -> list[str]:
+def _cells(dataset: Stored, i: int) -> list[str]:
     def number(name: str, style: str) -> str:
         value = float(dataset[f"instrument_{name}"].values[i])
         return format(value, style) if math.isfinite(value) else "–"

@@ -9,17 +9,16 @@ import numpy as np
 from waveguide.geodesy import wrap_longitude
 
 if TYPE_CHECKING:
-    import xarray as xr
-
     from waveguide.geodesy import Array
+    from waveguide.stored import Stored
 
 
-def routes_of(dataset: xr.Dataset, target: int, mode: int) -> list[int]:
+def routes_of(dataset: Stored, target: int, mode: int) -> list[int]:
     """Indices of the routes of one row, the earliest first.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals.
     target, mode : int
         Indices of the row, along ``target`` and along ``mode``.
@@ -31,24 +30,24 @@ def routes_of(dataset: xr.Dataset, target: int, mode: int) -> list[int]:
     return sorted((int(i) for i in np.flatnonzero(mine)), key=lambda i: (later[i], times[i]))
 
 
-def remarks_of(dataset: xr.Dataset, target: int, mode: int) -> list[int]:
+def remarks_of(dataset: Stored, target: int, mode: int) -> list[int]:
     """Indices of the cautions of one row, the most serious first."""
     stored = dataset.variables
     mine = (stored["remark_target"].values == target) & (stored["remark_mode"].values == mode)
     return [int(i) for i in np.flatnonzero(mine)]
 
 
-def legs_of(dataset: xr.Dataset, route: int) -> range:
+def legs_of(dataset: Stored, route: int) -> range:
     """Indices of the legs of a route, in the order of travel."""
     return _span(dataset.variables["leg_route"].values, route)
 
 
-def vertices_of(dataset: xr.Dataset, leg: int) -> range:
+def vertices_of(dataset: Stored, leg: int) -> range:
     """Indices of the vertices of a leg, in the order of travel."""
     return _span(dataset.variables["vertex_leg"].values, leg)
 
 
-def leg_line(dataset: xr.Dataset, leg: int) -> tuple[Array, Array]:
+def leg_line(dataset: Stored, leg: int) -> tuple[Array, Array]:
     """Longitude and latitude (degrees) along a leg, from its start to its end.
 
     A leg stored without vertices is the line from its start to its end.

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 if TYPE_CHECKING:
-    import xarray as xr
+    from waveguide.stored import Stored
 
 
 @dataclass(frozen=True)
@@ -30,12 +30,12 @@ class SumOfModes:
     metres: float
 
 
-def sum_of_modes(dataset: xr.Dataset, target: int) -> SumOfModes | None:
+def sum_of_modes(dataset: Stored, target: int) -> SumOfModes | None:
     """The sum of modes at a target, where several modes have a share.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals that pass :func:`waveguide.schema.check`.
     target : int
         Index along ``target``.
@@ -56,12 +56,12 @@ def sum_of_modes(dataset: xr.Dataset, target: int) -> SumOfModes | None:
     )  # fmt: skip
 
 
-def shares_text(dataset: xr.Dataset) -> str:
+def shares_text(dataset: Stored) -> str:
     """The shares of the modes in the signal at the source, in words.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
 
     Returns
     -------

@@ -19,7 +19,7 @@ from waveguide.report.text import columns, pad, plain
 from waveguide.report.ways import guided_legs
 
 if TYPE_CHECKING:
-    import xarray as xr
+    from waveguide.stored import Stored
 
 _ABSENT = "–"
 
@@ -39,12 +39,12 @@ _SUM_NOTE = (
 )
 
 
-def table(dataset: xr.Dataset, budget: bool = False) -> str:
+def table(dataset: Stored, budget: bool = False) -> str:
     """What a person wants to read: rows, routes and cautions.
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals that pass :func:`waveguide.schema.check`.
     budget : bool
         Also tell where the energy goes on every leg.
@@ -63,7 +63,7 @@ def table(dataset: xr.Dataset, budget: bool = False) -> str:
     return "\n\n".join(part for part in parts if part)
 
 
-def _heading(dataset: xr.Dataset) -> str:
+def _heading(dataset: Stored) -> str:
     attributes = dataset.attrs
     place = _position(attributes["source_longitude"], attributes["source_latitude"])
     amplitude = attributes["event_amplitude_m"]
@@ -83,7 +83,7 @@ def _position(lon: float, lat: float) -> str:
     return f"{abs(lat):.2f}°{north} {abs(lon):.2f}°{east}"
 
 
-def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
+def _rows(dataset: Stored, rows: list[tuple[int, int]]) -> str:
     """The table itself: a heading, a line for each target and mode, and one for their sum."""
     show = _columns(dataset)
     lines = [("Target", *(top for top, _, _ in show), "Status"), ("", *(u for _, u, _ in show), "")]
@@ -106,7 +106,7 @@ def _rows(dataset: xr.Dataset, rows: list[tuple[int, int]]) -> str:
     return "\n".join([*text[:2], rule, *text[2:], *notes])
 
 
-def _columns(dataset: xr.Dataset) -> list[tuple[str, str, Callable[[int, int], str]]]:
+def _columns(dataset: Stored) -> list[tuple[str, str, Callable[[int, int], str]]]:
     """Heading, unit and cells of the columns between target and status."""
     metres = np.isfinite(dataset["amplitude_m"].values).any()
     return [
@@ -131,13 +131,13 @@ def _sum_cell(total: SumOfModes, top: str, unit: str) -> str:
     return told.get(f"{top} {unit}".strip(), "")
 
 
-def _speed(dataset: xr.Dataset) -> Callable[[int, int], str]:
+def _speed(dataset: Stored) -> Callable[[int, int], str]:
     """The mean speed, or that there is none to speak of."""
     number = _column(dataset, "mean_speed_m_s", ".2f")
     return lambda t, m: _AT_ONCE if _quasi_simultaneous(dataset, t, m) else number(t, m)
 
 
-def _quasi_simultaneous(dataset: xr.Dataset, target: int, mode: int) -> bool:
+def _quasi_simultaneous(dataset: Stored, target: int, mode: int) -> bool:
     """Whether legs of which most is below the critical frequency are most of the way."""
     routes = routes_of(dataset, target, mode)
     legs = guided_legs(dataset, routes[0]) if routes else []
@@ -146,12 +146,12 @@ def _quasi_simultaneous(dataset: xr.Dataset, target: int, mode: int) -> bool:
     return bool(length[at_once].sum() > 0.5 * length.sum())
 
 
-def _column(dataset: xr.Dataset, name: str, style: str) -> Callable[[int, int], str]:
+def _column(dataset: Stored, name: str, style: str) -> Callable[[int, int], str]:
     values = dataset[name].values
     return lambda t, m: format(values[t, m], style) if np.isfinite(values[t, m]) else _ABSENT
 
 
-def _date(dataset: xr.Dataset) -> Callable[[int, int], str]:
+def _date(dataset: Stored) -> Callable[[int, int], str]:
     values = dataset["front_date"].values
 
     def cell(target: int, mode: int) -> str:
@@ -168,7 +168,7 @@ def _filled_column(cells: list[str], right: bool = False) -> list[str]:
     return [pad(cell, width, right) for cell in cells]
 
 
-def _routes(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
+def _routes(dataset: Stored, rows: Iterable[tuple[int, int]]) -> str:
     """By which legs the front comes, one paragraph for each route."""
     lines = [
         filled(f"  {_row_name(dataset, *row)}, {_route(dataset, route)}", 6)
@@ -178,7 +178,7 @@ def _routes(dataset: xr.Dataset, rows: Iterable[tuple[int, int]]) -> str:
     return "\n".join(["Routes", *lines]) if lines else ""
 
 
-def _route(dataset: xr.Dataset, route: int) -> str:
+def _route(dataset: Stored, route: int) -> str:
     """The earliest route by its legs, a further one by what tells it from the others."""
     kind = plain(dataset["route_kind"].values[route])
     via = plain(dataset["route_via"].values[route], 200)
@@ -191,13 +191,13 @@ def _route(dataset: xr.Dataset, route: int) -> str:
     return f"{head}: {_legs(dataset, route)} ({told}; {budget_line(dataset, route)})"
 
 
-def _legs(dataset: xr.Dataset, route: int) -> str:
+def _legs(dataset: Stored, route: int) -> str:
     """Legs of one kind that follow each other are told as one."""
     kinds = itertools.groupby(legs_of(dataset, route), key=lambda i: dataset["leg_kind"].values[i])
     return " → ".join(_run(dataset, kind, list(legs)) for kind, legs in kinds)
 
 
-def _run(dataset: xr.Dataset, kind: str, legs: list[int]) -> str:
+def _run(dataset: Stored, kind: str, legs: list[int]) -> str:
     """Legs of one kind, with their critical periods where most of them is quasi-simultaneous."""
     length = dataset["leg_length_km"].values[legs]
     text = f"{plain(kind)} {length.sum():.0f} km"
@@ -210,6 +210,6 @@ def _run(dataset: xr.Dataset, kind: str, legs: list[int]) -> str:
     return f"{text} (quasi-simultaneous, critical period {days} days)"
 
 
-def _row_name(dataset: xr.Dataset, target: int, mode: int) -> str:
+def _row_name(dataset: Stored, target: int, mode: int) -> str:
     name: Any = dataset["target"].values[target]
     return f"{plain(name, 28)} mode {int(dataset['mode'].values[mode])}"

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from waveguide.report.routes import legs_of, routes_of, vertices_of
 
 if TYPE_CHECKING:
-    import xarray as xr
+    from waveguide.stored import Stored
 
 Array = NDArray[np.float64]
 
@@ -28,13 +28,13 @@ class Way(NamedTuple):
 
     routes: list[int]
 
-    def longest(self, dataset: xr.Dataset, mode: int) -> int | None:
+    def longest(self, dataset: Stored, mode: int) -> int | None:
         """The longest route of a mode (its index along ``mode``), None where there is none."""
         modes = dataset["route_mode"].values
         return next((route for route in self.routes if modes[route] == mode), None)
 
 
-def ways(dataset: xr.Dataset) -> list[Way]:
+def ways(dataset: Stored) -> list[Way]:
     """Headline routes of all targets and modes, those that lead the same way together.
 
     A route belongs to the longest one whose vertices begin with its own. Its first and last
@@ -42,7 +42,7 @@ def ways(dataset: xr.Dataset) -> list[Way]:
 
     Parameters
     ----------
-    dataset : xarray.Dataset
+    dataset : xarray.Dataset or Arrays
         Arrivals.
 
     Returns
@@ -63,19 +63,19 @@ def ways(dataset: xr.Dataset) -> list[Way]:
     return sorted(result, key=lambda way: min(way.routes))
 
 
-def guided_legs(dataset: xr.Dataset, route: int) -> list[int]:
+def guided_legs(dataset: Stored, route: int) -> list[int]:
     """Legs of a route along the guide, in the order of travel."""
     kinds = dataset["leg_kind"].values
     return [leg for leg in legs_of(dataset, route) if kinds[leg] != "attachment"]
 
 
-def guided_vertices(dataset: xr.Dataset, route: int) -> NDArray[np.int64]:
+def guided_vertices(dataset: Stored, route: int) -> NDArray[np.int64]:
     """Vertices of a route along the guide, in the order of travel."""
     spans = [np.array(vertices_of(dataset, leg)) for leg in guided_legs(dataset, route)]
     return np.concatenate([np.zeros(0, np.int64), *spans]).astype(np.int64)
 
 
-def _inner_line(dataset: xr.Dataset, route: int) -> Array:
+def _inner_line(dataset: Stored, route: int) -> Array:
     index = guided_vertices(dataset, route)[1:-1]
     return np.column_stack(
         [dataset[f"vertex_{axis}"].values[index] for axis in ("longitude", "latitude")]
