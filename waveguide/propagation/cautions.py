@@ -39,7 +39,7 @@ NORTHERN_ICE, SOUTHERN_ICE = 65.0, -60.0
 """Latitudes poleward of which sea ice is common in winter (MEMORY)."""
 
 EARLIEST_RISE = 1.0
-"""Days by which half-height may precede the front, which leaning coasts explain."""
+"""Days by which half-height may precede the front without a word: T_e or so (see `waveform`)."""
 
 
 @dataclass(frozen=True)
@@ -66,8 +66,8 @@ class Kind:
 KINDS = (
     Kind("faint signal", "1", ".2g", "amplitude ratio {}: too faint to be told from noise"),
     Kind("early rise", "days", ".1f",
-         "half-height comes {} days before the front, which is not explained: trust neither to "
-         "better than the difference"),
+         "half-height comes {} days before the front: where a coast slants away from a junction "
+         "the wave takes a short cut to or from the equator, the front is told along the guide"),
     Kind("fast wave", "1", ".2f",
          "ω/|f| reaches {} on the route: the wave is not slow beside the earth's rotation"),
     Kind("sea ice in the north", "°N", ".0f",

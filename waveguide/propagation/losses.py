@@ -28,10 +28,12 @@ from waveguide.constants import coriolis
 from waveguide.network.graph import Network, StepKind
 from waveguide.propagation.modes import ModeAtNodes, friction_of_steps
 from waveguide.propagation.near_equator import network_wall_table, potential
-from waveguide.propagation.step_response import Conditions, step_response
+from waveguide.propagation.step_response import FATES, Conditions, step_response
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
+
+_RUBBED = [FATES.index(fate) for fate in ("bottom friction", "interior damping")]
 
 
 @dataclass(frozen=True)
@@ -44,6 +46,8 @@ class StepPhysics:
         Travel time of the front along each step (s); infinite where the mode does not exist.
     loss : ndarray, shape (m,)
         Nepers of a, ≥ 0.
+    rubbed : ndarray, shape (m,)
+        What bottom friction and damping have of them.
     slowness : ndarray, shape (n,)
         1/c at every node (s/m), NaN where the mode does not exist.
     potential : ndarray, shape (n,)
@@ -52,6 +56,7 @@ class StepPhysics:
 
     time: Array
     loss: Array
+    rubbed: Array
     slowness: Array
     potential: Array
 
@@ -79,7 +84,8 @@ def step_physics(
     slowness = 1.0 / mode.speed
     along = 0.5 * (slowness[network.tail] + slowness[network.head])
     carried = np.nonzero(np.isfinite(along))[0]
-    time, loss = np.full(along.size, np.inf), np.zeros(along.size)
+    time = np.full(along.size, np.inf)
+    loss, rubbed = np.zeros(along.size), np.zeros(along.size)
     time[carried] = network.length[carried] * along[carried]
     frequency = np.array([omega])
     nodes = np.arange(network.size)
@@ -87,7 +93,9 @@ def step_physics(
     conditions = Conditions(friction=friction_of_steps(network, mode, drag), damping=damping)
     response = step_response(network, mode, carried, frequency, table, conditions)
     loss[carried] = response.nepers.sum(axis=0)[:, 0]
-    return StepPhysics(time, loss, slowness, potential(network, mode, nodes, table)[:, 0])
+    rubbed[carried] = response.nepers[_RUBBED].sum(axis=0)[:, 0]
+    level = potential(network, mode, nodes, table)[:, 0]
+    return StepPhysics(time, loss, rubbed, slowness, level)
 
 
 def critical_share(network: Network, steps: Index, speed: Array, omega: float) -> float:

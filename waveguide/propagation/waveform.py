@@ -24,9 +24,14 @@ Times, all from the start of the event (not from its maximum):
 - centroid: ∫tη² dt/∫η² dt over the window.
 
 A burst of duration D peaks D/2 after the start at the source itself, so compare times at two
-targets, or subtract D/2, to find a travel time. A step has neither peak nor centroid. Round a
-junction sea level may rise before ∫ds/c, by up to about T_e = 1/√(βc), 1.5 days for 2.5 m/s: the
-equatorial wave is as wide as its radius and cuts the corner. The front does not count that.
+targets, or subtract D/2, to find a travel time. A step has neither peak nor centroid.
+
+The front is told along the guide. Round a junction sea level may rise earlier: the equatorial wave
+is as wide as its radius and cuts the corner, by about T_e = 1/√(βc) (1.5 days for 2.5 m/s) where
+the coasts are meridional. A coast that slants away, so that the guide doubles back on itself, is
+left at once for the equator, or reached from it: north-east Brazil leans 57°, and from Natal to
+20° W on the equator a burst of 1.5 days takes 8 days in a shallow-water integration where the
+guide takes 18 and the straight way east 7.8 (tests/oracle/test_oracle_atlantic.py).
 """
 
 from __future__ import annotations
