@@ -150,9 +150,7 @@ def packaged_bathymetry() -> Bathymetry:
         lon, lat = (np.asarray(dataset[name][:], float) for name in ("lon", "lat"))
         elevation = dataset["elevation"]
         elevation.set_auto_maskandscale(False)
-        depth = elevation[:].astype(np.float32)
-    np.negative(depth, out=depth)
-    depth += 0.0  # no negative zeros
+        depth = np.subtract(0, elevation[:], dtype=np.float32)
     return Bathymetry(lon, lat, depth, "ETOPO1 bedrock (Amante and Eakins 2009) at 0.1°")
 
 

@@ -41,8 +41,8 @@ from dataclasses import dataclass, replace
 from typing import NamedTuple
 
 import numpy as np
+from numpy.fft import irfft, rfft, rfftfreq  # as SciPy's, which take longer to import
 from numpy.typing import ArrayLike, NDArray
-from scipy.fft import irfft, next_fast_len, rfft, rfftfreq
 
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
@@ -206,7 +206,7 @@ def source_spectrum(source: SourceFunction, step: float, period: float) -> Spect
     -------
     Spectrum
     """
-    count = next_fast_len(int(np.ceil(period / step)), real=True)
+    count = _fast_length(int(np.ceil(period / step)))
     time = np.arange(count) * step
     before = time >= count * step + source.begin
     time = np.where(before, time - count * step, time)
@@ -217,6 +217,18 @@ def source_spectrum(source: SourceFunction, step: float, period: float) -> Spect
     row = np.nonzero(np.abs(amplitude) > _FAINTEST * np.abs(amplitude).max())[0]
     omega = 2.0 * np.pi * rfftfreq(count, step)
     return Spectrum(step, count, omega[row], row, amplitude[row])
+
+
+def _fast_length(least: int) -> int:
+    """The smallest length from `least` whose transform is fast: without primes above 5."""
+    length, rest = least, 0
+    while rest != 1:
+        rest = length
+        for prime in (2, 3, 5):
+            while rest % prime == 0:
+                rest //= prime
+        length += 1
+    return length - 1
 
 
 def synthesise(spectrum: Spectrum, responses: Sequence[ComplexArray]) -> Array:
