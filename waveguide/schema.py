@@ -105,7 +105,9 @@ ARRIVALS: dict[str, Variable] = {
         _ROW, "time from the start of the event to the centroid of squared sea level", "day"
     ),
     "peak_ratio": _number(
-        _ROW, "peak of sea level at the target over that at the source, all routes together", "1"
+        _ROW,
+        "peak of sea level at the target over that at the source, all routes together; negative "
+        "where one is a rise and the other a lowering", "1",
     ),
     "amplitude_ratio": _number(
         _ROW, "sea level at the target over that at the source at the dominant period", "1"

@@ -20,6 +20,7 @@ from waveguide.propagation.transfer import LegBudget
 from waveguide.propagation.validity import Validity
 from waveguide.propagation.waveform import ArrivalTimes, mode_shares
 from waveguide.report.instruments import instrument_columns
+from waveguide.report.sums import farthest
 from waveguide.schema import ARRIVALS, arranged, check
 from waveguide.stored import Arrays
 
@@ -132,11 +133,11 @@ def _validity(arrival: Arrival) -> dict[str, float]:
 
 
 def _wave_row(answer: ModeAnswer, target: int, height: float | None) -> dict[str, float]:
-    """Times of the waveform (days from the start of the event) and the ratio of peaks."""
+    """Times of the waveform (days from the start of the event) and the ratio of peaks, signed."""
     times: ArrivalTimes = answer.times[target]
     level, source = answer.waveforms.sea_level[target], answer.waveforms.source
     reached = answer.arrivals[target].status == REACHED
-    peak = float(np.abs(level).max() / np.abs(source).max()) if reached else float("nan")
+    peak = farthest(level) / farthest(source) if reached else float("nan")
     return {
         "half_height_time_days": times.half_height / SECONDS_PER_DAY,
         "peak_time_days": times.peak / SECONDS_PER_DAY,

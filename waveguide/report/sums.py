@@ -20,7 +20,7 @@ class SumOfModes:
     peak_time : float
         From the start of the event (days), to the step of the waveforms.
     peak_ratio : float
-        Of its size to the peak at the source.
+        To the peak at the source; negative where one is a rise and the other a lowering.
     metres : float
         The same in metres, NaN where the amplitude of the event is unknown.
     """
@@ -28,6 +28,20 @@ class SumOfModes:
     peak_time: float
     peak_ratio: float
     metres: float
+
+
+def farthest(level: np.ndarray[tuple[int], np.dtype[np.float64]]) -> float:
+    """The value of a waveform that is farthest from zero, with its sign.
+
+    Parameters
+    ----------
+    level : ndarray, shape (nt,)
+
+    Returns
+    -------
+    float
+    """
+    return float(level[np.argmax(np.abs(level))])
 
 
 def sum_of_modes(dataset: Stored, target: int) -> SumOfModes | None:
@@ -45,11 +59,11 @@ def sum_of_modes(dataset: Stored, target: int) -> SumOfModes | None:
     SumOfModes or None
         None with one mode, and for a target that no mode reaches.
     """
-    level = np.abs(dataset["waveform_sum"].values[target])
-    if dataset.sizes["mode"] < 2 or not level.max() > 0.0:
+    level = dataset["waveform_sum"].values[target]
+    if dataset.sizes["mode"] < 2 or not np.abs(level).max() > 0.0:
         return None
-    at = int(np.argmax(level))
-    ratio = float(level[at] / np.abs(dataset["source_waveform"].values).max())
+    at = int(np.argmax(np.abs(level)))
+    ratio = farthest(level) / farthest(dataset["source_waveform"].values)
     return SumOfModes(
         peak_time=float(dataset["time_days"].values[at]), peak_ratio=ratio,
         metres=ratio * float(dataset.attrs["event_amplitude_m"]),
