@@ -353,6 +353,14 @@ def test_print_view_hides_controls_and_shows_the_table(page):
     assert len(pdf) > 50_000
 
 
+def test_the_dashed_line_is_told_with_the_shares(page):
+    note = page.value("document.getElementById('sum').textContent")
+    shown = page.value("!document.getElementById('sum').hidden")
+    shares = [int(word) for word in note.split("source: ")[1].split() if word.isdigit()]
+    assert shown == (len(shares) > 2)  # each share and the number of its mode
+    assert 99 <= sum(shares[::2]) <= 101
+
+
 def test_it_fits_a_narrow_window(page):
     page.call("Emulation.setDeviceMetricsOverride", width=390, height=800, deviceScaleFactor=2,
               mobile=True)

@@ -15,6 +15,7 @@
   }
   drawLegend(data, get("legend"));
   get("box").hidden = !data.event.box;
+  tellSum(data, get("sum"));
 
   const map = new SeaMap(get("map"), data, { pointed: showPlace, chosen: choose });
   const bars = drawTargets(data, get("list"), choose);

@@ -261,7 +261,7 @@ class SeaMap {
   drawPlaces(pen) {
     this.drawBox(pen);
     this.drawStar(pen, this.pixel(...this.source));
-    const taken = [];
+    const taken = [], way = this.wayPixels();
     const order = this.spots.map((_, i) => i).sort((a, b) => (b === this.target) - (a === this.target));
     for (const i of order) {
       const at = this.pixel(...this.spots[i]);
@@ -273,9 +273,9 @@ class SeaMap {
       pen.lineWidth = 2;
       pen.strokeStyle = i === this.target ? "#7b2d5b" : INK;
       pen.stroke();
-      this.write(pen, this.data.targets[i].name, at, taken, i === this.target);
+      this.write(pen, this.data.targets[i].name, at, taken, way, i === this.target);
     }
-    this.write(pen, this.data.event.name, this.pixel(...this.source), taken, false);
+    this.write(pen, this.data.event.name, this.pixel(...this.source), taken, way, false);
   }
 
   drawBox(pen) {
@@ -310,19 +310,29 @@ class SeaMap {
     pen.stroke();
   }
 
-  // A name beside a place, where there is room for it.
-  write(pen, name, [x, y], taken, must) {
+  wayPixels() {
+    return this.shownRoutes().flatMap(([, i]) =>
+      Array.from(this.lines[i].x, (x, k) => this.pixel(x, this.lines[i].y[k])));
+  }
+
+  // A name beside a place, where there is room for it and where it hides least of the routes.
+  write(pen, name, [x, y], taken, way, must) {
     const text = name.length > 26 ? name.slice(0, 25) + "…" : name;
     pen.font = (must ? "bold " : "") + "12px system-ui, sans-serif";
     pen.textAlign = "left";
     const width = pen.measureText(text).width;
     const spots = [[10, 4], [-width - 10, 4], [-width / 2, -11], [-width / 2, 21]];
     const box = ([dx, dy]) => [x + dx - 2, y + dy - 12, x + dx + width + 2, y + dy + 4];
-    const free = spots.find((spot) => {
+    const hidden = (spot) => {
+      const [a, b, c, d] = box(spot);
+      return way.filter(([p, q]) => a < p && p < c && b < q && q < d).length;
+    };
+    const open = spots.filter((spot) => {
       const [a, b, c, d] = box(spot);
       if (a < 0 || c > this.width || b < 0 || d > this.height) return false;
       return !taken.some(([e, f, g, h]) => a < g && e < c && b < h && f < d);
-    }) || (must ? spots[0] : null);
+    });
+    const free = open.sort((s, t) => hidden(s) - hidden(t))[0] || (must ? spots[0] : null);
     if (!free) return;
     taken.push(box(free));
     pen.lineWidth = 3.5;

@@ -29,7 +29,7 @@ function pairs(list) {
 }
 
 function spread(values, digits) {
-  return values.map((value) => fixed(value, digits)).join(" – ");
+  return values.map((value) => fixed(value, digits)).join(", ");
 }
 
 function drawLegend(data, list) {
@@ -44,6 +44,14 @@ function drawLegend(data, list) {
   item(line("#9aa4ab", "none"), "pale: the front has not come yet");
   item(line("#55606a", "6 4"), "another route of the chosen target");
   item("★ event", " · ○ target, ● once a front has come");
+}
+
+// What the dashed line in the waveforms is, and what its parts are.
+function tellSum(data, note) {
+  note.hidden = data.modes.length < 2;
+  const shares = data.modes.map((mode) => `${fixed(100 * mode.share, 0)} % ${mode.name}`).join(", ");
+  note.textContent = "Each mode is told as if all of the signal were in it. A gauge sees their sum, " +
+    `dashed, here with the shares that a lasting wind raises at the source: ${shares}.`;
 }
 
 function drawTargets(data, list, choose) {
@@ -84,7 +92,7 @@ function tellRow(data, target, m, row, part) {
     node("p", {}, `Look from ${dateOf(data, plan.look_from)} until ` +
       `${dateOf(data, plan.look_until)}.`),
     pairs([
-      ["Front, days (P10 – P50 – P90)", spread(plan.front, 1)],
+      ["Front, days (P10, P50, P90)", spread(plan.front, 1)],
       ["Half height, days", spread(plan.half, 1)],
       ["Peak, days", spread(plan.peak, 1)],
       [metres ? "Peak, m" : "Peak, ratio to the source", spread(metres ? plan.metres : plan.ratio, metres ? 3 : 2)],
