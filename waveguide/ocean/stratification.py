@@ -15,6 +15,7 @@ from waveguide.ocean.packaged import packaged_file
 
 if TYPE_CHECKING:
     from scipy.sparse import csr_array
+    from scipy.spatial import KDTree
 
 Array = NDArray[np.float64]
 
@@ -138,6 +139,14 @@ class Climatology:
     def _nearest(self) -> dict[int, NDArray[np.intp]]:
         return {}
 
+    @cached_property
+    def _sea(self) -> tuple[NDArray[np.intp], KDTree]:
+        """Columns with values, and a tree of their unit vectors."""
+        from scipy.spatial import KDTree
+
+        wet = np.flatnonzero(self.levels > 0)
+        return wet, KDTree(self.vectors[wet])
+
     def _search(self, count: int) -> NDArray[np.intp]:
         from scipy.sparse.csgraph import dijkstra
 
@@ -152,10 +161,8 @@ class Climatology:
 
     def _columns(self, vectors: Array, count: NDArray[np.intp]) -> NDArray[np.intp]:
         """Index of the column for each position, −1 where there is none."""
-        from scipy.spatial import KDTree
-
-        wet = np.flatnonzero(self.levels > 0)
-        away, nearest = KDTree(self.vectors[wet]).query(vectors)
+        wet, tree = self._sea
+        away, nearest = tree.query(vectors)
         start = wet[nearest]
         column = np.full(start.size, -1)
         for number in np.unique(count[count <= self.depth.size]):

@@ -207,7 +207,7 @@ def source_spectrum(source: SourceFunction, step: float, period: float) -> Spect
     Spectrum
     """
     count = _fast_length(int(np.ceil(period / step)))
-    time = np.arange(count) * step
+    time = np.asarray(np.arange(count) * step, dtype=np.float64)
     before = time >= count * step + source.begin
     time = np.where(before, time - count * step, time)
     values = source.values(time)
@@ -215,7 +215,7 @@ def source_spectrum(source: SourceFunction, step: float, period: float) -> Spect
         values = values - source.values(time - 0.5 * count * step)
     amplitude = rfft(values)
     row = np.nonzero(np.abs(amplitude) > _FAINTEST * np.abs(amplitude).max())[0]
-    omega = 2.0 * np.pi * rfftfreq(count, step)
+    omega = np.asarray(2.0 * np.pi * rfftfreq(count, step), dtype=np.float64)
     return Spectrum(step, count, omega[row], row, amplitude[row])
 
 
