@@ -94,6 +94,7 @@ def _instruments() -> dict[str, list[object]]:
     """The first target is a mooring with two instruments, the lower one on the bottom."""
     return {
         "instrument_target": [0, 0, 0, 0], "instrument_mode": [0, 0, 1, 1],
+        "instrument_guide_ratio": [0.6, 0.6, 0.4, 0.4],
         "instrument_depth_m": [100.0, 900.0] * 2, "instrument_offshore_km": [60.0] * 4,
         "instrument_bottom_m": [800.0] * 4,
         "instrument_structure": ["flat bottom", "flat bottom, below the bottom",

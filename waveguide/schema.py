@@ -195,6 +195,10 @@ ARRIVALS: dict[str, Variable] = {
     "fate_name": Variable(("fate",), "text", "what becomes of energy on the way", coordinate=True),
     "instrument_target": Variable(_INSTRUMENT, "integer", "index of the instrument's target"),
     "instrument_mode": Variable(_INSTRUMENT, "integer", "index of the mode along mode"),
+    "instrument_guide_ratio": _number(
+        _INSTRUMENT, "peak of sea level on the guide beside the mooring over that at the source",
+        "1",
+    ),
     "instrument_depth_m": _number(_INSTRUMENT, "depth of the instrument", "m"),
     "instrument_offshore_km": _number(
         _INSTRUMENT, "distance of the mooring from the shore, or from the equator", "km"

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 
+import numpy as np
 import pytest
 
 from waveguide.errors import InputError
@@ -70,7 +71,8 @@ def test_numbers_per_centimetre():
         bottom_pressure=-0.2 + 0.0j, bottom=800.0, best_depth=120.0,
     )  # fmt: skip
     answers = {(1, 0): MooringAnswer("section", 40e3, 138.0, view)}
-    rows = instrument_columns(answers, [(), (100.0, 900.0)])
+    rows = instrument_columns(answers, [(), (100.0, 900.0)], np.array([[1.0], [0.4]]))
+    assert rows["instrument_guide_ratio"] == [0.4, 0.4]
     assert rows["instrument_target"] == [1, 1]
     assert rows["instrument_displacement_m_per_cm"][0] == pytest.approx(-1.5)
     assert rows["instrument_displacement_lag_degrees"][0] == pytest.approx(0.0)
@@ -78,7 +80,8 @@ def test_numbers_per_centimetre():
     assert rows["instrument_current_lag_degrees"][0] == pytest.approx(90.0)
     assert rows["instrument_bottom_pressure_cm_per_cm"] == pytest.approx([-0.2, -0.2])
     assert rows["instrument_structure"] == ["section", "section, below the bottom"]
-    none = instrument_columns({(0, 0): MooringAnswer("no route", 0.0, 0.0, None)}, [(5.0,)])
+    missing = MooringAnswer("no route", 0.0, 0.0, None)
+    none = instrument_columns({(0, 0): missing}, [(5.0,)], np.array([[np.nan]]))
     assert none["instrument_structure"] == ["no route"]
 
 
@@ -88,13 +91,37 @@ def test_the_table_tells_moorings_only_where_there_are_any(arrivals):
     assert instruments_text(arrivals) in text
     assert max(map(columns, lines)) <= 120
     first = next(line for line in lines if line.startswith("Callao"))
-    for cell in ("60", "100", "-1.18 (+9°)", "+3.03 (-41°)", "138", "+0.65 (+9°)", "400",
+    for cell in ("60", "100", "-1.18 (+9°)", "+3.03 (-41°)", "138", "+0.65 (+9°)", "0.60",
                  "flat bottom"):  # fmt: skip
         assert cell in first
     assert sum("below the bottom" in line for line in lines) == 2
     gauges = arrivals.isel(instrument=[])
     assert instruments_text(gauges) == ""
     assert "At depth" not in table(gauges)
+
+
+def test_the_peak_on_the_guide_is_in_centimetres_where_the_amplitude_is_known(arrivals):
+    known = arrivals.assign_attrs(event_amplitude_m=-0.15)
+    text = instruments_text(known)
+    assert "in cm in the column Guide" in " ".join(text.split())
+    cells = next(line for line in text.splitlines() if line.startswith("Callao")).split()
+    assert cells[2] == "-9.0"  # 0.6 of 15 cm
+    assert "over that at the source" in " ".join(instruments_text(arrivals).split())
+
+
+def test_a_mooring_off_the_guide_is_told_the_sea_level_on_it(tmp_path):
+    """What instruments see is per sea level on the guide, not at the mooring's distance from it."""
+    import waveguide
+
+    path = tmp_path / "mooring.toml"
+    away = SCENARIO.replace("[-77.4, -12.3]", "[-77.9, -12.6]")
+    path.write_text(away + "depth_m = 150", encoding="utf-8")
+    found = waveguide.arrivals(read_scenario(path))
+    factor = found["target_factor"].values[0, 0]
+    assert factor < 0.95
+    assert found["instrument_guide_ratio"].values[0] * factor == pytest.approx(
+        found["peak_ratio"].values[0, 0], rel=1e-12
+    )
 
 
 def test_json_and_csv_hold_the_same_instruments(arrivals, tmp_path):

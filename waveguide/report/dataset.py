@@ -80,7 +80,9 @@ def arrivals_arrays(
     values.update({name: np.array(row).reshape(shape) for name, row in rows.items()})
     start = np.datetime64(scenario.event.start.replace(tzinfo=None), "ns")
     values.update(_waveforms(list(answers.values()), start))
-    values.update(instrument_columns(moorings, [target.depth_m for target in scenario.targets]))
+    guide = values["peak_ratio"] / values["target_factor"]
+    depths = [target.depth_m for target in scenario.targets]
+    values.update(instrument_columns(moorings, depths, guide))
     values["fate_name"] = FATES
     values["vertex_taken"] = np.reshape(values["vertex_taken"], (-1, len(FATES)))
     arrays = arranged(values, attributes)

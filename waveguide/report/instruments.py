@@ -7,6 +7,7 @@ from collections.abc import Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from waveguide.propagation.at_depth import signed
 from waveguide.report.layout import aligned, filled
@@ -18,13 +19,14 @@ if TYPE_CHECKING:
     from waveguide.stored import Stored
 
 _VARIABLES = [name for name, v in ARRIVALS.items() if v.dims == ("instrument",)]
-_HEADING = ["Mooring", "Mode", "Off (km)", "Depth (m)", "Isopycnals (m)", "Current (cm/s)",
-            "To", "Pressure (cm)", "Best (m)", "Structure"]  # fmt: skip
+_HEADING = ["Mooring", "Mode", "Guide", "Off (km)", "Depth (m)", "Isopycnals (m)",
+            "Current (cm/s)", "To", "Pressure (cm)", "Structure"]  # fmt: skip
 _IN_PHASE = 0.5  # degrees
 
 
 def instrument_columns(
-    moorings: Mapping[tuple[int, int], MooringAnswer], depths: Sequence[Sequence[float]]
+    moorings: Mapping[tuple[int, int], MooringAnswer], depths: Sequence[Sequence[float]],
+    guide: NDArray[np.float64],
 ) -> dict[str, list[Any]]:
     """The variables of instruments, a row for each target, mode and depth.
 
@@ -34,6 +36,8 @@ def instrument_columns(
         Indices along both; targets that are no moorings are not in it.
     depths : sequence of sequence of float
         Of the instruments of every target (m).
+    guide : ndarray, shape (targets, modes)
+        Peak of sea level on the guide beside the targets over that at the source.
 
     Returns
     -------
@@ -43,7 +47,10 @@ def instrument_columns(
     columns: dict[str, list[Any]] = {name: [] for name in _VARIABLES}
     for (target, mode), answer in sorted(moorings.items()):
         for place, depth in enumerate(depths[target]):
-            row = {"target": target, "mode": mode, "depth_m": depth, **_row(answer, place)}
+            row = {
+                "target": target, "mode": mode, "depth_m": depth,
+                "guide_ratio": float(guide[target, mode]), **_row(answer, place),
+            }  # fmt: skip
             for name, value in row.items():
                 columns[f"instrument_{name}"].append(value)
     return columns
@@ -98,11 +105,26 @@ def instruments_text(dataset: Stored) -> str:
         return ""
     cells = [_cells(dataset, i) for i in range(dataset.sizes["instrument"])]
     heading = filled(
-        "At depth, per centimetre of sea level on the guide: isopycnals upward, current in the "
-        "direction of travel (to this azimuth), bottom pressure as height of water; in brackets "
-        "the phase by which each lags sea level; best: the depth where isopycnals stand out most", 2
+        "At depth, per centimetre of sea level on the guide beside the mooring: isopycnals upward, "
+        "current in the direction of travel (to this azimuth), bottom pressure as height of water; "
+        "in brackets the phase by which each lags sea level. What an instrument sees at most is "
+        f"that times the peak on the guide, {_unit(dataset)} in the column Guide", 2
     )
     return f"{heading}\n{aligned([_HEADING, *cells], range(1, len(_HEADING) - 1))}"
+
+
+def _unit(dataset: Stored) -> str:
+    known = math.isfinite(dataset.attrs["event_amplitude_m"])
+    return "in cm" if known else "over that at the source,"
+
+
+def _guide(dataset: Stored, i: int) -> str:
+    """The peak on the guide: in cm where the amplitude of the event is known, else its ratio."""
+    ratio = float(dataset["instrument_guide_ratio"].values[i])
+    metres = float(dataset.attrs["event_amplitude_m"])
+    if not math.isfinite(ratio):
+        return "–"
+    return f"{100.0 * ratio * metres:+.1f}" if math.isfinite(metres) else f"{ratio:.2f}"
 
 
 def _cells(dataset: Stored, i: int) -> list[str]:
@@ -118,9 +140,9 @@ def _cells(dataset: Stored, i: int) -> list[str]:
     target, mode = _whose(dataset, i)
     structure = str(dataset["instrument_structure"].values[i]).split(", ")[-1]
     return [
-        plain(target, 22), str(int(mode)), number("offshore_km", ".0f"), number("depth_m", ".0f"),
+        plain(target, 22), str(int(mode)), _guide(dataset, i), number("offshore_km", ".0f"),
+        number("depth_m", ".0f"),
         with_lag("displacement_m_per_cm", "displacement", "+.2f"),
         with_lag("current_cm_s_per_cm", "current", "+.2f"), number("towards_degrees", ".0f"),
-        with_lag("bottom_pressure_cm_per_cm", "bottom_pressure", "+.2f"),
-        number("best_depth_m", ".0f"), plain(structure, 24),
+        with_lag("bottom_pressure_cm_per_cm", "bottom_pressure", "+.2f"), plain(structure, 24),
     ]

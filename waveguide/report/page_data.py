@@ -180,7 +180,7 @@ def _instruments(arrivals: xr.Dataset, row: tuple[int, int]) -> list[dict[str, A
     """What the instruments of a mooring see per centimetre of sea level."""
     names = {
         "depth": "depth_m", "rise": "displacement_m_per_cm", "flow": "current_cm_s_per_cm",
-        "pressure": "bottom_pressure_cm_per_cm",
+        "pressure": "bottom_pressure_cm_per_cm", "guide": "guide_ratio",
     }  # fmt: skip
     mine = (arrivals["instrument_target"].values == row[0]) & (
         arrivals["instrument_mode"].values == row[1]

@@ -106,7 +106,9 @@ function tellRow(data, target, m, row, part) {
     ]),
   );
   if (row.instruments.length) {
-    part.append(node("h3", {}, "Its instruments, per cm of sea level on the guide"), pairs(
+    const guide = data.event.metres === null ? `${fixed(row.instruments[0].guide, 2)} of that at the source`
+      : `${fixed(100 * row.instruments[0].guide * data.event.metres, 1)} cm`;
+    part.append(node("h3", {}, `Its instruments, per cm of sea level on the guide, which peaks at ${guide}`), pairs(
       row.instruments.map((i) => [`${fixed(i.depth, 0)} m`, `isopycnals ${fixed(i.rise, 1)} m, ` +
         `current ${fixed(i.flow, 1)} cm/s, bottom pressure ${fixed(i.pressure, 2)} cm`])));
   }
