@@ -51,12 +51,13 @@ def test_modes_are_summed_with_their_shares(arrivals):
     text = table(arrivals)
     line = next(line for line in text.splitlines() if line.startswith("Callao") and " sum " in line)
     # By hand (conftest): 0.7 × mode 1 is the larger peak, 0.5 at 70.28 d, in steps of half a day.
-    assert line.split() == ["Callao", "sum", "70.5", "0.348"]
+    assert line.split() == ["Callao", "sum", "70.5", "0.348", "peak", "2031-05-14", "12", "h"]
     expected = 0.35 * np.exp(-(((70.5 - float(arrivals["peak_time_days"][0, 0])) / 3.0) ** 2))
     assert "70 % mode 1, 30 % mode 2." in " ".join(text.split())
     assert not any(line.startswith("=Lima") and " sum " in line for line in text.splitlines())
     (first, second) = document(arrivals)["sums"]
     assert (first["target"], first["peak_time_days"]) == ("Callao", 70.5)
+    assert first["peak_date"] == "2031-05-14T12:00:00Z"
     assert first["amplitude_m"] is None
     assert first["peak_ratio"] == pytest.approx(expected, rel=1e-8)
     assert second["target"] == "Acapulco"

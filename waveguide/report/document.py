@@ -64,6 +64,7 @@ def _sums(dataset: Stored) -> list[dict[str, Any]]:
         {
             "target": plain_value(dataset["target"].values[t]),
             "peak_time_days": plain_value(total.peak_time),
+            "peak_date": plain_value(total.date),
             "peak_ratio": plain_value(total.peak_ratio),
             "amplitude_m": plain_value(total.metres),
         }

@@ -19,6 +19,8 @@ class SumOfModes:
     ----------
     peak_time : float
         From the start of the event (days), to the step of the waveforms.
+    date : datetime64
+        The same in UTC.
     peak_ratio : float
         To the peak at the source; negative where one is a rise and the other a lowering.
     metres : float
@@ -26,6 +28,7 @@ class SumOfModes:
     """
 
     peak_time: float
+    date: np.datetime64
     peak_ratio: float
     metres: float
 
@@ -65,7 +68,8 @@ def sum_of_modes(dataset: Stored, target: int) -> SumOfModes | None:
     at = int(np.argmax(np.abs(level)))
     ratio = farthest(level) / farthest(dataset["source_waveform"].values)
     return SumOfModes(
-        peak_time=float(dataset["time_days"].values[at]), peak_ratio=ratio,
+        peak_time=float(dataset["time_days"].values[at]), date=dataset["time"].values[at],
+        peak_ratio=ratio,
         metres=ratio * float(dataset.attrs["event_amplitude_m"]),
     )  # fmt: skip
 

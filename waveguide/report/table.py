@@ -94,7 +94,8 @@ def _rows(dataset: Stored, rows: list[tuple[int, int]]) -> str:
         lines.append((name, *(cell(target, mode) for _, _, cell in show), status))
         total = sum_of_modes(dataset, target) if mode == rows[-1][1] else None
         if total is not None:
-            lines.append((name, *(_sum_cell(total, top, unit) for top, unit, _ in show), ""))
+            peak = f"peak {np.datetime_as_string(total.date, unit='h').replace('T', ' ')} h"
+            lines.append((name, *(_sum_cell(total, top, unit) for top, unit, _ in show), peak))
             summed = True
     padded = [_filled_column(list(cells), 0 < k <= len(show))
               for k, cells in enumerate(zip(*lines, strict=True))]  # fmt: skip
