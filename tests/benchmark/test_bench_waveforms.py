@@ -13,6 +13,7 @@ import resource
 import subprocess
 import sys
 import time
+from functools import partial
 from pathlib import Path
 from types import SimpleNamespace
 from typing import Any
@@ -136,8 +137,8 @@ def test_basin_beside_the_integration(benchmark: Any) -> None:
 def test_atlantic_beside_the_integration(benchmark: Any) -> None:
     """The real coasts of the tropical Atlantic at 0.1°, from Brazil to Luanda."""
     from make_atlantic_results import (
-        DAYS,
         GAUGES,
+        RUNS,
         SOURCE,
         SPEED,
         burst,
@@ -148,13 +149,15 @@ def test_atlantic_beside_the_integration(benchmark: Any) -> None:
     )
 
     domain = real_coast()
+    days, deviation = RUNS["atlantic_results.json"]
     gauges = whole_route(
-        domain, SPEED, patch(domain, *SOURCE, 1.0), burst, list(GAUGES.values()),
-        DAYS * SECONDS_PER_DAY, sponge=edge_sponge(domain, 4.0, 4e-5, "NSW"), viscosity=10.0,
+        domain, SPEED, patch(domain, *SOURCE, 1.0), partial(burst, deviation=deviation),
+        list(GAUGES.values()), days * SECONDS_PER_DAY,
+        sponge=edge_sponge(domain, 4.0, 4e-5, "NSW"), viscosity=10.0,
     )
     network, _ = packaged_network("baroclinic")
     mode, omega = uniform_mode(network, 1, SPEED), 2.0 * np.pi / (25.0 * SECONDS_PER_DAY)
-    source, window = gaussian_burst(30.0 * SECONDS_PER_DAY), DAYS * SECONDS_PER_DAY
+    source, window = gaussian_burst(6.0 * deviation * SECONDS_PER_DAY), days * SECONDS_PER_DAY
     case = SimpleNamespace()
 
     def search() -> None:
