@@ -52,7 +52,7 @@ def mode_of(network: Network, speed, value, number: int = 1) -> ModeAtNodes:
     return ModeAtNodes(
         number, np.broadcast_to(np.asarray(speed, float), n).copy(),
         np.broadcast_to(np.asarray(value, float), n).copy(), np.zeros(0), np.zeros(n),
-        np.full(n, np.inf),
+        np.full(n, np.inf), np.full(n, np.inf), np.zeros(n), np.zeros(n),
     )
 
 

@@ -173,6 +173,53 @@ def stiffness(
     return Stiffness(_band(gradients + others, nodes), _row_sum(others, nodes), rotation.floating)
 
 
+def frequency_terms(
+    mesh: Mesh, profile: Profile, rotation: Rotation, offshore: OffshoreModes, values: Array
+) -> tuple[Array, Array, Array]:
+    """What p'Kp gains per l² and per D, for long waves.
+
+    Parameters
+    ----------
+    mesh : Mesh
+        The section's mesh.
+    profile : Profile
+        Stratification.
+    rotation : Rotation
+        Of long waves: l = 0, D = f².
+    offshore : OffshoreModes
+        From `offshore_modes`, of the same arguments.
+    values : ndarray, shape (nmode, nnode)
+        p at the nodes.
+
+    Returns
+    -------
+    by_wavenumber, by_inertia : ndarray, shape (nmode,)
+        ∫∫ p² and ∫∫ p_z²/N² + ∫p²/g at the surface, those of the ocean beyond included: there
+        κ_n grows by 1/2κ_n per l² and by κ_n/2D per D. But for the slowest decay, which l soon
+        exceeds: its part of the first is left out.
+    tail : ndarray, shape (nmode,)
+        That part of p'Kp over its κ, to be taken with √(κ² + l²).
+    """
+    still, unit = Rotation(0.0, 0.0, rotation.gravity), Rotation(0.0, 1.0, rotation.gravity)
+    section = [*_rectangles(mesh, profile, rotation), *_triangles(mesh, profile, rotation),
+               *_surface(mesh, rotation)]
+    across = [*_rectangles(mesh, profile, still), *_triangles(mesh, profile, still)]
+    vertical = (_quadratic(section, values) - _quadratic(across, values)) / rotation.inertia
+    beyond = (values[:, mesh.start[-2] :] @ offshore.projection) ** 2
+    area = _quadratic(_mass(mesh, unit), values) + beyond[:, 1:] @ (0.5 / offshore.decay[1:])
+    vertical += beyond @ (0.5 * offshore.decay / rotation.inertia)
+    return area, vertical, beyond[:, 0]
+
+
+def _quadratic(parts: list[Entries], values: Array) -> Array:
+    """The form p'Ap of every row of p, A being the symmetric matrix whose lower half is given."""
+    total = np.zeros(values.shape[0])
+    for row, column, value in parts:
+        twice = np.where(row == column, value, 2.0 * value)
+        total += (values[:, row] * values[:, column]) @ twice
+    return total
+
+
 def _band(parts: list[Entries], nodes: int) -> Array:
     row = np.concatenate([np.maximum(p[0], p[1]) for p in parts])
     column = np.concatenate([np.minimum(p[0], p[1]) for p in parts])

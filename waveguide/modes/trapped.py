@@ -32,6 +32,7 @@ from waveguide.modes.assembly import (
     OffshoreModes,
     Rotation,
     boundary_product,
+    frequency_terms,
     offshore_modes,
     stiffness,
 )
@@ -116,7 +117,7 @@ def trapped_modes(
     check_numbers(f, count, tolerance)
     rotation = Rotation(f * f, 0.0, np.inf if rigid_lid else GRAVITY)
     coarse, fine, error = converged_solutions(x, h, profile, f, rotation, count, tolerance)
-    return _mode_set(coarse, fine, error, first=int(rigid_lid))
+    return _mode_set(coarse, fine, error, rotation, first=int(rigid_lid))
 
 
 def converged_solutions(
@@ -320,6 +321,21 @@ def _friction(solution: Solution) -> Array:
     return total
 
 
+def _dispersion(solution: Solution, rotation: Rotation) -> tuple[Array, Array]:
+    """`ModeSet.dispersion` and `ModeSet.barotropic_tail`.
+
+    To first order in the small terms K(l, ω) = K + l² M − ω² S + b(√(κ² + l²) − κ), with M, S and
+    b of `frequency_terms` and the slowest decay κ kept whole, since l exceeds it from a month
+    downward. So |f| l/ω = λ + l² M − ω² S + …, with l = ω/c on the right. Over a flat bottom the
+    terms cancel: such a wave has no dispersion.
+    """
+    area, vertical, tail = frequency_terms(
+        solution.mesh, solution.profile, rotation, solution.beyond, solution.values
+    )
+    spread = (area / solution.phase_speed**2 - vertical) / solution.eigenvalue
+    return spread, tail
+
+
 def _trapping_scales(solution: Solution) -> Array:
     """Distance (m) within which 1 - e⁻² of ∫ v² dx at the surface lies, one per mode."""
     mesh, values, beyond = solution.mesh, solution.values, solution.beyond
@@ -333,11 +349,17 @@ def _trapping_scales(solution: Solution) -> Array:
     return np.array([np.interp(2.0, np.log(e[0] / e), x[:-1]) for e in after])
 
 
-def _mode_set(coarse: Solution, fine: Solution, error: Array, first: int) -> ModeSet:
+def _mode_set(
+    coarse: Solution, fine: Solution, error: Array, rotation: Rotation, first: int
+) -> ModeSet:
     """Numbers extrapolated from two meshes, structures of the finer one."""
     mesh, values = fine.mesh, fine.values
     level = np.arange(mesh.level.size)[:, None]
     below = level > mesh.bottom
+    dispersion, tail = (
+        extrapolated(*pair)
+        for pair in zip(_dispersion(coarse, rotation), _dispersion(fine, rotation), strict=True)
+    )
     node = np.where(below, 0, mesh.start[:-1] + level)
     return ModeSet(
         mode=first + np.arange(error.size),
@@ -345,6 +367,8 @@ def _mode_set(coarse: Solution, fine: Solution, error: Array, first: int) -> Mod
         error=error,
         coastal_value=extrapolated(coarse.values[:, 0], fine.values[:, 0]),
         bottom_friction=extrapolated(_friction(coarse), _friction(fine)),
+        dispersion=dispersion,
+        barotropic_tail=tail,
         trapping_scale=_trapping_scales(fine),
         reverse_speed=fine.reverse_speed,
         f=fine.f,

@@ -53,6 +53,9 @@ class Atlas:
     decay_per_drag : ndarray, shape (k, n)
         Bottom friction: decay per metre and unit linear drag r (s/m²). Over a flat bottom it is
         F(−H)²/(2c): see `waveguide.propagation.step_response.flat_bottom_friction`.
+    dispersion, barotropic_tail : ndarray, shape (k, n)
+        d (s²) and b of :func:`waveguide.modes.modeset.low_frequency_wavenumber`, 0 over a flat
+        bottom.
     """
 
     mode: Index
@@ -61,6 +64,8 @@ class Atlas:
     coastal_value: Array
     gap_share: Array
     decay_per_drag: Array
+    dispersion: Array
+    barotropic_tail: Array
 
     def row(self, mode: int) -> int:
         """Row of a mode, −1 if the atlas does not hold it."""
@@ -198,6 +203,8 @@ def barotropic_atlas(network: Network, depths: Bathymetry) -> Atlas:
         decay_per_drag=np.where(
             known, 0.5 / np.where(known, depth * speed, 1.0), np.nan
         )[None, :],
+        dispersion=np.zeros((1, depth.size)),
+        barotropic_tail=np.zeros((1, depth.size)),
     )
 
 
@@ -251,6 +258,8 @@ def flat_bottom_atlas(
         np.stack([_through_straits(network, row) for row in value]),
         share,
         np.stack([_through_straits(network, row) for row in decay]),
+        np.zeros_like(speed),
+        np.zeros_like(speed),
     )
 
 

@@ -29,7 +29,7 @@ Array = NDArray[np.float64]
 RANKS = 4
 """Baroclinic modes found on each section: one more than are followed, for crossings."""
 
-METHOD = "1"
+METHOD = "2"
 """Part of every run's hash; to be raised when a change here or in the modes changes results."""
 
 RUN_LENGTH = 40
@@ -78,8 +78,9 @@ class RankedModes:
 
     Attributes
     ----------
-    phase_speed, error, coastal_value, bottom_friction, trapping_scale :
-        ndarray, shape (n, RANKS + 1). See :class:`waveguide.modes.modeset.ModeSet`.
+    phase_speed, error, coastal_value, bottom_friction, dispersion, barotropic_tail,
+    trapping_scale : ndarray, shape (n, RANKS + 1)
+        See :class:`waveguide.modes.modeset.ModeSet`.
     overlap : ndarray, shape (n, RANKS, RANKS)
         Overlap of the baroclinic modes of each node with those of the next.
     """
@@ -88,8 +89,13 @@ class RankedModes:
     error: Array
     coastal_value: Array
     bottom_friction: Array
+    dispersion: Array
+    barotropic_tail: Array
     trapping_scale: Array
     overlap: Array
+
+
+_OF_MODES = [field.name for field in fields(RankedModes) if field.name != "overlap"]
 
 
 def no_modes(count: int) -> RankedModes:
@@ -98,7 +104,7 @@ def no_modes(count: int) -> RankedModes:
         return np.full((count, RANKS + 1), np.nan)
 
     pairs = np.full((count, RANKS, RANKS), np.nan)
-    return RankedModes(empty(), empty(), empty(), empty(), empty(), pairs)
+    return RankedModes(**{name: empty() for name in _OF_MODES}, overlap=pairs)
 
 
 def run_modes(inputs: RunInputs) -> RankedModes:
@@ -118,7 +124,7 @@ def run_modes(inputs: RunInputs) -> RankedModes:
     for row, modes in enumerate(found):
         if modes is None:
             continue
-        for name in ("phase_speed", "error", "coastal_value", "bottom_friction", "trapping_scale"):
+        for name in _OF_MODES:
             values = getattr(modes, name)
             getattr(result, name)[row, modes.mode] = values
         following = found[row + 1] if row + 1 < len(found) else None

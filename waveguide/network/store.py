@@ -120,6 +120,7 @@ def load_network(path: Path) -> tuple[Network, Atlas]:
             values[field.name] = raw.astype(np.int64)
         else:
             values[field.name] = raw.astype(float)
+    flat = np.zeros(read["phase_speed"].shape)
     atlas = Atlas(
         mode=read["mode"].astype(np.int64),
         depth=read["depth"].astype(float),
@@ -127,5 +128,7 @@ def load_network(path: Path) -> tuple[Network, Atlas]:
         coastal_value=read["coastal_value"].astype(float),
         gap_share=read["gap_share"].astype(float),
         decay_per_drag=read["decay_per_drag"].astype(float),
+        dispersion=flat,
+        barotropic_tail=flat,
     )
     return Network(**values), atlas

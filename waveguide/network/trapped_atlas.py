@@ -83,7 +83,7 @@ class TrappedAtlas(Atlas):
         """The same without the modes below `first`."""
         rows = np.flatnonzero(self.mode >= first)
         names = ("mode", "phase_speed", "coastal_value", "gap_share", "error", "decay_per_drag",
-                 "trapping_scale", "rank")
+                 "dispersion", "barotropic_tail", "trapping_scale", "rank")
         return replace(self, **{name: getattr(self, name)[rows] for name in names})
 
 
@@ -276,6 +276,8 @@ def _assembled(
         coastal_value=blend(np.maximum(ranked.coastal_value[pick], LEAST_VALUE), fallback.value),
         gap_share=gaps, error=error,
         decay_per_drag=blend(np.maximum(ranked.bottom_friction[pick], 0.0), fallback.decay),
+        dispersion=blend(ranked.dispersion[pick], np.zeros_like(fallback.speed)),
+        barotropic_tail=blend(ranked.barotropic_tail[pick], np.zeros_like(fallback.speed)),
         trapping_scale=blend(scale, fallback.scale),
         rank=rank, overlap=step_overlaps(network, ranked.overlap, followed), flags=flags,
     )

@@ -36,6 +36,8 @@ _NODE_VARIABLES = {
     "error": ("1", "relative error of the phase speed"),
     "coastal_value": ("m-0.5", "modal pressure at the coast F(0,0), which is the wind coupling"),
     "decay_per_drag": ("s m-2", "decay per metre and unit linear bottom drag"),
+    "dispersion": ("s2", "relative growth of the wavenumber per squared angular frequency"),
+    "barotropic_tail": ("1", "squared amplitude of the barotropic part offshore of the section"),
     "trapping_scale": ("m", "offshore trapping scale"),
 }
 
@@ -134,7 +136,8 @@ def load_atlas(path: Path) -> tuple[TrappedAtlas, dict[str, str]]:
         attributes = {name: str(file.getncattr(name)) for name in file.ncattrs()}
     overlap = np.where(read["overlap"] == -128, np.nan, read["overlap"] * _OVERLAP_STEP)
     values: dict[str, Any] = {
-        name: read[name].astype(float) for name in (*_NODE_VARIABLES, "depth", "gap_share")
+        name: read.get(name, 0.0 * read["phase_speed"]).astype(float)
+        for name in (*_NODE_VARIABLES, "depth", "gap_share")
     }
     values |= {name: read[name].astype(np.int64) for name in ("mode", "rank", "flags")}
     return TrappedAtlas(**values, overlap=overlap), attributes

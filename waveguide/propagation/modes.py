@@ -39,6 +39,10 @@ class ModeAtNodes:
         Decay by bottom friction per metre and unit linear drag (s/m²).
     detuning : ndarray, shape (n,)
         Difference of slowness 1/c to that of the neighbouring mode (s/m); infinite without one.
+    depth : ndarray, shape (n,)
+        Of the adjoining deep water (m).
+    dispersion, barotropic_tail : ndarray, shape (n,)
+        d (s²) and b of :func:`waveguide.modes.modeset.low_frequency_wavenumber`.
     """
 
     number: int
@@ -47,6 +51,9 @@ class ModeAtNodes:
     gap_share: Array
     decay_per_drag: Array
     detuning: Array
+    depth: Array
+    dispersion: Array
+    barotropic_tail: Array
 
     @property
     def matching(self) -> float:
@@ -134,7 +141,8 @@ def atlas_mode(atlas: Atlas, mode: int) -> ModeAtNodes:
     row = atlas.row(mode)
     return ModeAtNodes(
         mode, atlas.phase_speed[row], atlas.coastal_value[row], atlas.gap_share[row],
-        atlas.decay_per_drag[row], _detuning(atlas, mode),
+        atlas.decay_per_drag[row], _detuning(atlas, mode), atlas.depth, atlas.dispersion[row],
+        atlas.barotropic_tail[row],
     )
 
 
@@ -164,9 +172,10 @@ def uniform_mode(network: Network, mode: int, speed: float) -> ModeAtNodes:
     Returns
     -------
     ModeAtNodes
-        With the same coastal value everywhere, no sills and no bottom friction.
+        With the same coastal value everywhere, no sills, no bottom friction and no dispersion.
     """
     return ModeAtNodes(
         mode, np.full(network.size, speed), np.ones(network.size),
         np.ones(network.gap_width.size), np.zeros(network.size), np.full(network.size, np.inf),
+        np.full(network.size, np.inf), np.zeros(network.size), np.zeros(network.size),
     )

@@ -16,6 +16,8 @@ is a delay and the nepers n ≥ 0 tell by their kind (`FATES`) where the energy 
 - gaps: the complex factors of :mod:`waveguide.propagation.gaps`. The lag that they hold for the
   length of the passage is taken out, since the steps of the network have it: so the phase at
   high frequency is ω times the travel time of the front, and the modulus is untouched;
+- coast beyond the matching distance: what the wavenumber of a section grows by at finite ω
+  (:func:`waveguide.modes.modeset.low_frequency_wavenumber`) times the length;
 - bottom friction exp(−γs), with γ for example `flat_bottom_friction`;
 - scattering where the section changes: the overlap of the modes on both sides.
 
@@ -31,6 +33,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from waveguide.constants import coriolis
+from waveguide.modes.modeset import low_frequency_wavenumber
 from waveguide.network.graph import Network, StepKind
 from waveguide.propagation.dispersion import segment_exponent, segment_growth
 from waveguide.propagation.gaps import facing_coast_share, passage
@@ -57,6 +61,9 @@ BOTTOM_DRAG = 5e-4
 
 MEMORY: the value of Chapman (1987), J. Geophys. Res. 92, 1798, off California.
 """
+
+FASTEST_DISPERSION = 0.3
+"""ω/|f| up to which dispersion is followed; above it stays in proportion."""
 
 _MOST_NEPERS = 300.0  # stands for "nothing is left": exp(−2·300) is above the smallest double
 
@@ -221,12 +228,35 @@ def _coast(
     growth = segment_growth(start, end)
     exponent = segment_exponent(omega, *segment, conditions.damping, flow[:, None])
     lag, loss = exponent.imag, np.maximum(growth - exponent.real, 0.0)
+    lag = lag + _dispersive_lag(network, mode, steps, omega, c)
     rossby = loss
     if conditions.damping > 0.0:
         undamped = segment_exponent(omega, *segment, 0.0, flow[:, None])
         rossby = np.minimum(np.maximum(growth - undamped.real, 0.0), loss)
     lag = _near_equator(network, mode, steps, omega, table, c + flow, lag)
     return lag, rossby, loss - rossby
+
+
+def _dispersive_lag(
+    network: Network, mode: ModeAtNodes, steps: Index, omega: Array, speed: Array
+) -> Array:
+    """Lag beyond that of long waves, to first order in ω²/f²."""
+    ends = network.tail[steps], network.head[steps]
+    spread, tail, depth = (
+        0.5 * (values[ends[0]] + values[ends[1]])[:, None]
+        for values in (mode.dispersion, mode.barotropic_tail, mode.depth)
+    )
+    lag = np.zeros((steps.size, omega.size))
+    if not (spread.any() or tail.any()):
+        return lag
+    f = np.abs(coriolis(0.5 * (network.lat[ends[0]] + network.lat[ends[1]])))[:, None]
+    known = np.isfinite(spread * tail * depth * f)[:, 0] & (f[:, 0] > 0.0)
+    c, f = speed[known, None], f[known]
+    slow = np.minimum(omega, FASTEST_DISPERSION * f)
+    wavenumber = low_frequency_wavenumber(slow, c, f, depth[known], spread[known], tail[known])
+    growth = np.divide(wavenumber * c, slow, out=np.ones_like(slow), where=slow > 0.0) - 1.0
+    lag[known] = growth * omega * (network.length[steps][known, None] / c)
+    return lag
 
 
 def _near_equator(
