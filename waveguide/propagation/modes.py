@@ -65,10 +65,10 @@ def friction_of_steps(network: Network, mode: ModeAtNodes, drag: float) -> Array
     """Decay by bottom friction along every step (1/m), shape (m,).
 
     To first order, from the currents of the mode without friction (Brink & Allen), at every
-    frequency. Fifteen modes coupled by the whole friction of a section keep to it within a factor
-    of two down to 2 nepers, at 10 days and at a month (tests/oracle/test_oracle_friction.py):
-    first sea level at the coast falls faster, by a quarter within 0.05 nepers, as water of a few
-    metres comes to rest; later modes that last longer hold it up.
+    frequency. Twelve modes coupled by the whole friction of sections keep to it within a factor of
+    two in four cases of five, at 5 to 40 days alike (tests/oracle/test_oracle_coupled.py): first
+    sea level at the coast falls faster, by a quarter within 0.05 nepers, as water of a few metres
+    comes to rest; after some nepers modes that last longer hold it up.
 
     Parameters
     ----------
