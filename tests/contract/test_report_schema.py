@@ -8,8 +8,10 @@ import numpy as np
 import pytest
 
 from waveguide.report.attributes import arrivals_attributes
+from waveguide.report.document import document
+from waveguide.report.table import table
 from waveguide.scenario import read_scenario, shipped_scenarios
-from waveguide.schema import ARRIVALS, ARRIVALS_ATTRIBUTES, SchemaError, assemble, check
+from waveguide.schema import ARRIVALS, ARRIVALS_ATTRIBUTES, SchemaError, arranged, assemble, check
 
 
 def test_the_arrivals_made_by_hand_pass(arrivals):
@@ -58,6 +60,19 @@ def test_a_difference_is_refused(arrivals, change, message):
 def test_values_must_match_the_table():
     with pytest.raises(SchemaError, match="not declared: depth"):
         assemble({"depth": [1.0]}, {})
+
+
+def test_arrays_say_what_their_dataset_says(arrivals):
+    values = {name: arrivals[name].values for name in ARRIVALS}
+    arrays = arranged(values, arrivals.attrs)
+    check(arrays)
+    assert arrays.sizes == dict(arrivals.sizes)
+    assert arrays.dataset().identical(arrivals)
+    assert table(arrays, budget=True) == table(arrivals, budget=True)
+    assert document(arrays) == document(arrivals)
+    values["route_target"] = values["route_target"] + 3
+    with pytest.raises(SchemaError, match="route_target points outside"):
+        check(arranged(values, arrivals.attrs))
 
 
 @pytest.mark.parametrize("name", shipped_scenarios("event"))

@@ -168,6 +168,21 @@ def test_help_loads_no_heavy_library():
     assert done.stdout.splitlines()[-1] == "[]"
 
 
+def test_a_table_loads_no_library_it_can_do_without():
+    """They take longer to import than most answers to compute."""
+    code = (
+        "import sys; sys.argv = ['waveguide', 'arrivals', 'patagonia_barotropic']\n"
+        "from waveguide.cli import main\n"
+        "try: main()\n"
+        "except SystemExit: pass\n"
+        "print([m for m in ('xarray', 'pandas', 'matplotlib', 'shapely', 'networkx', 'gsw',"
+        " 'scipy.special', 'scipy.spatial', 'dask') if m in sys.modules])"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert "Cautions" in done.stdout
+    assert done.stdout.splitlines()[-1] == "[]"
+
+
 def test_a_name_the_terminal_cannot_show_is_escaped(run, arrivals, monkeypatch):
     import io
 
