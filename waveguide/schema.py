@@ -269,6 +269,13 @@ ARRIVALS_ATTRIBUTES = (
 )
 """Global attributes of the arrivals; `source` is the software, in the sense of CF."""
 
+VALIDITY = (
+    "frequency_over_f", "coast_radius_radii", "basin_width_radii", "speed_change",
+    "critical_share", "narrowest_strait_km", "northernmost_latitude", "southernmost_latitude",
+    "upper_ocean_share",
+)  # fmt: skip
+"""Variables that say how far an answer is from what the theory assumes."""
+
 REMARKS = ("caution", *(name for name, v in ARRIVALS.items() if v.dims == _REMARK))
 """Variables of the cautions, which a plan repeats."""
 

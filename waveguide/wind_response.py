@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from datetime import datetime
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -29,9 +29,11 @@ from waveguide.ocean.packaged import WIND_RECORD, packaged_file
 from waveguide.ocean.stratification import packaged_climatology
 from waveguide.pipeline import check_places, damping_rate
 from waveguide.propagation.adaptation import adapted
+from waveguide.propagation.cautions import COVERED_WIND, response_cautions
 from waveguide.propagation.losses import step_physics
 from waveguide.propagation.modes import ModeAtNodes, atlas_mode, friction_of_steps
 from waveguide.propagation.step_response import Conditions
+from waveguide.propagation.validity import Survey, Validity
 from waveguide.report.response_attributes import response_attributes
 from waveguide.scenario import WindPatch, WindScenario, WindStorm
 
@@ -101,10 +103,13 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
     networks: dict[int, Network] = {}
     answers: dict[int, ModeResponse] = {}
     ratios: dict[tuple[int, int], MooringRatios] = {}
+    validity: dict[tuple[int, int], Validity] = {}
     for number in question.waves.modes:
         say(f"response of mode {number}")
-        networks[number], answers[number], at_moorings = _of_mode(question, number, omega, forcer)
-        ratios.update({(i, number): ratio for i, ratio in at_moorings.items()})
+        found = _of_mode(question, number, omega, forcer)
+        networks[number], answers[number] = found.network, found.response
+        ratios.update({(i, number): ratio for i, ratio in found.ratios.items()})
+        validity.update({(i, number): stands for i, stands in found.validity.items()})
     _require_cover(question, answers)
     _require_an_answer(question, answers)
     forcing = next(iter(answers.values())).forcing
@@ -116,19 +121,26 @@ def wind_response(question: WindScenario, progress: Progress | None = None) -> R
         target=[target.name for target in question.targets],
         lon=positions[:, 0], lat=positions[:, 1], time=forcing.time, networks=networks,
         answers=answers, ratios=ratios,
+        validity=validity,
         cautions={
-            (i, number): _cautions(answer)
-            for number, found in answers.items() for i, answer in enumerate(found.targets)
+            (i, number): response_cautions(stands, answers[number].targets[i].covered)
+            for (i, number), stands in validity.items()
         },
-        notes=notes, attributes=response_attributes(question, forcing, used),
+        notes=notes + _calm_parts(answers), attributes=response_attributes(question, forcing, used),
         calm_before=question.wind.invented,
     )  # fmt: skip
 
 
-def _of_mode(
-    question: WindScenario, number: int, omega: float, forcer: Forcer
-) -> tuple[Network, ModeResponse, dict[int, MooringRatios]]:
-    """Responses of one mode, and what moorings on the equator see of it, by target."""
+class _OfMode(NamedTuple):
+    """Responses of one mode, and by target what moorings on the equator see and how it stands."""
+
+    network: Network
+    response: ModeResponse
+    ratios: dict[int, MooringRatios]
+    validity: dict[int, Validity]
+
+
+def _of_mode(question: WindScenario, number: int, omega: float, forcer: Forcer) -> _OfMode:
     network, mode, depth = _mode(question, number, omega)
     damping, drag = damping_rate(question.waves.damping_days, mode), question.waves.drag_m_s
     physics = step_physics(network, mode, omega, damping, drag)
@@ -138,12 +150,16 @@ def _of_mode(
         network, mode, physics, Conditions(friction, damping), packaged_bathymetry(), places,
         omega, forcer,
     )
+    responding = {i: a for i, a in enumerate(found.targets) if a.status == RESPONDS}
     ratios = {
         i: mooring_ratios(packaged_climatology(), *places[i], float(depth[answer.node]), number)
-        for i, answer in enumerate(found.targets)
-        if number > 0 and answer.status == RESPONDS and network.equatorial[answer.node]
+        for i, answer in responding.items() if number > 0 and network.equatorial[answer.node]
     }
-    return network, found, ratios
+    annual_mean = None if question.ocean.climatology else packaged_climatology()
+    survey = Survey(network, mode, omega, packaged_bathymetry(), annual_mean)
+    return _OfMode(
+        network, found, ratios, {i: survey.of(answer.steps) for i, answer in responding.items()}
+    )
 
 
 def _mode(
@@ -335,14 +351,10 @@ def _require_an_answer(question: WindScenario, answers: dict[int, ModeResponse])
     )])
 
 
-def _cautions(answer: TargetResponse) -> list[str]:
-    """Where the theory or the wind falls short for one target and mode."""
-    if answer.status != RESPONDS:
-        return []
-    found = []
-    if answer.covered < 0.99:
-        found.append(
-            f"the wind covers {100 * answer.covered:.0f} % of what lies upstream; the rest, such "
-            f"as {_bare(answer, 1)}, is taken as calm"
-        )
-    return found
+def _calm_parts(answers: dict[int, ModeResponse]) -> list[str]:
+    """Where wind that counts is not known, each part once."""
+    parts = [
+        _bare(answer, 1) for found in answers.values() for answer in found.targets
+        if answer.status == RESPONDS and answer.covered < COVERED_WIND
+    ]
+    return [f"no wind is known along {part}" for part in dict.fromkeys(parts) if part]

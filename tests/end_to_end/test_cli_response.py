@@ -11,7 +11,10 @@ import numpy as np
 import pytest
 import xarray as xr
 
+import waveguide
 from waveguide import cli
+from waveguide.scenario import Scenario
+from waveguide.schema import VALIDITY
 
 BURST = """
 title = "Burst"
@@ -95,6 +98,31 @@ def test_json_tells_when_how_much_and_which_wind(run, scenario):
     assert len(answer["time"]) == len(coast["sea_level"])
     assert len(answer["sums"][0]["dynamic_height"]) == len(answer["time"])
     assert all(value is None for value in answer["sums"][1]["dynamic_height"])
+
+
+def test_every_response_says_how_its_way_stands_to_the_theory(run, scenario):
+    _, out, _ = run("response", scenario, "--json")
+    rows = {row["target"]: row for row in json.loads(out)["responses"]}
+    callao, off = rows["=Callao"], rows["Mid-gyre"]
+    for name in VALIDITY:
+        applies = name != "narrowest_strait_km"  # there is none on this way
+        assert isinstance(callao[name], float) == applies, name
+        assert off[name] is None
+    assert off["cautions"] == []
+    # The way comes along the equator and turns to Callao, as that of a free wave does.
+    told = {caution["kind"]: caution["number"] for caution in callao["cautions"]}
+    assert told["below the critical frequency"] == pytest.approx(100.0 * callao["critical_share"])
+    free = waveguide.arrivals(Scenario.model_validate({
+        "title": "free", "waves": {"modes": [1], "period_days": 40},
+        "event": {"position": [-150.0, 0.0], "start": "2031-03-05T00:00:00Z", "duration_days": 20},
+        "targets": [{"name": "Callao", "position": [-77.15, -12.05]}],
+    }))  # fmt: skip
+    expected = free["critical_share"].item()
+    assert callao["critical_share"] == pytest.approx(expected, abs=0.05)  # a step more or less
+    assert -12.5 < callao["southernmost_latitude"] < -11.5
+    assert "the coastal way is below the critical frequency" in callao["caution"]
+    _, text, _ = run("response", scenario)
+    assert "Cautions, the most serious first" in text
 
 
 def test_out_writes_files_that_hold_together(run, scenario, tmp_path):

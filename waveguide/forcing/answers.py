@@ -17,6 +17,7 @@ from waveguide.forcing.response import (
     contributions,
     covered_by_group,
     covered_share,
+    main_way,
     route_response,
     spin_up,
     windy_rows,
@@ -67,6 +68,8 @@ class TargetResponse:
         Share of each that the wind record covers.
     way : RouteResponse or None
         Along the main way.
+    steps : ndarray of int
+        Of the main way as far as 95 % of the influence reaches, in the order of travel.
     spin_up : float
         Delay of the long wave within which 95 % of the influence lies (s).
     covered : float
@@ -82,6 +85,7 @@ class TargetResponse:
     by_stretch: Array
     stretch_covered: Array
     way: RouteResponse | None
+    steps: Index
     spin_up: float
     covered: float
 
@@ -174,12 +178,14 @@ def _answer(
     parts = period.series(
         contributions(transfer, found, forcing, period, of_row, len(stretches))
     )
+    way, memory = main_way(found), spin_up(found)
     return TargetResponse(
         status=RESPONDS, node=place.node, factor=place.factor, distance=distance,
         sea_level=parts.sum(axis=0), stretches=stretches, by_stretch=parts,
         stretch_covered=covered_by_group(found, forcing, of_row, len(stretches)),
         way=route_response(network, transfer, found, forcing, period, told.head_delay),
-        spin_up=spin_up(found), covered=covered_share(found, forcing),
+        steps=found.step[way[found.delay[way] <= memory]][::-1],
+        spin_up=memory, covered=covered_share(found, forcing),
     )  # fmt: skip
 
 
@@ -190,5 +196,6 @@ def _silent(tied: Ties, found: Influence | None, count: int) -> TargetResponse:
         status = OFF_GUIDE if np.isfinite(tied.nearest) else NOT_CARRIED
     return TargetResponse(
         status, -1, float("nan"), tied.nearest, np.full(count, np.nan), [],
-        np.zeros((0, count)), np.zeros(0), None, float("nan"), float("nan"),
+        np.zeros((0, count)), np.zeros(0), None, np.zeros(0, np.int64), float("nan"),
+        float("nan"),
     )

@@ -11,6 +11,8 @@ from waveguide.forcing.answers import RESPONDS, ModeResponse
 from waveguide.forcing.structure import MooringRatios
 from waveguide.forcing.time_axis import Times
 from waveguide.network.graph import Network
+from waveguide.propagation.cautions import Caution
+from waveguide.propagation.validity import Validity
 
 Array = NDArray[np.float64]
 
@@ -32,7 +34,9 @@ class ResponseResult:
         By mode.
     ratios : dict of (int, int) to MooringRatios
         By target and mode, for targets on the equator.
-    cautions : dict of (int, int) to list of str
+    validity : dict of (int, int) to Validity
+        By target and mode, of the main way of those that respond.
+    cautions : dict of (int, int) to list of Caution
         By target and mode.
     notes : list of str
         On the wind.
@@ -49,7 +53,8 @@ class ResponseResult:
     networks: dict[int, Network]
     answers: dict[int, ModeResponse]
     ratios: dict[tuple[int, int], MooringRatios]
-    cautions: dict[tuple[int, int], list[str]]
+    validity: dict[tuple[int, int], Validity]
+    cautions: dict[tuple[int, int], list[Caution]]
     notes: list[str]
     attributes: dict[str, str | float]
     calm_before: bool

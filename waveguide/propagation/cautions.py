@@ -38,6 +38,9 @@ FAINT = 0.01
 NORTHERN_ICE, SOUTHERN_ICE = 65.0, -60.0
 """Latitudes poleward of which sea ice is common in winter (MEMORY)."""
 
+COVERED_WIND = 0.99
+"""Share of the influence that a wind record covers below which it is told."""
+
 EARLIEST_RISE = 1.0
 """Days by which half-height may precede the front without a word: T_e or so (see `waveform`)."""
 
@@ -68,6 +71,8 @@ KINDS = (
     Kind("early rise", "days", ".1f",
          "half-height comes {} days before the front: where a coast slants away from a junction "
          "the wave takes a short cut to or from the equator, the front is told along the guide"),
+    Kind("uncovered wind", "%", ".0f",
+         "the wind record covers {} % of what lies upstream: the rest is taken as calm"),
     Kind("fast wave", "1", ".2f",
          "ω/|f| reaches {} on the route: the wave is not slow beside the earth's rotation"),
     Kind("sea ice in the north", "°N", ".0f",
@@ -142,8 +147,40 @@ def route_cautions(
     list of Caution
         The most serious first.
     """
-    found = {
+    return _raised({
         "faint signal": (route.amplitude < FAINT, route.amplitude),
+        **_assumptions(validity),
+        **_tied("source", source, route.start),
+        **_tied("target", target, route.end),
+    })
+
+
+def response_cautions(validity: Validity, covered: float) -> list[Caution]:
+    """Cautions that belong to what a wind drives at one target in one mode.
+
+    Parameters
+    ----------
+    validity : Validity
+        Of the way upstream along which wind counts most.
+    covered : float
+        Share of the influence that the wind record covers.
+
+    Returns
+    -------
+    list of Caution
+        The most serious first.
+    """
+    return _raised({
+        "uncovered wind": (covered < COVERED_WIND, 100.0 * covered), **_assumptions(validity),
+    })  # fmt: skip
+
+
+Found = dict[str, tuple[bool, float]]
+"""Whether a number is beyond its limit, and the number, by kind of caution."""
+
+
+def _assumptions(validity: Validity) -> Found:
+    return {
         "fast wave": (
             validity.frequency_over_f > FASTEST_SHARE_OF_F, validity.frequency_over_f),
         "sea ice in the north": (validity.northernmost > NORTHERN_ICE, validity.northernmost),
@@ -157,17 +194,19 @@ def route_cautions(
             validity.speed_change > LARGEST_CHANGE, 100.0 * validity.speed_change),
         "curved coast": (validity.coast_radius < SHARPEST_COAST, validity.coast_radius),
         "season": (validity.upper_share > UPPER_SHARE, 100.0 * validity.upper_share),
-        **_tied("source", source, route.start),
-        **_tied("target", target, route.end),
     }  # fmt: skip
-    raised = {name: float(number) for name, (beyond, number) in found.items() if beyond}
-    return [Caution(kind.name, raised[kind.name]) for kind in KINDS if kind.name in raised]
 
 
-def _tied(what: str, ties: Ties, at: int) -> dict[str, tuple[bool, float]]:
+def _tied(what: str, ties: Ties, at: int) -> Found:
     """How far an end of a route lies off the guide, or on the shelf inshore of it."""
     where = f"{what} on the shelf" if ties.inshore[at] else f"{what} off the guide"
     return {where: (bool(ties.radii[at] > FARTHEST_TIE), float(ties.radii[at]))}
+
+
+def _raised(found: Found) -> list[Caution]:
+    """The numbers beyond their limits, the most serious first."""
+    raised = {name: float(number) for name, (beyond, number) in found.items() if beyond}
+    return [Caution(kind.name, raised[kind.name]) for kind in KINDS if kind.name in raised]
 
 
 def rise_cautions(front: float, half_height: float) -> list[Caution]:

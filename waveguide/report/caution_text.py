@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -16,6 +17,9 @@ if TYPE_CHECKING:
 _MOST_TARGETS = 8
 """Targets that are named; of longer lists the rest is counted."""
 
+_ANSWERED = ("reached", "responds")
+"""Status of arrivals and of responses that there are."""
+
 _MOST_SPARED = 2
 """Answers that a caution does not concern, so few that they are named instead of the others."""
 
@@ -24,13 +28,15 @@ _HEADING = (
 )
 
 
-def cautions_text(dataset: Stored) -> str:
+def cautions_text(dataset: Stored, notes: Sequence[str] = ()) -> str:
     """Each kind of caution once, with the range of its numbers and the answers it concerns.
 
     Parameters
     ----------
     dataset : xarray.Dataset or Arrays
-        Arrivals that pass :func:`waveguide.schema.check`.
+        Arrivals that pass :func:`waveguide.schema.check`, a plan or a response.
+    notes : sequence of str
+        What else is to be told, before the caution that belongs to every answer.
 
     Returns
     -------
@@ -39,8 +45,8 @@ def cautions_text(dataset: Stored) -> str:
     """
     kinds = dataset["remark_kind"].values
     told = [_of_kind(dataset, kind) for kind in KINDS if (kinds == kind.name).any()]
-    general = filled(f"  {dataset.attrs['caution']}", 4)
-    return "\n".join([_HEADING if told else "Cautions", *told, general])
+    general = [filled(f"  {text}", 4) for text in (*notes, dataset.attrs["caution"])]
+    return "\n".join([_HEADING if told else "Cautions", *told, *general])
 
 
 def _of_kind(dataset: Stored, kind: Kind) -> str:
@@ -65,7 +71,8 @@ def _span(kind: Kind, numbers: np.ndarray[tuple[int], np.dtype[np.float64]]) -> 
 def _concerned(dataset: Stored, rows: list[tuple[int, int]]) -> str:
     """Targets with their modes, in the shortest words that are exact."""
     status = dataset["status"].values
-    reached = [(int(t), int(m)) for t, m in zip(*np.nonzero(status == "reached"), strict=True)]
+    answered = np.nonzero(np.isin(status, _ANSWERED))
+    reached = [(int(t), int(m)) for t, m in zip(*answered, strict=True)]
     if rows == reached:
         return "all answers"
     modes = sorted({m for _, m in rows})

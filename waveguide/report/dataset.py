@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import fields
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -11,15 +10,15 @@ import numpy as np
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.propagation.answers import ModeAnswer
 from waveguide.propagation.arrivals import REACHED, Arrival
-from waveguide.propagation.cautions import KIND, Caution, by_seriousness, rise_cautions
+from waveguide.propagation.cautions import Caution, by_seriousness, rise_cautions
 from waveguide.propagation.frequency_limits import Criticality
 from waveguide.propagation.legs import Leg
 from waveguide.propagation.routes import Route
 from waveguide.propagation.step_response import FATES
 from waveguide.propagation.transfer import LegBudget
-from waveguide.propagation.validity import Validity
 from waveguide.propagation.waveform import ArrivalTimes, mode_shares
 from waveguide.report.instruments import instrument_columns
+from waveguide.report.remarks import caution_words, remark_rows, validity_values
 from waveguide.report.sums import farthest
 from waveguide.schema import ARRIVALS, arranged, check
 from waveguide.stored import Arrays
@@ -65,8 +64,9 @@ def arrivals_arrays(
             arrival = answer.arrivals[target]
             row = _row(scenario, arrival) | _wave_row(answer, target, scenario.event.amplitude_m)
             cautions = _cautions(answer, target)
-            row["caution"] = "; ".join(caution.text for caution in cautions)
-            _add_remarks(values, target, column, cautions)
+            row["caution"] = caution_words(cautions)
+            for remark in remark_rows(target, column, cautions):
+                _append(values, remark)
             for name, value in row.items():
                 rows[name].append(value)
             for rank, route in enumerate(arrival.routes):
@@ -107,7 +107,7 @@ def _row(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
         "target_distance_km": arrival.target.nearest / 1e3,
         "target_distance_radii": arrival.target.nearest_radii,
         "target_factor": nan,
-        **_validity(arrival),
+        **validity_values(arrival.validity),
     }
     for name in ("source", "target"):
         for unit in ("km", "radii"):
@@ -116,22 +116,6 @@ def _row(scenario: Scenario, arrival: Arrival) -> dict[str, Any]:
     if arrival.status == REACHED:
         row.update(_reached(scenario, arrival))
     return row
-
-
-def _validity(arrival: Arrival) -> dict[str, float]:
-    """How far the headline route is from what the theory assumes."""
-    found = arrival.validity or Validity(*([float("nan")] * len(fields(Validity))))
-    return {
-        "frequency_over_f": found.frequency_over_f,
-        "coast_radius_radii": found.coast_radius,
-        "basin_width_radii": found.basin_width,
-        "speed_change": found.speed_change,
-        "critical_share": found.critical_share,
-        "narrowest_strait_km": found.narrowest_strait / 1e3,
-        "northernmost_latitude": found.northernmost,
-        "southernmost_latitude": found.southernmost,
-        "upper_ocean_share": found.upper_share,
-    }
 
 
 def _wave_row(answer: ModeAnswer, target: int, height: float | None) -> dict[str, float]:
@@ -156,20 +140,6 @@ def _cautions(answer: ModeAnswer, target: int) -> list[Caution]:
         return arrival.cautions
     rise = rise_cautions(arrival.routes[0].time, answer.times[target].half_height)
     return by_seriousness(arrival.cautions + rise)
-
-
-def _add_remarks(
-    values: dict[str, Any], target: int, column: int, cautions: list[Caution]
-) -> None:
-    """Append the cautions of one target and mode."""
-    for caution in cautions:
-        _append(values, {
-            "remark_target": target,
-            "remark_mode": column,
-            "remark_kind": caution.kind,
-            "remark_number": caution.number,
-            "remark_unit": KIND[caution.kind].unit,
-        })
 
 
 def _waveforms(answers: list[ModeAnswer], start: np.datetime64) -> dict[str, Any]:

@@ -10,7 +10,8 @@ from numpy.typing import NDArray
 
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.forcing.answers import RESPONDS, TargetResponse
-from waveguide.schema import Variable, assemble
+from waveguide.report.remarks import caution_words, remark_rows, validity_values
+from waveguide.schema import ARRIVALS, REMARKS, VALIDITY, Variable, assemble
 
 if TYPE_CHECKING:
     import xarray as xr
@@ -68,7 +69,7 @@ RESPONSE: dict[str, Variable] = {
     "wind_covered": _number(_ROW, "share of the influence that the wind record covers", "1"),
     "target_distance_km": _number(_ROW, "distance from the target to the guide", "km"),
     "target_factor": _number(_ROW, "amplitude factor for that distance", "1"),
-    "caution": Variable(_ROW, "text", "cautions, separated by '; '"),
+    **{name: ARRIVALS[name] for name in (*VALIDITY, *REMARKS)},
     "stretch_target": Variable(_PART, "integer", "index of the target"),
     "stretch_mode": Variable(_PART, "integer", "index of the mode along mode"),
     "stretch_kind": Variable(_PART, "text", "coast, equator or elsewhere"),
@@ -141,9 +142,14 @@ def response_dataset(result: ResponseResult) -> xr.Dataset:
         part for i in targets for k, mode in enumerate(modes)
         for part in _stretches(result, i, k, mode, peaks[i])
     ]
+    remarks = [
+        remark for i in targets for k, mode in enumerate(modes)
+        for remark in remark_rows(i, k, result.cautions.get((i, mode), ()))
+    ]
     for name, variable in RESPONSE.items():
-        if variable.dims[0] == "stretch":
-            values[name] = [part[name] for part in parts]
+        if variable.dims[0] in ("stretch", "remark"):
+            listed = parts if variable.dims[0] == "stretch" else remarks
+            values[name] = [one[name] for one in listed]
     return assemble(values, _attributes(result), RESPONSE)
 
 
@@ -183,7 +189,8 @@ def _row(result: ResponseResult, target: int, mode: int, peaks: _Peaks) -> dict[
         "peak_date": np.datetime64("NaT", "ns"), "spin_up_days": answer.spin_up / SECONDS_PER_DAY,
         "wind_covered": answer.covered, "target_factor": answer.factor,
         "target_distance_km": answer.distance / 1e3 if np.isfinite(answer.distance) else nan,
-        "caution": "; ".join(result.cautions[target, mode]),
+        "caution": caution_words(result.cautions.get((target, mode), ())),
+        **validity_values(result.validity.get((target, mode))),
     }  # fmt: skip
     if answer.status == RESPONDS:
         at = peaks.first + int(np.argmax(np.abs(level[peaks.first :])))

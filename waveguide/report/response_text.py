@@ -7,7 +7,8 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from waveguide.report.document import plain_value
+from waveguide.report.caution_text import cautions_text
+from waveguide.report.document import cautions_of, plain_value
 from waveguide.report.response_dataset import RESPONSE
 from waveguide.report.text import columns, pad, plain
 
@@ -142,20 +143,13 @@ def place(lon: float, lat: float) -> str:
 
 
 def _cautions(dataset: xr.Dataset) -> str:
-    """Each caution once, with the rows it belongs to; notes on the wind; what is left out."""
-    found: dict[str, list[str]] = {}
-    for t, name in enumerate(dataset["target"].values):
-        for m, mode in enumerate(dataset["mode"].values):
-            for caution in filter(None, str(dataset["caution"].values[t, m]).split("; ")):
-                found.setdefault(plain(caution, 300), []).append(f"{plain(name, 28)} mode {mode}")
-    lines = [_filled(f"  {caution} ({', '.join(where)})", 4) for caution, where in found.items()]
+    """Each kind of caution once; notes on the wind; what is left out."""
     notes = [plain(note, 300) for note in filter(None, dataset.attrs["notes"].split("; "))]
     left_out = (
         "only what the wind does along coasts and the equator is computed: no Rossby waves of the "
         "interior, no reflections at western boundaries, no inverse barometer"
     )
-    lines += [_filled(f"  {text}", 4) for text in (*notes, left_out, dataset.attrs["caution"])]
-    return "\n".join(["Cautions", *lines])
+    return cautions_text(dataset, [*notes, left_out])
 
 
 def _filled(text: str, indent: int) -> str:
@@ -200,6 +194,7 @@ def _response(dataset: xr.Dataset, target: int, mode: int) -> dict[str, Any]:
         "target": plain_value(dataset["target"].values[target]),
         "mode": int(dataset["mode"].values[mode]),
         **{name: plain_value(dataset[name].values[target, mode]) for name in names},
+        "cautions": cautions_of(dataset, target, mode),
         "sea_level": _listed(dataset["sea_level"].values[target, mode]),
         "stretches": [
             {name.removeprefix("stretch_"): plain_value(dataset[name].values[row])
