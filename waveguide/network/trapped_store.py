@@ -136,8 +136,7 @@ def load_atlas(path: Path) -> tuple[TrappedAtlas, dict[str, str]]:
         attributes = {name: str(file.getncattr(name)) for name in file.ncattrs()}
     overlap = np.where(read["overlap"] == -128, np.nan, read["overlap"] * _OVERLAP_STEP)
     values: dict[str, Any] = {
-        name: read.get(name, 0.0 * read["phase_speed"]).astype(float)
-        for name in (*_NODE_VARIABLES, "depth", "gap_share")
+        name: read[name].astype(float) for name in (*_NODE_VARIABLES, "depth", "gap_share")
     }
     values |= {name: read[name].astype(np.int64) for name in ("mode", "rank", "flags")}
     return TrappedAtlas(**values, overlap=overlap), attributes
