@@ -65,6 +65,10 @@ MEMORY: the value of Chapman (1987), J. Geophys. Res. 92, 1798, off California.
 FASTEST_DISPERSION = 0.3
 """ω/|f| up to which dispersion is followed; above it stays in proportion."""
 
+LARGEST_GROWTH = 0.5
+"""Relative growth of the wavenumber at which the first order is held: about there a shelf mode
+reaches its cut-off, which the first order does not have."""
+
 _MOST_NEPERS = 300.0  # stands for "nothing is left": exp(−2·300) is above the smallest double
 
 
@@ -255,6 +259,7 @@ def _dispersive_lag(
     slow = np.minimum(omega, FASTEST_DISPERSION * f)
     wavenumber = low_frequency_wavenumber(slow, c, f, depth[known], spread[known], tail[known])
     growth = np.divide(wavenumber * c, slow, out=np.ones_like(slow), where=slow > 0.0) - 1.0
+    growth = np.clip(growth, -LARGEST_GROWTH, LARGEST_GROWTH)
     lag[known] = growth * omega * (network.length[steps][known, None] / c)
     return lag
 
