@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import re
 import shlex
+import shutil
 import subprocess
 import sys
 from typing import get_type_hints
@@ -156,3 +157,26 @@ def test_the_script_of_a_shell_is_shown(shell, tmp_path):
     done = subprocess.run([sys.executable, "-c", code], env=environment, cwd=tmp_path,
                           capture_output=True, text=True, check=True)  # fmt: skip
     assert "_WAVEGUIDE_COMPLETE" in done.stdout
+
+
+@pytest.mark.skipif(shutil.which("bash") is None, reason="there is no bash")
+def test_a_bash_completes_after_installation(tmp_path):
+    """The installed script, in a bash of its own, with the command as a person has it."""
+    command = tmp_path / "bin" / "waveguide"
+    command.parent.mkdir()
+    command.write_text(f"#!{sys.executable}\nfrom waveguide.cli import main\nmain()\n", "utf-8")
+    command.chmod(0o755)
+    environment = os.environ | {
+        "HOME": str(tmp_path), "PATH": f"{command.parent}:{os.environ['PATH']}",
+        "_TYPER_COMPLETE_TEST_DISABLE_SHELL_DETECTION": "1",
+    }  # fmt: skip
+    code = """
+    waveguide --install-completion bash > /dev/null
+    . ~/.bashrc
+    COMP_WORDS=(waveguide arrivals peru); COMP_CWORD=2
+    _waveguide_completion waveguide
+    printf '%s\\n' "${COMPREPLY[@]}"
+    """
+    done = subprocess.run(["bash", "--norc", "-ec", code], env=environment, cwd=tmp_path,
+                          capture_output=True, text=True, check=True)  # fmt: skip
+    assert done.stdout.split() == ["peru_burst", "peru_gauges"]
