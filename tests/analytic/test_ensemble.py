@@ -245,7 +245,8 @@ def test_a_slower_coast_is_a_stretched_response(
 
 
 # Errors that vary along a way over an equator, a junction and a coast: a member takes their mean.
-# The spread of half-height there is 5 % of 80 days, 4 days; what the member misses is a tenth.
+# The spread of half-height there is 5 % of 80 days, 4 days; what the member misses is an eighth
+# (a tenth of the Kelvin wave alone; mixed waves do not stretch with the slowness).
 @pytest.mark.parametrize("seed", [1, 2, 3, 4])
 def test_errors_that_vary_along_the_way_count_by_their_mean(
     guides: SimpleNamespace, seed: int
@@ -264,8 +265,8 @@ def test_errors_that_vary_along_the_way_count_by_their_mean(
     base = recomputed(guides, network, np.ones(network.size), source, 120.0 * DAY)
     found = member_of(guides, network, exact[0] / base[0], 1.0)
     assert_allclose(found.front, exact[0], rtol=1e-9)
-    assert_allclose(found.half_height, exact[1], atol=0.4 * DAY)
-    assert_allclose(found.peak, exact[2], atol=0.4 * DAY)
+    assert_allclose(found.half_height, exact[1], atol=0.5 * DAY)
+    assert_allclose(found.peak, exact[2], atol=0.5 * DAY)
     assert_allclose(found.log_ratio, exact[3], atol=0.15)
 
 

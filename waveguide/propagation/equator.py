@@ -280,6 +280,25 @@ def eastern_wall(frequency: ArrayLike, distance: ArrayLike) -> ComplexArray:
     return wall_sum(_coefficients(frequency, 0, True), distance, 0)
 
 
+def eastern_wall_mixed(frequency: ArrayLike, distance: ArrayLike) -> ComplexArray:
+    """Sea level along an eastern wall under an incident mixed Rossby-gravity wave.
+
+    Parameters
+    ----------
+    frequency : array_like, shape S
+        ω̂, 0..3.
+    distance : array_like, shape T
+        ŷ, −8..8.
+
+    Returns
+    -------
+    ndarray of complex, shape S + T
+        For a wave with the energy flux of a Kelvin wave of amplitude 1; odd in ŷ, and of phase 0
+        where the wave reaches the wall.
+    """
+    return wall_sum(_coefficients(frequency, 1, True), distance, 1)
+
+
 def western_wall(frequency: ArrayLike, distance: ArrayLike) -> ComplexArray:
     """Sea level along a western wall per unit equatorial Kelvin amplitude sent out.
 

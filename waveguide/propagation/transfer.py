@@ -29,6 +29,8 @@ from scipy.sparse import csr_array
 
 from waveguide.network.graph import Network
 from waveguide.propagation.arrivals import Arrival
+from waveguide.propagation.junctions import JunctionTable
+from waveguide.propagation.mixed_waves import gains
 from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.near_equator import network_wall_table, potential
 from waveguide.propagation.step_response import (
@@ -232,14 +234,17 @@ def route_transfers(
     """
     if not paths:
         return []
-    lag, nepers, at_nodes = _leg_sums(network, mode, paths, omega, conditions)
+    lag, nepers, at_nodes, junctions = _leg_sums(network, mode, paths, omega, conditions)
     transfers, leg = [], 0
     for row, path in enumerate(paths):
         legs = slice(leg, leg + path.leg_ends.size)
         here = at_nodes[leg + row : legs.stop + row + 1]  # a path has one node more than legs
         leg = legs.stop
         time = _times(network, mode, path, conditions)
-        transfers.append(_assembled(path, omega, lag[legs], nepers[:, legs], here, time))
+        mixed = gains(
+            network, mode, junctions, omega, path.steps, path.leg_ends, conditions.damping
+        )
+        transfers.append(_assembled(path, omega, lag[legs], nepers[:, legs], here, time, mixed))
     return transfers
 
 
@@ -291,8 +296,8 @@ def _leg_nodes(network: Network, path: Path) -> Index:
 def _leg_sums(
     network: Network, mode: ModeAtNodes, paths: Sequence[Path], omega: Array,
     conditions: Conditions,
-) -> tuple[Array, Array, Array]:
-    """Lag and nepers of every leg of every path, and the potential at their `_leg_nodes`."""
+) -> tuple[Array, Array, Array, JunctionTable]:
+    """Lag and nepers of legs, the potential at their `_leg_nodes`, and the junctions."""
     nodes = np.concatenate([_leg_nodes(network, path) for path in paths])
     steps, column = np.unique(np.concatenate([path.steps for path in paths]), return_inverse=True)
     ends = np.concatenate([nodes, network.tail[steps], network.head[steps]])
@@ -308,7 +313,7 @@ def _leg_sums(
         lag[:, part] = legs @ response.lag
         for fate in range(len(FATES)):
             nepers[fate][:, part] = legs @ response.nepers[fate]
-    return lag, nepers, potential(network, mode, nodes, table)
+    return lag, nepers, potential(network, mode, nodes, table), table.junctions
 
 
 def _times(network: Network, mode: ModeAtNodes, path: Path, conditions: Conditions) -> _Times:
@@ -321,7 +326,8 @@ def _times(network: Network, mode: ModeAtNodes, path: Path, conditions: Conditio
 
 
 def _assembled(
-    path: Path, omega: Array, lag: Array, nepers: Array, at_nodes: Array, time: _Times
+    path: Path, omega: Array, lag: Array, nepers: Array, at_nodes: Array, time: _Times,
+    mixed: ComplexArray,
 ) -> RouteTransfer:
     """A transfer function from the sums over its legs."""
     exponent = np.cumsum(1j * lag - nepers.sum(axis=0), axis=0)
@@ -329,5 +335,6 @@ def _assembled(
     exponent[1:] += 1j * omega * time.before
     exponent[-1] += 1j * omega * time.after
     response = path.source_factor * at_nodes / at_nodes[0] * np.exp(exponent)
+    response[1:] *= mixed
     front = time.steps + time.before + time.after
     return RouteTransfer(omega, path.target_factor * response[-1], response[1:], nepers, front)
