@@ -231,7 +231,8 @@ def _answers(scenario: Scenario, network: Network, mode: ModeAtNodes) -> list[Ar
 
 def _annual_mean(scenario: Scenario) -> Climatology | None:
     """The packaged climatology, where the phase speeds are from it."""
-    own = scenario.ocean.phase_speed_m_s is not None or scenario.ocean.climatology is not None
+    ocean = scenario.ocean
+    own = ocean.phase_speed_m_s is not None or ocean.climatology or ocean.atlas
     return None if own else packaged_climatology()
 
 
@@ -246,9 +247,12 @@ def _mode(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAt
         return network, packaged
     from waveguide.network.own import own_atlas
 
-    say(f"own depths and stratification at the nodes of mode {mode}")
+    say(f"own files at the nodes of mode {mode}")
     own = atlas_mode(
-        own_atlas(family_of(mode), ocean.bathymetry, ocean.climatology, ocean.temperature), mode
+        own_atlas(
+            family_of(mode), ocean.bathymetry, ocean.climatology, ocean.temperature, ocean.atlas
+        ),
+        mode,
     )
     _require_coverage(scenario, network, packaged, own)
     return network, adapted(network, own, omega)

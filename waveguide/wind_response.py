@@ -155,7 +155,8 @@ def _of_mode(question: WindScenario, number: int, omega: float, forcer: Forcer) 
         i: mooring_ratios(packaged_climatology(), *places[i], float(depth[answer.node]), number)
         for i, answer in responding.items() if number > 0 and network.equatorial[answer.node]
     }
-    annual_mean = None if question.ocean.climatology else packaged_climatology()
+    own = question.ocean.climatology or question.ocean.atlas
+    annual_mean = None if own else packaged_climatology()
     survey = Survey(network, mode, omega, packaged_bathymetry(), annual_mean)
     return _OfMode(
         network, found, ratios, {i: survey.of(answer.steps) for i, answer in responding.items()}
@@ -172,7 +173,7 @@ def _mode(
         from waveguide.network.own import own_atlas
 
         atlas = own_atlas(
-            family_of(number), ocean.bathymetry, ocean.climatology, ocean.temperature
+            family_of(number), ocean.bathymetry, ocean.climatology, ocean.temperature, ocean.atlas
         )
     return network, adapted(network, atlas_mode(atlas, number), omega), atlas.depth
 

@@ -12,6 +12,7 @@ from waveguide.constants import deformation_radius
 from waveguide.network.atlas import Atlas, barotropic_atlas, flat_bottom_atlas
 from waveguide.network.latitude import typical_ocean
 from waveguide.network.packaged import Family, packaged_network
+from waveguide.network.trapped_store import own_trapped_atlas
 from waveguide.ocean.bathymetry import packaged_bathymetry, read_bathymetry
 from waveguide.ocean.hydrography import read_climatology
 from waveguide.ocean.seawater import TemperatureKind
@@ -24,6 +25,7 @@ def own_atlas(
     bathymetry: Path | None,
     climatology: Path | None,
     temperature: TemperatureKind | None,
+    atlas: Path | None = None,
 ) -> Atlas:
     """The modes of a family from files that a person brings.
 
@@ -37,6 +39,9 @@ def own_atlas(
         CF NetCDF files.
     temperature : {"in-situ", "potential", "conservative"} or None
         The kind of temperature in the climatology; None where the file says it.
+    atlas : Path or None
+        Modes of sections in place of those of a flat bottom over the depths, for the baroclinic
+        family.
 
     Returns
     -------
@@ -48,10 +53,12 @@ def own_atlas(
     InputError
         If a file cannot be read as what it should be.
     """
+    if atlas is not None and family == "baroclinic":
+        return own_trapped_atlas(atlas)
     network, _ = packaged_network(family)
     depths = packaged_bathymetry() if bathymetry is None else read_bathymetry(bathymetry)
     if family == "barotropic":
-        atlas = barotropic_atlas(network, depths)
+        found = barotropic_atlas(network, depths)
     else:
         typical = typical_ocean(packaged_climatology())
         speed = np.interp(network.lat, typical.lat, typical.phase_speed)
@@ -60,8 +67,8 @@ def own_atlas(
             if climatology is None
             else read_climatology(climatology, temperature=temperature)
         )
-        atlas = flat_bottom_atlas(
+        found = flat_bottom_atlas(
             network, depths, columns, deformation_radius(speed, network.lat)
         )
     covered = depths.covers(network.lon, network.lat)
-    return replace(atlas, phase_speed=np.where(covered, atlas.phase_speed, np.nan))
+    return replace(found, phase_speed=np.where(covered, found.phase_speed, np.nan))

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from waveguide.coast.section_quality import QualityFlag
-from waveguide.errors import DataError
+from waveguide.errors import DataError, InputError
 from waveguide.network.atlas import Atlas
 from waveguide.network.graph import Network
 from waveguide.network.packaged import Family, network_file, packaged_network
@@ -140,6 +140,37 @@ def load_atlas(path: Path) -> tuple[TrappedAtlas, dict[str, str]]:
     }
     values |= {name: read[name].astype(np.int64) for name in ("mode", "rank", "flags")}
     return TrappedAtlas(**values, overlap=overlap), attributes
+
+
+def own_trapped_atlas(path: Path) -> TrappedAtlas:
+    """An atlas of section modes 1 to 3 that a person has made.
+
+    Parameters
+    ----------
+    path : Path
+        As `waveguide atlas` writes it.
+
+    Returns
+    -------
+    TrappedAtlas
+
+    Raises
+    ------
+    InputError
+        If the file is no such atlas, or was made for another network.
+    """
+    way_out = "make it with `waveguide atlas` of this version"
+    try:
+        atlas, attributes = load_atlas(path)
+    except (OSError, KeyError, ValueError) as error:
+        raise InputError(
+            f"atlas {str(path)!r}: not a whole atlas of section modes ({error}); {way_out}"
+        ) from None
+    if attributes.get(NETWORK_HASH) != used_files()[network_file("baroclinic")]:
+        raise InputError(
+            f"atlas {str(path)!r}: it was made for another network than the shipped one; {way_out}"
+        )
+    return atlas.of_modes(1)
 
 
 @cache

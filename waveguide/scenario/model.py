@@ -148,6 +148,8 @@ class Ocean(Table):
         The user's own CF NetCDF files; None means the packaged data.
     temperature : {"in-situ", "potential", "conservative"} or None
         The kind of temperature in `climatology`; None means that the file says it.
+    atlas : Path or None
+        Modes of sections that `waveguide atlas` made, in place of the packaged ones.
     phase_speed_m_s : float or None
         One uniform phase speed in place of the real ocean, for idealised work.
     """
@@ -155,12 +157,19 @@ class Ocean(Table):
     bathymetry: DataFile | None = None
     climatology: DataFile | None = None
     temperature: Literal["in-situ", "potential", "conservative"] | None = None
+    atlas: DataFile | None = None
     phase_speed_m_s: Annotated[Number, Field(gt=0.0, le=FASTEST_BAROTROPIC)] | None = None
 
     @model_validator(mode="after")
     def _one_ocean(self) -> Ocean:
-        if self.phase_speed_m_s is not None and (self.bathymetry or self.climatology):
+        files = self.bathymetry or self.climatology
+        if self.phase_speed_m_s is not None and (files or self.atlas):
             raise ValueError("a uniform phase speed and files of the real ocean exclude each other")
+        if self.atlas and files:
+            raise ValueError(
+                "an atlas has its own depths and stratification: leave bathymetry and climatology "
+                "out, or leave atlas out to have flat-bottom modes of those files"
+            )
         if self.temperature is not None and self.climatology is None:
             raise ValueError("temperature describes a climatology file, and none is given")
         return self
@@ -170,7 +179,8 @@ class Ocean(Table):
         """Where the speeds come from, in a word."""
         if self.phase_speed_m_s is not None:
             return "uniform"
-        return "own files" if self.bathymetry or self.climatology else "packaged"
+        own = self.bathymetry or self.climatology or self.atlas
+        return "own files" if own else "packaged"
 
 
 class Output(Table):

@@ -59,6 +59,7 @@ _WAY_OUT = {
     "ocean.bathymetry": "name a NetCDF file, or leave the key out to use the packaged depths",
     "ocean.climatology": "name a NetCDF file, or leave the key out to use the packaged one",
     "ocean.temperature": 'write "in-situ", "potential" or "conservative"',
+    "ocean.atlas": "name a file that `waveguide atlas` made, or leave the key out",
     "ocean.phase_speed_m_s": "write a speed in m/s, as in phase_speed_m_s = 2.5",
     "output": "write an [output] table, or leave it out to get every format",
     "output.formats": "write a list of " + ", ".join(f'"{word}"' for word in get_args(Format)),
