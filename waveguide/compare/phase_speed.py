@@ -9,8 +9,9 @@ all bins are taken at t + α T(s), T(s) being the predicted time, and added; the
 is one if all bins are alike and 1/n if they have nothing in common (Neidell & Taner 1971,
 Geophysics 36, 482). Every bin is brought to unit variance first, so that a wave that grows or
 decays along its way counts evenly. The α of the highest S is the measured one; leaving out tenths
-of the route in turn gives its standard error (the delete-a-group jackknife), and random shifts of
-the bins tell whether anything lines up at all.
+of the route in turn gives its standard error (the delete-a-group jackknife). Whether anything runs
+along the route at all is told by how often noise without direction, alike in all else and tried at
+the same α, reaches the same S (`waveguide.compare.standing_null`).
 """
 
 from __future__ import annotations
@@ -23,6 +24,7 @@ from scipy.fft import next_fast_len
 from scipy.stats import t as student
 
 from waveguide.compare.lags import CONFIDENCE
+from waveguide.compare.standing_null import unit_anomalies, without_direction
 
 Array = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
@@ -33,8 +35,11 @@ STRETCHES = np.geomspace(1.0 / 3.0, 3.0, 221)
 GROUPS = 10
 """Parts of the route that are left out in turn."""
 
-NULLS = 100
-"""Shifted diagrams."""
+NULLS = 199
+"""Diagrams of noise without direction; the smallest chance that can be told is one in 200."""
+
+BATCH = 50
+"""Of them are held in memory at once."""
 
 RIVAL = 0.9
 """A second maximum with this share of the highest semblance leaves the speed open."""
@@ -63,7 +68,7 @@ class PhaseSpeed:
     semblance : float
         0 to 1.
     chance : float
-        Share of shifted diagrams that line up as well.
+        Share of diagrams of noise without direction that line up as well.
     length : float
         Of the route that bins with values cover (m).
     verdict : str
@@ -103,11 +108,12 @@ def phase_speed(diagram: Array, days: Array, distance: Array, travel: Array) -> 
     kept = np.isfinite(diagram).mean(axis=0) >= LEAST_FILLED
     if kept.sum() < LEAST_BINS:
         return _nothing(f"only {int(kept.sum())} bins of the route have values")
-    x, s, lag = standardised(diagram[:, kept], days), distance[kept], travel[kept]
+    s, lag = distance[kept], travel[kept]
     spent, step = float(lag[-1] - lag[0]), float(days[1] - days[0])
     if not spent > 2.0 * step:
         return _nothing("the signal is predicted to pass within two time steps of the output")
-    x, lag = thinned(x, lag - lag[0])
+    filled, lag = thinned(without_holes(diagram[:, kept]), lag - lag[0])
+    x = unit_anomalies(filled)
     stacker = Stacker.of(x, step, lag)
     stacks, power = stacker.stacks(x), stacker.power(x)
     curve = semblance(stacks.sum(axis=0), power)
@@ -115,7 +121,7 @@ def phase_speed(diagram: Array, days: Array, distance: Array, travel: Array) -> 
     predicted = float((s[-1] - s[0]) / spent / 86400.0)
     error = _jackknife(stacks, power)
     half = float(student.ppf(0.5 * (1.0 + CONFIDENCE), GROUPS - 1)) * error
-    chance = _chance(x, stacker, float(curve.max()))
+    chance = _chance(filled, stacker, float(curve.max()))
     low, high = predicted / factor / np.exp(half), predicted / factor * np.exp(half)
     word, reason = _judge(curve, best, chance, predicted, (low, predicted / factor, high))
     return PhaseSpeed(
@@ -124,15 +130,26 @@ def phase_speed(diagram: Array, days: Array, distance: Array, travel: Array) -> 
     )
 
 
-def standardised(diagram: Array, days: Array) -> Array:
-    """Bins without mean and trend, at unit variance, missing values 0; shape (nbin, nt)."""
+def without_holes(diagram: Array) -> Array:
+    """Every bin with its own straight line where values are missing.
+
+    Parameters
+    ----------
+    diagram : ndarray, shape (nt, nbin)
+        Equally spaced in time, NaN where missing.
+
+    Returns
+    -------
+    ndarray, shape (nbin, nt)
+    """
     x = diagram.T.copy()
-    at = (days - days.mean()) / max(float(np.ptp(days)), 1e-9)
+    at = np.linspace(-1.0, 1.0, x.shape[1])
     for row in x:
         known = np.isfinite(row)
-        row -= np.polyval(np.polyfit(at[known], row[known], 1), at)
-    spread = np.nanstd(x, axis=1, keepdims=True)
-    return np.asarray(np.nan_to_num(x / np.where(spread > 0.0, spread, 1.0)))
+        if not known.all():
+            line = np.polyval(np.polyfit(at[known], row[known], 1), at)
+            row[~known] = line[~known]
+    return x
 
 
 def thinned(x: Array, lag: Array) -> tuple[Array, Array]:
@@ -197,22 +214,32 @@ class Stacker:
         first = np.array([group[0] for group in groups])
         return cls(size, np.exp(phase) * np.sqrt(weight[:used, None, None]), first)
 
-    def stack(self, x: Array) -> ComplexArray:
-        """Spectrum of the sum over all bins, shape (nfrequency, nstretch)."""
-        return np.asarray((self.turns @ self._spectrum(x))[..., 0])
+    def curves(self, x: Array) -> Array:
+        """S(α) of many diagrams at once.
+
+        Parameters
+        ----------
+        x : ndarray, shape (n, nbin, nt)
+
+        Returns
+        -------
+        ndarray, shape (n, nstretch)
+        """
+        spectrum = np.fft.rfft(x, self.size)
+        total = np.zeros((self.turns.shape[1], len(x)))
+        for f, turn in enumerate(self.turns):
+            stack = turn @ spectrum[..., f].T
+            total += stack.real**2 + stack.imag**2
+        return np.asarray(total.T / (x.shape[1] * np.sum(x**2, axis=(1, 2)))[:, None])
 
     def stacks(self, x: Array) -> ComplexArray:
-        """The same of each part of the route, shape (ngroup, nfrequency, nstretch)."""
-        spectrum = self._spectrum(x)
+        """Spectrum of the sum over each part of the route, shape (ngroup, nfrequency, nstretch)."""
+        spectrum = np.fft.rfft(x, self.size, axis=1)[:, : len(self.turns)].T[..., None]
         ends = [*self.groups[1:], len(x)]
         return np.array([
             (self.turns[..., first:last] @ spectrum[:, first:last])[..., 0]
             for first, last in zip(self.groups, ends, strict=True)
         ])
-
-    def _spectrum(self, x: Array) -> ComplexArray:
-        """Of every bin at the frequencies in use, shape (nfrequency, nbin, 1)."""
-        return np.asarray(np.fft.rfft(x, self.size, axis=1)[:, : len(self.turns)].T[..., None])
 
     def power(self, x: Array) -> Array:
         """Number of bins and Σ x² of each part, shape (ngroup, 2)."""
@@ -258,21 +285,14 @@ def _jackknife(stacks: ComplexArray, power: Array) -> float:
     return float(np.sqrt((n - 1.0) / n * np.sum((draws - draws.mean()) ** 2)))
 
 
-def _chance(x: Array, stacker: Stacker, real: float) -> float:
-    """Share of diagrams whose parts are turned in time at random that line up as well.
-
-    Neighbouring bins share their noise, so whole parts of the route are turned together.
-    """
+def _chance(filled: Array, stacker: Stacker, real: float) -> float:
+    """Share of diagrams of noise without direction that line up as well at their best α."""
     generator = np.random.default_rng(SEED)
-    power = stacker.power(x)
-    parts = np.searchsorted(stacker.groups, np.arange(len(x)), side="right") - 1
-    place = np.arange(x.shape[1])
-    count = 0
-    for _ in range(NULLS):
-        turn = generator.integers(x.shape[1], size=len(stacker.groups))[parts]
-        turned = np.take_along_axis(x, (place + turn[:, None]) % x.shape[1], axis=1)
-        count += int(semblance(stacker.stack(turned), power).max() >= real)
-    return (1.0 + count) / (1.0 + NULLS)
+    highest = [
+        stacker.curves(without_direction(filled, len(batch), generator)).max(axis=1)
+        for batch in np.array_split(np.arange(NULLS), NULLS // BATCH + 1)
+    ]
+    return float((1.0 + np.sum(np.concatenate(highest) >= real)) / (1.0 + NULLS))
 
 
 def _judge(
@@ -281,7 +301,9 @@ def _judge(
     low, middle, high = measured
     told = f"{middle:.2f} [{low:.2f} to {high:.2f}] m/s against {predicted:.2f} ± 10 %"
     if chance > 0.05:
-        return "not resolvable", f"bins turned at random line up as well in {chance:.0%} of cases"
+        return "not resolvable", (
+            f"noise without direction lines up as well in {chance:.0%} of cases"
+        )
     if best in (0, curve.size - 1):
         return "not resolvable", "the best speed lies at the edge of a third to three times theory"
     inner = np.flatnonzero((curve[1:-1] > curve[:-2]) & (curve[1:-1] >= curve[2:])) + 1
