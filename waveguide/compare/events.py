@@ -55,7 +55,8 @@ class EventResult:
         Delays searched (days) and the amplitude that fits at each (SI).
     estimate : LagEstimate
         `correlation` is the share of the record's variance under the pulse, as a coefficient.
-    chance : float
+    chance, least_chance : float
+        Of as high an amplitude without the event, and the smallest the draws can tell.
     predictions : tuple of Prediction
     verdicts : tuple of Verdict
     """
@@ -67,6 +68,7 @@ class EventResult:
     amplitude: Array
     estimate: LagEstimate
     chance: float
+    least_chance: float
     predictions: tuple[Prediction, ...]
     verdicts: tuple[Verdict, ...]
 
@@ -112,6 +114,7 @@ def compare_event(
     if reason:
         return EventResult(
             prepared, band, start, np.zeros(0), np.zeros(0), _unknown(pulse, prepared.step), 1.0,
+            1.0,
             tuple(predictions), tuple(Verdict("not resolvable", reason) for _ in predictions),
         )
     delay = np.asarray((first + np.arange(window)) * prepared.step - start - 0.5 * duration)
@@ -119,7 +122,8 @@ def compare_event(
     estimate = _judge(pulse, fitted, share, first, window, prepared.step, float(delay[0]))
     chance = _chance(x, pulse, window, float(np.nanmax(here)))
     return EventResult(
-        prepared, band, start, delay, here, estimate, chance, tuple(predictions),
+        prepared, band, start, delay, here, estimate, chance, 1.0 / (1.0 + RECORDS * x.size),
+        tuple(predictions),
         tuple(verdict(estimate, chance, p.lag, p.status) for p in predictions),
     )
 

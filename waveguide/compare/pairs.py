@@ -12,7 +12,12 @@ from waveguide.compare.lags import Correlation, LagEstimate, cross_correlation, 
 from waveguide.compare.preparation import anomalies, in_band
 from waveguide.compare.regression import Regression, regression
 from waveguide.compare.series import Series, align
-from waveguide.compare.significance import scrambled_chance, shifted_chance
+from waveguide.compare.significance import (
+    SCRAMBLED,
+    least_shifted_chance,
+    scrambled_chance,
+    shifted_chance,
+)
 from waveguide.compare.spectra import CrossSpectrum, cross_spectrum
 from waveguide.compare.verdict import Verdict, verdict
 
@@ -75,6 +80,8 @@ class PairResult:
     correlation : Correlation
     chance : float
         Probability of as high a correlation without a relation.
+    least_chance : float
+        The smallest that this record can tell.
     null : str
         How unrelated pairs were made, "shifted" or "scrambled".
     spectrum : CrossSpectrum
@@ -92,6 +99,7 @@ class PairResult:
     estimate: LagEstimate
     correlation: Correlation
     chance: float
+    least_chance: float
     null: str
     spectrum: CrossSpectrum
     slope: Regression
@@ -126,22 +134,44 @@ def compare_pair(
     generator = np.random.default_rng(SEED)
     block = BLOCK_PERIODS * band[1]
     estimate = shifted_estimate(lag_estimate(x, y, step, reach, block, generator), offset)
-    turned = x.size * step > TURNS * 2.0 * reach
-    chance = (
-        shifted_chance(x, y, step, reach) if turned
-        else scrambled_chance(x, y, step, reach, generator)
-    )
+    chance, least, null = null_test(x, y, step, reach, generator)
     if estimate.blocks < LEAST_BLOCKS:
         chance = 1.0
     a, b, *_ = align(*raw)
     return PairResult(
         in_band(raw[0], band), in_band(raw[1], band), band, estimate,
-        cross_correlation(x, y, step, reach), chance, "shifted" if turned else "scrambled",
+        cross_correlation(x, y, step, reach), chance, least, null,
         cross_spectrum(a, b * sign_of(predictions), step, SEGMENT_PERIODS * band[1]),
         regression(x, y, round((estimate.lag - offset) / step)),
         tuple(predictions),
         tuple(verdict(estimate, chance, p.lag, p.status) for p in predictions),
     )
+
+
+def null_test(
+    x: Array, y: Array, step: float, reach: float, generator: np.random.Generator
+) -> tuple[float, float, str]:
+    """Chance of the pair's correlation, the smallest chance there can be, and how it was told.
+
+    Parameters
+    ----------
+    x, y : ndarray, shape (n,)
+        In one band, NaN where missing.
+    step, reach : float
+        Days; lags within ± reach are searched.
+    generator : numpy.random.Generator
+
+    Returns
+    -------
+    chance, least : float
+    null : {"shifted", "scrambled"}
+    """
+    if x.size * step > TURNS * 2.0 * reach:
+        return (
+            shifted_chance(x, y, step, reach), least_shifted_chance(x.size, step, reach), "shifted"
+        )
+    chance = scrambled_chance(x, y, step, reach, generator)
+    return chance, 1.0 / (1.0 + SCRAMBLED), "scrambled"
 
 
 def sign_of(predictions: Sequence[Prediction]) -> float:

@@ -88,6 +88,27 @@ def shifted_chance(x: Array, y: Array, step: float, longest: float) -> float:
     return float((window + np.sum(others >= _highest(x, y, reach))) / (window + others.size))
 
 
+def least_shifted_chance(size: int, step: float, longest: float) -> float:
+    """The smallest share that `shifted_chance` can give: that of the real pair's own window.
+
+    A record that holds as many independent windows as 1/share can tell nothing rarer.
+
+    Parameters
+    ----------
+    size : int
+        Of the record.
+    step, longest : float
+        As for `shifted_chance`.
+
+    Returns
+    -------
+    float
+        1 where the record is too short for the test.
+    """
+    window = 2 * int(lag_steps(size, step, longest)[-1]) + 1
+    return 1.0 if 3 * window > size else window / (size - window)
+
+
 def scrambled_chance(
     x: Array, y: Array, step: float, longest: float, generator: np.random.Generator
 ) -> float:

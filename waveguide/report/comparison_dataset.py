@@ -39,6 +39,7 @@ COMPARISON: dict[str, Variable] = {
     "lag_high_days": _number(_ROW, "upper end of the 95 % interval of the lag", "day"),
     "correlation": _number(_ROW, "correlation at the lag", "1"),
     "chance": _number(_ROW, "probability of as high a correlation without a relation", "1"),
+    "least_chance": _number(_ROW, "smallest chance that a record of this length can tell", "1"),
     "independent_blocks": _number(_ROW, "independent blocks in the record", "1"),
     "dominant_period_days": _number(_ROW, "dominant period in the band", "day"),
     "other_cycle_share": _number(_ROW, "share of draws on another cycle", "1"),
@@ -125,6 +126,7 @@ def _shared(result: PairResult | EventResult) -> dict[str, Any]:
     return {
         "lag_days": estimate.lag, "lag_low_days": estimate.low, "lag_high_days": estimate.high,
         "correlation": estimate.correlation, "chance": result.chance,
+        "least_chance": result.least_chance,
         "independent_blocks": estimate.blocks, "dominant_period_days": estimate.period,
         "other_cycle_share": estimate.other_cycle,
         "predicted_lag_days": [p.lag for p in result.predictions],

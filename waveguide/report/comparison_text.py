@@ -62,13 +62,20 @@ def _lags(dataset: xr.Dataset) -> str:
                 f"{_number(at['lag_low_days'], '.1f')} to {_number(at['lag_high_days'], '.1f')}"
                 if first else "",
                 _number(at["correlation"], ".2f") if first else "",
-                _number(at["chance"], ".3f") if first else "",
+                _chance(at) if first else "",
                 _number(at["predicted_lag_days"][m], ".1f"),
                 _number(at["amplitude_ratio"], ".2f") if first else "",
                 _number(at["predicted_ratio"][m], ".2f"),
                 str(at["verdict"][m].item()),
             ))
     return _aligned(lines, right=range(2, 10))
+
+
+def _chance(at: xr.Dataset) -> str:
+    """The chance, or that it is below what the record can tell."""
+    chance = float(at["chance"])
+    told = _number(at["chance"], ".3f")
+    return f"≤ {told}" if 0.0005 < chance <= float(at["least_chance"]) < 1.0 else told
 
 
 def _reasons(dataset: xr.Dataset) -> str:
