@@ -9,7 +9,6 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
-from waveguide import pipeline
 from waveguide.compare.columns import column_modes
 from waveguide.compare.events import EventResult, compare_event
 from waveguide.compare.moorings import (
@@ -25,6 +24,7 @@ from waveguide.compare.series import Series
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.geodesy import geodesic_length
+from waveguide.pipeline import dominant_frequency, mode_conditions, mode_guide, target_arrivals
 from waveguide.propagation.arrivals import REACHED
 from waveguide.propagation.cautions import FAINT
 from waveguide.propagation.transfer import paths_of_arrival, route_transfers
@@ -150,12 +150,12 @@ def predictions(
     """
     short, long = question.compare.band_days
     scenario = _pair_scenario(question, source, targets, float(np.sqrt(short * long)))
-    omega = np.linspace(0.0, pipeline._omega(scenario), FREQUENCIES + 1)[1:]
+    omega = np.linspace(0.0, dominant_frequency(scenario), FREQUENCIES + 1)[1:]
     told: list[list[Prediction]] = [[] for _ in targets]
     for mode in question.waves.modes:
-        network, carried = pipeline._mode(scenario, mode, lambda stage: None)
-        conditions = pipeline._conditions(scenario, network, carried)
-        for row, arrival in enumerate(pipeline._answers(scenario, network, carried)):
+        network, carried = mode_guide(scenario, mode, lambda stage: None)
+        conditions = mode_conditions(scenario, network, carried)
+        for row, arrival in enumerate(target_arrivals(scenario, network, carried)):
             if arrival.status != REACHED:
                 told[row].append(_none(mode, arrival.status))
                 continue

@@ -11,12 +11,12 @@ import numpy as np
 
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
-from waveguide.network.attach import distance_to_water
 from waveguide.network.packaged import family_of, packaged_network
 from waveguide.network.trapped_store import packaged_guide
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import used_files
 from waveguide.ocean.stratification import Climatology, packaged_climatology
+from waveguide.positions import check_places, swapped
 from waveguide.propagation.adaptation import adapted
 from waveguide.propagation.answers import ModeAnswer, mode_answer
 from waveguide.propagation.arrivals import REACHED, Arrival, mode_arrivals
@@ -122,19 +122,19 @@ def study(scenario: Scenario, progress: Progress | None = None) -> Study:
     say = progress or (lambda stage: None)
     say("reading depths")
     check_positions(scenario)
-    guides = {mode: _mode(scenario, mode, say) for mode in scenario.waves.modes}
+    guides = {mode: mode_guide(scenario, mode, say) for mode in scenario.waves.modes}
     found: dict[int, list[Arrival]] = {}
     for mode, (network, carried) in guides.items():
         say(f"routes of mode {mode}")
-        found[mode] = _answers(scenario, network, carried)
+        found[mode] = target_arrivals(scenario, network, carried)
     _require_an_answer(scenario, found)
     source = source_function(scenario)
     window = _window(scenario, found, source)
-    omega = _omega(scenario)
+    omega = dominant_frequency(scenario)
     answers, conditions = {}, {}
     for mode, (network, carried) in guides.items():
         say(f"waveforms of mode {mode}")
-        conditions[mode] = _conditions(scenario, network, carried)
+        conditions[mode] = mode_conditions(scenario, network, carried)
         answers[mode] = mode_answer(
             network, carried, found[mode], source, window, omega, conditions[mode]
         )
@@ -150,8 +150,18 @@ def study(scenario: Scenario, progress: Progress | None = None) -> Study:
     return Study(source, omega, networks, answers, conditions, arrays)
 
 
-def _omega(scenario: Scenario) -> float:
-    """Dominant angular frequency (rad/s)."""
+def dominant_frequency(scenario: Scenario) -> float:
+    """Dominant angular frequency of a scenario.
+
+    Parameters
+    ----------
+    scenario : Scenario
+
+    Returns
+    -------
+    float
+        rad/s.
+    """
     return 2.0 * np.pi / (scenario.waves.period_days * SECONDS_PER_DAY)
 
 
@@ -206,8 +216,19 @@ def damping_rate(days: float | None, mode: ModeAtNodes) -> float:
     return float(rate)
 
 
-def _conditions(scenario: Scenario, network: Network, mode: ModeAtNodes) -> Conditions:
-    """Friction and damping of a mode."""
+def mode_conditions(scenario: Scenario, network: Network, mode: ModeAtNodes) -> Conditions:
+    """Friction and damping of a mode.
+
+    Parameters
+    ----------
+    scenario : Scenario
+    network : Network
+    mode : ModeAtNodes
+
+    Returns
+    -------
+    Conditions
+    """
     friction = friction_of_steps(network, mode, scenario.waves.drag_m_s)
     damping = damping_rate(scenario.waves.damping_days, mode)
     return Conditions(friction=friction, damping=damping)
@@ -219,12 +240,24 @@ def source_box(scenario: Scenario) -> Box:
     return event.box if event.box is not None else (*event.centre, *event.centre)
 
 
-def _answers(scenario: Scenario, network: Network, mode: ModeAtNodes) -> list[Arrival]:
-    """Arrivals of one mode at every target."""
+def target_arrivals(scenario: Scenario, network: Network, mode: ModeAtNodes) -> list[Arrival]:
+    """Arrivals of one mode at every target.
+
+    Parameters
+    ----------
+    scenario : Scenario
+    network : Network
+    mode : ModeAtNodes
+
+    Returns
+    -------
+    list of Arrival
+        In the order of the targets.
+    """
     return mode_arrivals(
         network, mode, packaged_bathymetry(), source_box(scenario), scenario.event.centre,
         [target.position for target in scenario.targets],
-        _omega(scenario), damping_rate(scenario.waves.damping_days, mode),
+        dominant_frequency(scenario), damping_rate(scenario.waves.damping_days, mode),
         scenario.waves.drag_m_s, _annual_mean(scenario),
     )
 
@@ -236,10 +269,28 @@ def _annual_mean(scenario: Scenario) -> Climatology | None:
     return None if own else packaged_climatology()
 
 
-def _mode(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAtNodes]:
-    """The network of a mode and what its nodes know of it in the scenario's ocean."""
+def mode_guide(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, ModeAtNodes]:
+    """The network of a mode and what its nodes know of it in the scenario's ocean.
+
+    Parameters
+    ----------
+    scenario : Scenario
+    mode : int
+    say : callable
+        Told the name of each stage as it begins.
+
+    Returns
+    -------
+    network : Network
+    mode : ModeAtNodes
+
+    Raises
+    ------
+    InputError
+        If the user's own files leave a part of a route without a speed.
+    """
     network, atlas = packaged_guide(family_of(mode))
-    ocean, omega = scenario.ocean, _omega(scenario)
+    ocean, omega = scenario.ocean, dominant_frequency(scenario)
     if ocean.phase_speed_m_s is not None:
         return network, uniform_mode(network, mode, ocean.phase_speed_m_s)
     packaged = adapted(network, atlas_mode(atlas, mode), omega)
@@ -264,7 +315,7 @@ def _require_coverage(
     """Refuse own files that leave a part of a route without a speed."""
     problems = []
     for target, answer in zip(
-        scenario.targets, _answers(scenario, network, packaged), strict=True
+        scenario.targets, target_arrivals(scenario, network, packaged), strict=True
     ):
         if answer.status != REACHED:
             continue
@@ -294,10 +345,6 @@ def _extent(network: Network, nodes: np.ndarray[tuple[int], np.dtype[np.int64]])
     return f"longitudes {west:.1f} and {east:.1f}, latitudes {south:.1f} and {north:.1f}"
 
 
-FAR_INLAND = 50e3
-"""Positions farther from the sea than this are refused (m)."""
-
-
 def check_positions(scenario: Scenario) -> None:
     """Refuse positions far inland.
 
@@ -316,53 +363,12 @@ def check_positions(scenario: Scenario) -> None:
     check_places(places)
 
 
-def check_places(places: list[tuple[str, tuple[float, float]]]) -> None:
-    """Refuse positions far inland.
-
-    Parameters
-    ----------
-    places : list of (name, (lon, lat))
-        What a person calls each, and degrees.
-
-    Raises
-    ------
-    InputError
-        Naming every such position, and the swapped one where that is at sea.
-    """
-    problems = [problem for name, place in places if (problem := _inland(name, *place))]
-    if problems:
-        raise InputError(problems)
-
-
-def _inland(name: str, lon: float, lat: float) -> str:
-    """What is wrong with a position, or nothing."""
-    away = distance_to_water(lon, lat, packaged_bathymetry(), 4.0 * FAR_INLAND)
-    if away <= FAR_INLAND:
-        return ""
-    far = f"{away / 1e3:.0f} km" if np.isfinite(away) else f"over {4 * FAR_INLAND / 1e3:.0f} km"
-    return (
-        f"{name}: [{lon:g}, {lat:g}] lies {far} from the sea; positions are [longitude, latitude] "
-        f"in degrees, at sea or on a coast, at most {FAR_INLAND / 1e3:.0f} km inland"
-        f"{_swapped((lon, lat))}"
-    )
-
-
-def _swapped(position: tuple[float, float]) -> str:
-    """A question, where the position with longitude and latitude exchanged is at sea."""
-    lon, lat = position
-    if abs(lon) > 90.0:
-        return ""
-    if distance_to_water(lat, lon, packaged_bathymetry(), FAR_INLAND) > FAR_INLAND:
-        return ""
-    return f" (are longitude and latitude swapped? [{lat:g}, {lon:g}] is at sea)"
-
-
 def _require_an_answer(scenario: Scenario, answers: dict[int, list[Arrival]]) -> None:
     """Refuse a scenario none of whose targets is reached, with the reasons."""
     if any(a.status == REACHED for rows in answers.values() for a in rows):
         return
     problems = [
-        f"{target.name!r}, mode {mode}: {_reason(answer)}{_swapped(target.position)}"
+        f"{target.name!r}, mode {mode}: {_reason(answer)}{swapped(target.position)}"
         for mode, rows in answers.items()
         for target, answer in zip(scenario.targets, rows, strict=True)
     ]

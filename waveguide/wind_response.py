@@ -27,7 +27,8 @@ from waveguide.network.trapped_store import packaged_guide
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.ocean.packaged import WIND_RECORD, packaged_file
 from waveguide.ocean.stratification import packaged_climatology
-from waveguide.pipeline import check_places, damping_rate
+from waveguide.pipeline import damping_rate
+from waveguide.positions import check_places
 from waveguide.propagation.adaptation import adapted
 from waveguide.propagation.cautions import COVERED_WIND, response_cautions
 from waveguide.propagation.losses import step_physics

@@ -63,8 +63,8 @@ def misses(first: str, second: str) -> tuple[float, float, float]:
                     duration_days=1.0),
         targets=(Target(name=second, position=places[second]),),
     )  # fmt: skip
-    network, mode = pipeline._mode(scenario, 1, lambda stage: None)
-    route = pipeline._answers(scenario, network, mode)[0].routes[0]
+    network, mode = pipeline.mode_guide(scenario, 1, lambda stage: None)
+    route = pipeline.target_arrivals(scenario, network, mode)[0].routes[0]
     shares = relative_delays(network, mode, route.steps, USUAL)
     share = float(np.sqrt(sum(s**2 for s in shares.values())))
     days = route.time / SECONDS_PER_DAY
