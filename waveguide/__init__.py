@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from waveguide.pipeline import arrivals
     from waveguide.planning import plan
-    from waveguide.records import compare_records
+    from waveguide.records import compare_records, look_out
     from waveguide.scenario import read_comparison, read_scenario, read_wind_scenario
     from waveguide.sections import section
     from waveguide.wind_response import response
@@ -20,6 +20,7 @@ if TYPE_CHECKING:
 __all__ = [
     "arrivals",
     "compare_records",
+    "look_out",
     "plan",
     "read_comparison",
     "read_scenario",
@@ -31,6 +32,7 @@ __all__ = [
 _HOME = {
     "arrivals": "waveguide.pipeline",
     "compare_records": "waveguide.records",
+    "look_out": "waveguide.records",
     "plan": "waveguide.planning",
     "read_comparison": "waveguide.scenario",
     "read_scenario": "waveguide.scenario",

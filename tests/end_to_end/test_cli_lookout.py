@@ -11,6 +11,7 @@ import numpy as np
 import pytest
 import xarray as xr
 
+import waveguide
 from waveguide import cli
 from waveguide.scenario import find_scenario
 
@@ -58,14 +59,18 @@ def test_without_a_model_the_windows_are_told(run, tmp_path):
     assert len(features) == len(windows)
 
 
-def test_with_a_model_the_speed_is_measured_and_the_cells_are_kept(run, model, tmp_path):
+def test_with_a_model_the_speed_is_measured_and_the_cells_are_kept(
+    run, model, tmp_path, printed_figures
+):
     out_folder = tmp_path / "out"
     status, out, _ = run("lookout", "pacific_model", "--model", model, "--out", out_folder)
     assert status == 0
     assert "each read once" in out
     names = {path.name for path in out_folder.iterdir()}
     assert {"windows.csv", "speeds.csv", "subset.nc", "distance_time.nc"} <= names
-    assert any(name.startswith("distance_time_callao") for name in names)
+    assert {"distance_time_callao_mode1.png", "distance_time_callao_mode1.pdf"} <= set(
+        printed_figures
+    )
     with xr.open_dataset(out_folder / "subset.nc") as kept:
         assert kept.sizes["cell"] > 1000
         assert kept["zos"].attrs["units"] == "m"
@@ -81,6 +86,20 @@ def test_the_measured_speed_is_that_of_the_wave_in_the_output(run, model):
     # 2.5 m/s along the equator (scenarios/invent.py), nothing but noise along the coast
     assert callao["measured_speed_m_s"] == pytest.approx(2.5, rel=0.05)
     assert callao["verdict"] == "consistent"
+
+
+def test_python_gets_windows_and_speeds_as_a_dataset(model):
+    scenario = waveguide.read_scenario("pacific_model")
+    alone = waveguide.look_out(scenario)
+    assert alone.sizes == {"window": alone.sizes["window"], "route": 0}
+    assert (alone["closes"] > alone["opens"]).all()
+    with xr.open_dataset(model) as output:
+        found = waveguide.look_out(scenario, output)
+    np.testing.assert_array_equal(found["opens"], alone["opens"])
+    at = found["route_target"].values.tolist().index("Callao")
+    assert found["measured_speed_m_s"].values[at] == pytest.approx(2.5, rel=0.05)
+    assert found["chance"].values[at] <= 0.05
+    assert found["depth_m"].attrs["units"] == "m"
 
 
 def test_a_model_of_other_days_is_refused(run, model, tmp_path):

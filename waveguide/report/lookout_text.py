@@ -171,14 +171,25 @@ def lookout_document(result: LookoutResult) -> dict[str, Any]:
             {key: plain_value(value) for key, value in row.items()} for row in window_rows(result)
         ],
         "variable": result.variable,
-        "routes": [_route(diagram) for diagram in result.diagrams],
+        "routes": [route_row(diagram) for diagram in result.diagrams],
         "chunks_read": result.chunks,
         "notes": list(result.notes),
         "caution": CAUTION,
     }
 
 
-def _route(diagram: Diagram) -> dict[str, Any]:
+def route_row(diagram: Diagram) -> dict[str, Any]:
+    """Measured against predicted speed of one route, as JSON can hold it.
+
+    Parameters
+    ----------
+    diagram : Diagram
+
+    Returns
+    -------
+    dict
+        None for NaN.
+    """
     speed = diagram.speed
     return {
         "target": diagram.line.target,
@@ -205,7 +216,7 @@ def write_lookout_csv(result: LookoutResult, folder: Path) -> None:
     """
     _write(folder / "windows.csv", window_rows(result))
     if result.diagrams:
-        _write(folder / "speeds.csv", [_route(diagram) for diagram in result.diagrams])
+        _write(folder / "speeds.csv", [route_row(diagram) for diagram in result.diagrams])
 
 
 def _write(path: Path, rows: Sequence[dict[str, Any]]) -> None:
