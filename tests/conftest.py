@@ -187,5 +187,31 @@ def build_arrivals() -> xr.Dataset:
 
 
 @pytest.fixture
+def printed_figures(monkeypatch):
+    """Figures as they are saved, each held to what a journal's page asks for."""
+    from matplotlib.figure import Figure
+    from matplotlib.text import Text
+
+    saved: list[str] = []
+    save = Figure.savefig
+
+    def look(figure, path, **options):
+        save(figure, path, **options)
+        saved.append(path.name)
+        assert figure.get_figwidth() * 25.4 == pytest.approx(170.0)
+        said = [t for t in figure.findobj(Text) if t.get_text().strip() and t.get_visible()]
+        assert min(text.get_fontsize() for text in said) >= 7.0
+        renderer = figure.canvas.get_renderer()
+        drawn = figure.get_tightbbox(renderer)  # inches
+        assert -0.02 < drawn.x0 < drawn.x1 < figure.get_figwidth() + 0.02, drawn
+        for axes in figure.axes:
+            box = axes.get_window_extent(renderer)
+            assert min(box.width, box.height) > 20.0  # pixels: nothing has collapsed
+
+    monkeypatch.setattr(Figure, "savefig", look)
+    return saved
+
+
+@pytest.fixture
 def arrivals() -> xr.Dataset:
     return build_arrivals()

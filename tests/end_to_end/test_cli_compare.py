@@ -27,7 +27,7 @@ def run(monkeypatch, capsys):
     return go
 
 
-def test_gauges_get_lags_verdicts_and_reasons(run, tmp_path):
+def test_gauges_get_lags_verdicts_and_reasons(run, tmp_path, printed_figures):
     status, out, err = run("compare", "peru_gauges", "--json", "--out", tmp_path / "out")
     assert status == 0
     assert "outputs are in" in err
@@ -45,7 +45,8 @@ def test_gauges_get_lags_verdicts_and_reasons(run, tmp_path):
     assert rows["western Pacific wind burst", "Matarani"]["verdict"] == ["not resolvable"] * 2
     names = {path.name for path in (tmp_path / "out").iterdir()}
     assert {"comparison.csv", "comparison.nc", "records.nc", "event_callao.png",
-            "pair_la-libertad_callao.png"} <= names  # fmt: skip
+            "pair_la-libertad_callao.png", "pair_la-libertad_callao.pdf"} <= names  # fmt: skip
+    assert len(printed_figures) == 2 * (5 + 5)  # pairs and events, as PNG and PDF
     with (tmp_path / "out" / "comparison.csv").open() as file:
         assert len(list(csv.DictReader(file))) == 2 * len(document["rows"])
     with xr.open_dataset(tmp_path / "out" / "comparison.nc") as stored:
@@ -53,7 +54,7 @@ def test_gauges_get_lags_verdicts_and_reasons(run, tmp_path):
         np.testing.assert_allclose(stored["lag_days"][0], first["lag_days"], rtol=1e-6)
 
 
-def test_a_mooring_is_judged_by_time_and_structure(run, tmp_path):
+def test_a_mooring_is_judged_by_time_and_structure(run, tmp_path, printed_figures):
     status, out, _ = run("compare", "equator_mooring", "--out", tmp_path / "out")
     assert status == 0
     lines = out.splitlines()
@@ -62,7 +63,7 @@ def test_a_mooring_is_judged_by_time_and_structure(run, tmp_path):
     assert "Mooring: ratio of each instrument to height 140W" in out
     temperature = next(line for line in lines if line.startswith("temperature 140W   "))
     assert "consistent" in temperature
-    assert (tmp_path / "out" / "mooring_height-140w.png").exists()
+    assert {"mooring_height-140w.png", "mooring_height-140w.pdf"} <= set(printed_figures)
     assert "warning system" in out
 
 

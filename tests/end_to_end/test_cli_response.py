@@ -125,15 +125,19 @@ def test_every_response_says_how_its_way_stands_to_the_theory(run, scenario):
     assert "Cautions, the most serious first" in text
 
 
-def test_out_writes_files_that_hold_together(run, scenario, tmp_path):
+def test_out_writes_files_that_hold_together(run, scenario, tmp_path, printed_figures):
     out = tmp_path / "out"
     status, _, err = run("response", scenario, "--out", out)
     assert status == 0
     assert str(out) in err
     assert {path.name for path in out.iterdir()} == {
         "sea_level.csv", "responses.csv", "stretches.csv", "response.nc", "along_guide.nc",
-        "sea_level.png", "cause_01_0n-110w.png", "cause_02_callao.png",
+        *printed_figures,
     }  # fmt: skip
+    assert printed_figures == [
+        f"{name}.{ending}" for name in ("sea_level", "cause_01_0n-110w", "cause_02_callao")
+        for ending in ("png", "pdf")
+    ]
     with (out / "sea_level.csv").open(newline="") as file:
         rows = list(csv.reader(file))
     assert rows[0][:3] == ["time", "0N 110W mode 1 (m)", "0N 110W (m)"]

@@ -52,12 +52,12 @@ def test_json_is_one_document(run):
     assert document["snap_distance_km"] > 0.0
 
 
-def test_out_writes_figure_and_netcdf(run, tmp_path):
+def test_out_writes_figure_and_netcdf(run, tmp_path, printed_figures):
     status, _, err = run("section", "150.6", "-36.0", "--modes", "1", "--out", tmp_path / "new")
     assert status == 0
     assert str(tmp_path / "new") in err
     assert {p.name for p in (tmp_path / "new").iterdir()} == {
-        "section.png", "section.pdf", "section.nc",
+        *printed_figures, "section.nc",
     }  # fmt: skip
     with xr.open_dataset(tmp_path / "new" / "section.nc") as stored:
         assert stored.attrs["Conventions"] == "CF-1.11"

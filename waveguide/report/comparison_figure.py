@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.report.colours import MODE_COLOURS, RECORD_COLOURS
+from waveguide.report.figures import arranged_figure, fit_for_print, save_for_print
 from waveguide.report.text import plain
 
 if TYPE_CHECKING:
@@ -34,20 +35,24 @@ _UNITS = {
 
 
 def write_comparison_figures(result: ComparisonResult, folder: Path) -> None:
-    """Write ``pair_….png``, ``event_….png`` and ``mooring_….png``.
+    """Write ``pair_…``, ``event_…`` and ``mooring_…``, each as PNG and PDF.
 
     Parameters
     ----------
     result : ComparisonResult
     folder : Path
     """
-    for pair in result.pairs:
-        name = f"pair_{_file_name(pair.first.name)}_{_file_name(pair.second.name)}.png"
-        draw_pair(pair).savefig(folder / name)
-    for event in result.events:
-        draw_event(event).savefig(folder / f"event_{_file_name(event.series.name)}.png")
-    for mooring in result.moorings:
-        draw_mooring(mooring).savefig(folder / f"mooring_{_file_name(mooring.reference)}.png")
+    figures = {
+        f"pair_{_file_name(pair.first.name)}_{_file_name(pair.second.name)}": draw_pair(pair)
+        for pair in result.pairs
+    } | {
+        f"event_{_file_name(event.series.name)}": draw_event(event) for event in result.events
+    } | {
+        f"mooring_{_file_name(mooring.reference)}": draw_mooring(mooring)
+        for mooring in result.moorings
+    }  # fmt: skip
+    for name, figure in figures.items():
+        save_for_print(figure, folder, name, result.title)
 
 
 def _file_name(text: str) -> str:
@@ -55,13 +60,19 @@ def _file_name(text: str) -> str:
 
 
 def _figure(rows: int, columns: int, height: float, title: str) -> tuple[Figure, Any]:
-    from matplotlib.backends.backend_agg import FigureCanvasAgg
-    from matplotlib.figure import Figure
-
-    figure = Figure(figsize=(9.5, height), dpi=130, layout="constrained")
-    FigureCanvasAgg(figure)
-    figure.suptitle(title, fontsize=12, fontweight="bold", parse_math=False)
+    figure = arranged_figure(height, title)
     return figure, figure.subplots(rows, columns, squeeze=False)
+
+
+def _head(ax: Axes, title: str, legend: bool = True) -> None:
+    """Title above the axes and, between both, the legend, which so covers no data."""
+    if legend and ax.get_legend_handles_labels()[1]:
+        shown = ax.legend(loc="lower left", bbox_to_anchor=(-0.02, 1.0), ncols=5, frameon=False,
+                          fontsize=7, borderaxespad=0.1, handlelength=1.5, columnspacing=0.9)
+        shown.set_in_layout(False)  # a wide legend would make the axes narrow
+        ax.set_title(title, loc="left", fontsize=8, pad=15)
+    else:
+        ax.set_title(title, loc="left", fontsize=8)
 
 
 def draw_pair(pair: PairResult) -> Figure:
@@ -76,7 +87,7 @@ def draw_pair(pair: PairResult) -> Figure:
     matplotlib.figure.Figure
     """
     title = f"{plain(pair.first.name, 30)} to {plain(pair.second.name, 30)}"
-    figure, axes = _figure(3, 2, 9.0, title)
+    figure, axes = _figure(3, 2, 185.0, title)
     grid = axes[0, 0].get_gridspec()
     for ax in axes[0]:
         ax.remove()
@@ -85,14 +96,14 @@ def draw_pair(pair: PairResult) -> Figure:
     _draw_gain(axes[1, 1], pair)
     _draw_coherence(axes[2, 0], pair)
     _draw_phase(axes[2, 1], pair)
-    figure.supxlabel(_verdicts(pair), fontsize=8.5, parse_math=False)
-    return figure
+    figure.supxlabel(_verdicts(pair), fontsize=7, parse_math=False)
+    return fit_for_print(figure)
 
 
 def _verdicts(result: PairResult | EventResult) -> str:
     """The verdicts as lines that fit below a figure."""
     lines = [
-        textwrap.fill(f"mode {p.mode}: {v.word}: {v.reason}", 125)
+        textwrap.fill(f"mode {p.mode}: {v.word}: {v.reason}", 115)
         for p, v in zip(result.predictions, result.verdicts, strict=True)
     ]
     return "\n".join(lines)
@@ -110,10 +121,8 @@ def _draw_records(ax: Axes, pair: PairResult) -> None:
         ax.plot(series.times[inside], factor * series.values[inside], color=colour, lw=1.0,
                 label=label)
     short, long = pair.band
-    ax.set_title(f"a  records passed {short:g} to {long:g} days (the two fullest years)",
-                 loc="left", fontsize=9)
     ax.axhline(0.0, color="0.8", lw=0.6, zorder=0)
-    ax.legend(fontsize=8, loc="upper right", ncols=2)
+    _head(ax, f"a  records passed {short:g} to {long:g} days (the two fullest years)")
 
 
 def _fullest(pair: PairResult, size: int) -> np.datetime64:
@@ -135,7 +144,7 @@ def _fullest(pair: PairResult, size: int) -> np.datetime64:
 
 def _draw_correlation(ax: Axes, pair: PairResult) -> None:
     estimate, corr = pair.estimate, pair.correlation
-    ax.axvspan(estimate.low, estimate.high, color="0.85", lw=0, label="95 % interval of the lag")
+    ax.axvspan(estimate.low, estimate.high, color="0.85", lw=0, label="95 %")
     ax.plot(corr.lag, corr.value, color="0.2", lw=1.2)
     ax.plot(estimate.lag, estimate.correlation, "o", ms=4, color="0.2")
     ax.axvline(0.0, color="0.7", lw=0.6)
@@ -143,10 +152,9 @@ def _draw_correlation(ax: Axes, pair: PairResult) -> None:
     for prediction in pair.predictions:
         if np.isfinite(prediction.lag):
             ax.axvline(prediction.lag, color=MODE_COLOURS[prediction.mode], lw=1.6, ls="--",
-                       label=f"theory, mode {prediction.mode}")
-    ax.set_title("b  cross-correlation", loc="left", fontsize=9)
-    ax.set_xlabel("lag of the second record (days)", fontsize=8.5)
-    ax.legend(fontsize=7.5, loc="lower left")
+                       label=f"mode {prediction.mode}")
+    _head(ax, "b  cross-correlation; dashed: theory")
+    ax.set_xlabel("lag of the second record (days)", fontsize=7.5)
 
 
 def _draw_gain(ax: Axes, pair: PairResult) -> None:
@@ -165,11 +173,10 @@ def _draw_gain(ax: Axes, pair: PairResult) -> None:
     for p in pair.predictions:
         if np.isfinite(p.ratio):
             ax.plot(ends, p.ratio * fb / fa * ends, ls="--", lw=1.4, color=MODE_COLOURS[p.mode],
-                    label=f"theory, mode {p.mode}: {p.ratio * fb / fa:.2f}")
-    ax.set_title("c  amplitude at the lag", loc="left", fontsize=9)
-    ax.set_xlabel(f"{plain(pair.first.name, 30)} ({unit_a})", fontsize=8.5)
-    ax.set_ylabel(f"{plain(pair.second.name, 30)} ({unit_b})", fontsize=8.5)
-    ax.legend(fontsize=7.5, loc="lower right")
+                    label=f"mode {p.mode}: {p.ratio * fb / fa:.2f}")
+    _head(ax, "c  amplitude at the lag; dashed: theory")
+    ax.set_xlabel(f"{plain(pair.first.name, 30)} ({unit_a})", fontsize=7.5)
+    ax.set_ylabel(f"{plain(pair.second.name, 30)} ({unit_b})", fontsize=7.5)
 
 
 def _draw_coherence(ax: Axes, pair: PairResult) -> None:
@@ -179,11 +186,10 @@ def _draw_coherence(ax: Axes, pair: PairResult) -> None:
         ax.plot(spectrum.frequency[shown], spectrum.coherence[shown], color="0.2", lw=1.2)
         ax.axhline(spectrum.significant, color="0.5", lw=0.8, ls=":",
                    label="95 % of unrelated records lie below")
-        ax.legend(fontsize=7.5, loc="upper right")
     _draw_band(ax, pair)
     ax.set_ylim(0.0, 1.0)
-    ax.set_title("d  squared coherence", loc="left", fontsize=9)
-    ax.set_xlabel("frequency (cycles per day)", fontsize=8.5)
+    _head(ax, "d  squared coherence")
+    ax.set_xlabel("frequency (cycles per day)", fontsize=7.5)
 
 
 def _draw_phase(ax: Axes, pair: PairResult) -> None:
@@ -195,13 +201,12 @@ def _draw_phase(ax: Axes, pair: PairResult) -> None:
     for p in pair.predictions:
         if np.isfinite(p.lag):
             ax.plot(f, _wrapped(360.0 * f * p.lag), color=MODE_COLOURS[p.mode], lw=1.4, ls="--",
-                    label=f"theory, mode {p.mode}")
+                    label=f"mode {p.mode}")
     _draw_band(ax, pair)
     ax.set_ylim(-180.0, 180.0)
     ax.set_yticks(np.arange(-180, 181, 90))
-    ax.set_title("e  phase by which the second record lags (degrees)", loc="left", fontsize=9)
-    ax.set_xlabel("frequency (cycles per day)", fontsize=8.5)
-    ax.legend(fontsize=7.5, loc="lower right")
+    _head(ax, "e  phase by which the second lags (°)")
+    ax.set_xlabel("frequency (cycles per day)", fontsize=7.5)
 
 
 def _highest(pair: PairResult) -> float:
@@ -233,38 +238,36 @@ def draw_event(event: EventResult) -> Figure:
     """
     series = event.series
     unit, factor = _UNITS[series.quantity]
-    figure, axes = _figure(2, 1, 6.5, f"The event at {plain(series.name, 30)}")
+    figure, axes = _figure(2, 1, 120.0, f"The event at {plain(series.name, 30)}")
     span = float(event.delay[-1]) if event.delay.size else 120.0
     days = series.days - event.start
     shown = (days > -0.5 * span) & (days < 1.5 * span)
     top, bottom = axes[0, 0], axes[1, 0]
     top.plot(days[shown], factor * series.values[shown], color=RECORD_COLOURS[1], lw=1.2)
-    top.set_ylabel(f"{series.quantity} ({unit})", fontsize=8.5)
-    top.set_title(
-        f"a  record passed {event.band[0]:g} to {event.band[1]:g} days", loc="left", fontsize=9
-    )
+    top.set_ylabel(f"{series.quantity} ({unit})", fontsize=7.5)
     bottom.plot(event.delay, factor * event.amplitude, color="0.2", lw=1.2)
     estimate = event.estimate
     if np.isfinite(estimate.high):
         bottom.axvspan(estimate.low, estimate.high, color="0.85", lw=0, label="95 % interval")
-    bottom.set_ylabel(f"amplitude that fits ({unit})", fontsize=8.5)
-    bottom.set_title("b  amplitude of the event at each delay", loc="left", fontsize=9)
+    bottom.set_ylabel(f"amplitude that fits ({unit})", fontsize=7.5)
     for ax in (top, bottom):
         ax.axvline(0.0, color="0.6", lw=0.8)
         ax.axhline(0.0, color="0.8", lw=0.6, zorder=0)
         ax.set_xlim(-0.5 * span, 1.5 * span)
-        ax.set_xlabel("days after the start of the event", fontsize=8.5)
+        ax.set_xlabel("days after the start of the event", fontsize=7.5)
         _mark(ax, event.predictions)
-    bottom.legend(fontsize=7.5, loc="upper right")
-    figure.supxlabel(_verdicts(event), fontsize=8.5, parse_math=False)
-    return figure
+    title = f"a  record passed {event.band[0]:g} to {event.band[1]:g} days"
+    _head(top, title, legend=False)
+    _head(bottom, "b  amplitude of the event at each delay; dashed: theory")
+    figure.supxlabel(_verdicts(event), fontsize=7, parse_math=False)
+    return fit_for_print(figure)
 
 
 def _mark(ax: Axes, predictions: tuple[Prediction, ...]) -> None:
     for p in predictions:
         if np.isfinite(p.lag):
             ax.axvline(p.lag, color=MODE_COLOURS[p.mode], lw=1.6, ls="--",
-                       label=f"theory, mode {p.mode}")
+                       label=f"mode {p.mode}")
 
 
 def draw_mooring(mooring: MooringResult) -> Figure:
@@ -279,7 +282,7 @@ def draw_mooring(mooring: MooringResult) -> Figure:
     matplotlib.figure.Figure
     """
     parts = mooring.instruments
-    figure, axes = _figure(1, 1, 1.8 + 0.6 * len(parts),
+    figure, axes = _figure(1, 1, 40.0 + 14.0 * len(parts),
                            f"Mooring: ratios to {plain(mooring.reference, 30)}")
     ax = axes[0, 0]
     place = np.arange(len(parts))[::-1]
@@ -297,10 +300,9 @@ def draw_mooring(mooring: MooringResult) -> Figure:
     ], fontsize=8)
     ax.set_ylim(-0.6, len(parts) - 0.4)
     ax.axvline(0.0, color="0.6", lw=0.8)
-    ax.set_xlabel("ratio, in units of the largest of each row", fontsize=8.5)
+    ax.set_xlabel("ratio, in units of the largest of each row", fontsize=7.5)
     explained = ", ".join(
         f"mode {m} {100 * v:.0f} %" for m, v in zip(mooring.modes, mooring.explained, strict=True)
     )
-    ax.set_title(f"variance explained: {explained}", loc="left", fontsize=9)
-    ax.legend(fontsize=8, loc="center left", bbox_to_anchor=(1.01, 0.5))
-    return figure
+    _head(ax, f"variance explained: {explained}")
+    return fit_for_print(figure)

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 PAGE = 170.0
 """Width (mm) of both columns of a journal's page."""
 
-SMALL, NORMAL, LARGE = 7.0, 7.5, 9.0
+SMALL, NORMAL, MEDIUM, LARGE = 7.0, 7.5, 8.0, 9.0
 """Font sizes (points); none is below 7 when the figure is printed at its own size."""
 
 GREY = "#6a6a6a"
@@ -47,6 +47,26 @@ def new_figure(height: float, width: float = PAGE) -> Figure:
     return figure
 
 
+def arranged_figure(height: float, title: str) -> Figure:
+    """A figure whose parts find their places by themselves, with its title.
+
+    Parameters
+    ----------
+    height : float
+        mm.
+    title : str
+        Safe to print.
+
+    Returns
+    -------
+    matplotlib.figure.Figure
+    """
+    figure = new_figure(height)
+    figure.set_layout_engine("constrained")
+    figure.suptitle(title, fontsize=LARGE, fontweight="bold", parse_math=False)
+    return figure
+
+
 def add_axes(figure: Figure, left: float, bottom: float, width: float, height: float) -> Axes:
     """Axes at a place given in mm from the lower left corner."""
     full = [size * MILLIMETRES for size in figure.get_size_inches()]
@@ -72,7 +92,7 @@ def write_heading(figure: Figure, dataset: xr.Dataset, what: str) -> None:
 
 
 def save_figure(figure: Figure, folder: Path, name: str, dataset: xr.Dataset) -> None:
-    """Write a figure as PNG and as PDF, whose letters stay letters.
+    """Write a figure of arrivals, whose title becomes that of the PDF; see `save_for_print`.
 
     Parameters
     ----------
@@ -81,15 +101,50 @@ def save_figure(figure: Figure, folder: Path, name: str, dataset: xr.Dataset) ->
     name : str
         Of the files, without ending.
     dataset : xarray.Dataset
-        Its title becomes that of the PDF.
+    """
+    save_for_print(figure, folder, name, str(dataset.attrs["title"]))
+
+
+def save_for_print(figure: Figure, folder: Path, name: str, title: str) -> None:
+    """Write a figure as PNG and as PDF, whose letters stay letters.
+
+    Parameters
+    ----------
+    figure : matplotlib.figure.Figure
+    folder : Path
+    name : str
+        Of the files, without ending.
+    title : str
+        Of the PDF.
     """
     import matplotlib
 
     figure.savefig(folder / f"{name}.png", dpi=_DOTS)
     with matplotlib.rc_context({"pdf.fonttype": 42}):  # TrueType: text can be edited and searched
-        figure.savefig(
-            folder / f"{name}.pdf", metadata={"Title": plain(dataset.attrs["title"], 120)}
-        )
+        figure.savefig(folder / f"{name}.pdf", metadata={"Title": plain(title, 120)})
+
+
+def fit_for_print(figure: Figure) -> Figure:
+    """Give every text in a figure a size to be read when it is printed at its own size.
+
+    Parameters
+    ----------
+    figure : matplotlib.figure.Figure
+
+    Returns
+    -------
+    matplotlib.figure.Figure
+        The same.
+    """
+    from matplotlib.text import Text
+
+    for axes in figure.axes:
+        axes.tick_params(which="both", labelsize=SMALL, width=0.6, length=2.5, pad=2.0)
+        for text in axes.findobj(Text):
+            text.set_fontsize(min(max(text.get_fontsize(), SMALL), MEDIUM))
+    for text in figure.findobj(Text):
+        text.set_fontsize(min(max(text.get_fontsize(), SMALL), LARGE))
+    return figure
 
 
 def event_start(dataset: xr.Dataset) -> str:

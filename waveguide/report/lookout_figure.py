@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from waveguide.constants import SECONDS_PER_DAY
+from waveguide.report.figures import arranged_figure, fit_for_print, save_for_print
 from waveguide.report.text import plain
 
 if TYPE_CHECKING:
@@ -20,7 +21,7 @@ if TYPE_CHECKING:
 
 
 def write_diagrams(result: LookoutResult, folder: Path) -> None:
-    """Write ``distance_time_….png`` for every route.
+    """Write ``distance_time_…`` for every route, as PNG and PDF.
 
     Parameters
     ----------
@@ -29,8 +30,8 @@ def write_diagrams(result: LookoutResult, folder: Path) -> None:
     """
     for diagram in result.diagrams:
         place = re.sub(r"[^\w-]+", "-", diagram.line.target).strip("-").lower() or "target"
-        figure = draw_diagram(diagram, result)
-        figure.savefig(folder / f"distance_time_{place}_mode{diagram.line.mode}.png")
+        name = f"distance_time_{place}_mode{diagram.line.mode}"
+        save_for_print(draw_diagram(diagram, result), folder, name, result.title)
 
 
 def draw_diagram(diagram: Diagram, result: LookoutResult) -> Figure:
@@ -45,26 +46,20 @@ def draw_diagram(diagram: Diagram, result: LookoutResult) -> Figure:
     -------
     matplotlib.figure.Figure
     """
-    from matplotlib.backends.backend_agg import FigureCanvasAgg
-    from matplotlib.figure import Figure
-
-    figure = Figure(figsize=(9.5, 7.0), dpi=130, layout="constrained")
-    FigureCanvasAgg(figure)
+    line, speed = diagram.line, diagram.speed
+    figure = arranged_figure(
+        130.0, f"{plain(result.title, 60)}: mode {line.mode} to {plain(line.target, 30)}"
+    )
     ax = figure.subplots()
     _draw_field(figure, ax, diagram, result.variable)
     _draw_characteristics(ax, diagram, result.duration)
     _draw_legs(ax, diagram)
-    line, speed = diagram.line, diagram.speed
-    figure.suptitle(
-        f"{plain(result.title, 60)}: mode {line.mode} to {plain(line.target, 30)}",
-        fontsize=12, fontweight="bold", parse_math=False,
-    )
-    ax.set_xlabel(f"distance along the route (km)\n{speed.verdict}: {speed.reason}", fontsize=9,
+    ax.set_xlabel(f"distance along the route (km)\n{speed.verdict}: {speed.reason}", fontsize=7.5,
                   parse_math=False)
     start = np.datetime_as_string(result.start, unit="m").replace("T", " ")
-    ax.set_ylabel(f"days after {start} UTC", fontsize=9)
-    ax.legend(fontsize=8, loc="upper left", framealpha=0.9)
-    return figure
+    ax.set_ylabel(f"days after {start} UTC", fontsize=7.5)
+    figure.legend(loc="outside lower center", ncols=3, frameon=False, fontsize=7)
+    return fit_for_print(figure)
 
 
 def _draw_field(figure: Figure, ax: Axes, diagram: Diagram, variable: str) -> None:
@@ -76,7 +71,7 @@ def _draw_field(figure: Figure, ax: Axes, diagram: Diagram, variable: str) -> No
     )
     ax.set_facecolor("0.85")
     bar = figure.colorbar(shown, ax=ax, extend="both", pad=0.02)
-    bar.set_label(f"{plain(variable, 40)}, without its median at each place", fontsize=9,
+    bar.set_label(f"{plain(variable, 40)}, without its median at each place", fontsize=7.5,
                   parse_math=False)
 
 
@@ -107,5 +102,5 @@ def _draw_legs(ax: Axes, diagram: Diagram) -> None:
             ax.axvline(a, color="0.3", lw=0.8)
         if (b - a) * 1e3 > 0.07 * length:
             kind = line.kinds[int(line.leg[(first + last) // 2])]
-            ax.text(0.5 * (a + b), 1.01, kind, fontsize=8.5,
+            ax.text(0.5 * (a + b), 1.01, kind, fontsize=7,
                     ha="center", va="bottom", transform=ax.get_xaxis_transform())

@@ -14,6 +14,7 @@ from waveguide.constants import SECONDS_PER_DAY
 from waveguide.forcing.answers import RESPONDS, TargetResponse
 from waveguide.network.graph import Network, StepKind
 from waveguide.report.colours import MODE_COLOURS
+from waveguide.report.figures import arranged_figure, fit_for_print, save_for_print
 from waveguide.report.response_text import place
 from waveguide.report.text import plain
 
@@ -35,7 +36,7 @@ _NOTE = "#6a6a6a"
 
 
 def write_response_figures(result: ResponseResult, dataset: xr.Dataset, folder: Path) -> None:
-    """Write ``sea_level.png`` and a ``cause_….png`` for each target.
+    """Write ``sea_level`` and a ``cause_…`` for each target, as PNG and PDF.
 
     Parameters
     ----------
@@ -44,21 +45,18 @@ def write_response_figures(result: ResponseResult, dataset: xr.Dataset, folder: 
         As declared in `RESPONSE`.
     folder : Path
     """
-    draw_series(dataset).savefig(folder / "sea_level.png")
+    title = str(dataset.attrs["title"])
+    save_for_print(draw_series(dataset), folder, "sea_level", title)
     for target, name in enumerate(result.target[:MOST_TARGETS]):
         figure = draw_cause(result, dataset, target)
         if figure is not None:
             slug = re.sub(r"[^\w-]+", "-", plain(name, 60)).strip("-").lower() or "target"
-            figure.savefig(folder / f"cause_{target + 1:02d}_{slug}.png")
+            save_for_print(figure, folder, f"cause_{target + 1:02d}_{slug}", title)
 
 
-def _figure(size: tuple[float, float], title: str, note: str) -> Figure:
-    from matplotlib.backends.backend_agg import FigureCanvasAgg
-    from matplotlib.figure import Figure
-
-    figure = Figure(figsize=size, dpi=130, layout="constrained")
-    FigureCanvasAgg(figure)
-    figure.suptitle(title, fontsize=12, fontweight="bold", parse_math=False)
+def _figure(height: float, title: str, note: str) -> Figure:
+    """An empty figure of a height in mm."""
+    figure = arranged_figure(height, title)
     if note:
         figure.supxlabel(note, fontsize=7, color=_NOTE, parse_math=False)
     return figure
@@ -81,14 +79,14 @@ def draw_series(dataset: xr.Dataset) -> Figure:
     """
     count = min(dataset.sizes["target"], MOST_TARGETS)
     figure = _figure(
-        (9.5, 1.2 + 1.35 * count), plain(dataset.attrs["title"], 85), _caution(dataset)
+        25.0 + 24.0 * count, plain(dataset.attrs["title"], 85), _caution(dataset)
     )
     axes = figure.subplots(count, 1, sharex=True, squeeze=False)[:, 0]
     for target, axis in enumerate(axes):
         _draw_target(axis, dataset, target)
     axes[0].legend(loc="lower right", bbox_to_anchor=(1.0, 0.97), ncols=6, fontsize=8,
                    frameon=False)
-    return figure
+    return fit_for_print(figure)
 
 
 def _draw_target(axis: Axes, dataset: xr.Dataset, target: int) -> None:
@@ -135,7 +133,7 @@ def draw_cause(result: ResponseResult, dataset: xr.Dataset, target: int) -> Figu
         f"{100.0 * float(dataset['total_peak'].values[target]):+.1f} cm of "
         f"{np.datetime_as_string(peak, unit='D')}"
     )
-    figure = _figure((9.5, 8.2), title.replace(" -", " −"), "")
+    figure = _figure(150.0, title.replace(" -", " −"), "")
     parts: Any = figure.subfigures(2, 1, height_ratios=(1.7, 1.0))
     above, below = parts
     left, right = above.subplots(1, 2, sharey=True)
@@ -150,7 +148,7 @@ def draw_cause(result: ResponseResult, dataset: xr.Dataset, target: int) -> Figu
     left.set_ylabel("–".join(dict.fromkeys(years)), fontsize=8)
     _draw_bars(below.subplots(), dataset, target)
     below.supxlabel(_caution(dataset), fontsize=7, color=_NOTE)
-    return figure
+    return fit_for_print(figure)
 
 
 def _leading_mode(result: ResponseResult, target: int) -> int | None:

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
+from waveguide.report.figures import LARGE, fit_for_print, new_figure
 from waveguide.report.text import plain
 
 if TYPE_CHECKING:
@@ -36,11 +37,7 @@ def draw_section(dataset: xr.Dataset) -> Figure:
     matplotlib.figure.Figure
         Depths and N² above, pressure of up to three modes below.
     """
-    from matplotlib.backends.backend_agg import FigureCanvasAgg
-    from matplotlib.figure import Figure
-
-    figure = Figure(figsize=(10.0, 7.6), dpi=150)
-    FigureCanvasAgg(figure)
+    figure = new_figure(130.0)
     rows = figure.add_gridspec(
         2, 12, height_ratios=(1.0, 1.05), left=0.08, right=0.90, top=0.90, bottom=0.09,
         hspace=0.42, wspace=1.2,
@@ -54,8 +51,8 @@ def draw_section(dataset: xr.Dataset) -> Figure:
         colours = _draw_mode(axes, dataset, int(row), first=place == 0)
         panels.append(axes)
     _draw_scale(figure, panels, colours)
-    figure.suptitle(_title(dataset), x=0.08, y=0.975, ha="left", fontsize=11)
-    return figure
+    figure.suptitle(_title(dataset), x=0.08, y=0.975, ha="left", fontsize=LARGE)
+    return fit_for_print(figure)
 
 
 def _title(dataset: xr.Dataset) -> str:
@@ -159,5 +156,5 @@ def _filled_below(pressure: Array) -> Array:
 def _draw_scale(figure: Figure, panels: list[Axes], colours: Any) -> None:
     box = panels[-1].get_position()
     scale = figure.colorbar(colours, cax=figure.add_axes((0.915, box.y0, 0.014, box.height)))
-    scale.set_label("Pressure relative to the coast's surface", fontsize=9)
+    scale.set_label("Pressure relative to the coast's surface", fontsize=7)
     scale.set_ticks([-1.0, -0.5, 0.0, 0.5, 1.0])

@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from waveguide.errors import InputError
+from waveguide.report.figures import save_for_print
 from waveguide.report.section_figure import draw_section
 
 if TYPE_CHECKING:
@@ -36,8 +37,7 @@ def write_section(dataset: xr.Dataset, folder: Path) -> None:
         if variable.dtype.kind == "f"
     }
     try:
-        figure.savefig(folder / "section.png", dpi=figure.dpi)
-        figure.savefig(folder / "section.pdf", metadata={"Title": dataset.attrs["title"]})
+        save_for_print(figure, folder, "section", dataset.attrs["title"])
         dataset.to_netcdf(folder / "section.nc", engine="netcdf4", encoding=encoding)
     except OSError as error:
         raise InputError(
