@@ -107,6 +107,16 @@ def test_the_legend_lies_outside_the_map(figure):
     assert {text.get_text() for text in legend.get_texts()} >= {"mode 1", "mode 2", "event"}
 
 
+def test_the_map_is_fit_for_print(figure):
+    from matplotlib.text import Text
+
+    assert figure.get_figwidth() * 25.4 == pytest.approx(170.0)
+    assert min(t.get_fontsize() for t in figure.findobj(Text) if t.get_text()) >= 7.0
+    (legend,) = figure.legends
+    box = legend.get_window_extent(figure.canvas.get_renderer())
+    assert 0.0 <= box.x0 < box.x1 <= figure.bbox.x1
+
+
 def test_routes_are_drawn_without_running_across_the_map(figure):
     (axes,) = figure.axes
     wide = np.ptp(axes.get_xlim())

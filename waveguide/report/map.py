@@ -9,6 +9,16 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.geodesy import wrap_longitude
+from waveguide.report.figures import (
+    GREY,
+    LARGE,
+    MILLIMETRES,
+    NORMAL,
+    PAGE,
+    SMALL,
+    new_figure,
+    save_figure,
+)
 from waveguide.report.map_labels import LabelPlacer
 from waveguide.report.map_view import Bounds, View, choose_view, draw_graticule, draw_land, extent
 from waveguide.report.routes import leg_line, legs_of, split_at_date_line, vertices_of
@@ -23,6 +33,8 @@ if TYPE_CHECKING:
 
 _COLOURS = {0: "#3b3b3b", 1: "#1f6fb4", 2: "#e06c00", 3: "#0a8f63"}
 """Of the modes; they stay apart in the common kinds of colour blindness."""
+
+_MOST_IN_LINE = 6  # entries of the legend
 
 _TICK_STEPS = np.array([0.05, 0.1, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0, 200.0])
 """Intervals of the travel-time ticks (days)."""
@@ -47,9 +59,7 @@ def write_map(dataset: xr.Dataset, folder: Path) -> None:
         Arrivals that pass :func:`waveguide.schema.check`.
     folder : Path
     """
-    figure = draw_map(dataset)
-    figure.savefig(folder / "map.png", dpi=figure.dpi)
-    figure.savefig(folder / "map.pdf", metadata={"Title": plain(dataset.attrs["title"], 120)})
+    save_figure(draw_map(dataset), folder, "map", dataset)
 
 
 def draw_map(dataset: xr.Dataset) -> Figure:
@@ -97,16 +107,12 @@ def _all_positions(dataset: xr.Dataset) -> tuple[Array, Array]:
 
 def _frame(dataset: xr.Dataset, bounds: Bounds) -> tuple[Figure, Axes]:
     """A figure of the shape of the map, with room for title and legend outside the axes."""
-    from matplotlib.backends.backend_agg import FigureCanvasAgg
-    from matplotlib.figure import Figure
-
     shape = (bounds[3] - bounds[2]) / (bounds[1] - bounds[0])
-    width = min(9.4, 7.4 / shape)
+    left, right, below, above = 0.55, 0.2, 0.95, 0.55  # inches
+    width = min(PAGE / MILLIMETRES - left - right, 6.4 / shape)
     height = width * shape
-    left, right, below, above = 0.65, 0.25, 1.15, 0.75
-    full = max(width + left + right, 7.0), height + below + above
-    figure = Figure(figsize=full, dpi=150)
-    FigureCanvasAgg(figure)
+    figure = new_figure((height + below + above) * MILLIMETRES)
+    full = figure.get_size_inches()
     inset = (full[0] - width - left - right) / 2.0 + left
     axes = figure.add_axes(
         (inset / full[0], below / full[1], width / full[0], height / full[1]),
@@ -121,9 +127,9 @@ def _frame(dataset: xr.Dataset, bounds: Bounds) -> tuple[Figure, Axes]:
         f"dominant period {attributes['period_days']:g} days; times in days from its start"
     )
     style: dict[str, Any] = {"ha": "center", "parse_math": False}
-    title = plain(attributes["title"], 85)
-    figure.text(0.5, 1.0 - 0.32 / full[1], title, fontsize=12, weight="bold", **style)
-    figure.text(0.5, 1.0 - 0.58 / full[1], subtitle, fontsize=8.5, color="#4a4a4a", **style)
+    title = plain(attributes["title"], 80)
+    figure.text(0.5, 1.0 - 0.2 / full[1], title, fontsize=LARGE, weight="bold", **style)
+    figure.text(0.5, 1.0 - 0.4 / full[1], subtitle, fontsize=NORMAL, color="#4a4a4a", **style)
     return figure, axes
 
 
@@ -195,7 +201,8 @@ def _draw_places(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlace
     names = [plain(dataset.attrs["event_name"] or "event", 32)]
     names += [plain(name, 28) for name in dataset["target"].values]
     for name, x, y in zip(names, np.append(sx, tx), np.append(sy, ty), strict=True):
-        labels.place(name, float(x), float(y), (5, 12, 22, 36, 52, 70), True, fontsize=8, zorder=8)
+        labels.place(name, float(x), float(y), (5, 12, 22, 36, 52, 70), True, fontsize=NORMAL,
+                     zorder=8)
 
 
 def _draw_box(axes: Axes, dataset: xr.Dataset, view: View) -> None:
@@ -233,7 +240,7 @@ def _draw_ticks(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer
                 markeredgewidth=1.4,
                 zorder=5,
             )
-            style: dict[str, Any] = {"fontsize": 7, "color": _COLOURS[mode], "zorder": 7.5}
+            style: dict[str, Any] = {"fontsize": SMALL, "color": _COLOURS[mode], "zorder": 7.5}
             labels.place(f"{number * steps[mode]:g} d", x, y, (6.0, 10.0), False, **style)
 
 
@@ -295,14 +302,14 @@ def _draw_legend(figure: Figure, axes: Axes, dataset: xr.Dataset) -> None:
     figure.legend(
         handles=handles,
         loc="lower center",
-        bbox_to_anchor=(0.5, 0.34 / height),
-        ncols=7 if figure.get_figwidth() > 9.0 else 4,
+        bbox_to_anchor=(0.5, 0.22 / height),
+        ncols=len(handles) if len(handles) <= _MOST_IN_LINE else -(-len(handles) // 2),
         columnspacing=1.4,
-        fontsize=8.5,
+        fontsize=NORMAL,
         frameon=False,
     )
     note = dataset.attrs["caution"].split("; ")[0].split(": ")[0]
-    figure.text(0.5, 0.14 / height, note + ".", ha="center", fontsize=7, color="#6a6a6a")
+    figure.text(0.5, 0.08 / height, note + ".", ha="center", fontsize=SMALL, color=GREY)
 
 
 def _mode_name(mode: int) -> str:

@@ -179,7 +179,7 @@ def draw_graticule(axes: Axes, view: View, bounds: Bounds) -> None:
     axes.set_xticklabels([_degrees(lon, "EW") for lon in wrap_longitude(easts + view.middle)])
     axes.set_yticks(view.project(np.zeros_like(norths), norths)[1])
     axes.set_yticklabels([_degrees(lat, "NS") for lat in norths])
-    axes.tick_params(length=0, labelsize=8, colors="#4a4a4a")
+    axes.tick_params(length=0, labelsize=7, colors="#4a4a4a")
     axes.set_axisbelow(True)
     axes.grid(color=LINE_COLOUR, linewidth=0.5, zorder=0)
 
