@@ -10,6 +10,7 @@ import numpy as np
 import pytest
 import xarray as xr
 
+import waveguide
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.planning import plan
@@ -18,6 +19,7 @@ from waveguide.report.plan_dataset import PLAN
 from waveguide.report.plan_files import write_plan
 from waveguide.report.plan_text import plan_document, plan_table
 from waveguide.scenario import Scenario, Uncertainty, read_scenario
+from waveguide.schema import REMARKS, VALIDITY
 
 HOSTILE = [
     "=HYPERLINK('x')", "<script>alert(1)</script>", "\u202eevil\u202c", "two\nlines\tand\x1b[31m",
@@ -101,6 +103,21 @@ def test_document_is_json_with_every_row(answer):
     assert set(row["time_share"]) == set(INPUTS)
     assert document["rows"][-1]["look_from_date"] is None
     assert document["members"] == 2048
+
+
+def test_a_plan_says_how_its_answers_stand_to_the_theory(answer):
+    arrivals = waveguide.arrivals(question())
+    for name in (*VALIDITY, *REMARKS):
+        np.testing.assert_array_equal(answer[name].values, arrivals[name].values)
+    rows = plan_document(answer)["rows"]
+    assert isinstance(rows[0]["coast_radius_radii"], float)
+    told = [(c["kind"], c["unit"], c["number"]) for row in rows for c in row["cautions"]]
+    names = ("kind", "unit", "number")
+    listed = list(zip(*(answer[f"remark_{name}"].values.tolist() for name in names), strict=True))
+    assert [one[:2] for one in told] == [one[:2] for one in listed]
+    np.testing.assert_allclose([n for *_, n in told], [n for *_, n in listed], rtol=1e-8)
+    assert told
+    assert "Cautions, the most serious first" in plan_table(answer)
 
 
 def test_csv_has_a_line_for_each_row_and_runs_no_formula(answer, tmp_path):

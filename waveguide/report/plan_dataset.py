@@ -10,7 +10,7 @@ import numpy as np
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.modes.visibility import NOISE, QUANTITIES, clarity
 from waveguide.propagation.priors import INPUTS
-from waveguide.schema import ARRIVALS, REMARKS, Variable, assemble
+from waveguide.schema import ARRIVALS, REMARKS, VALIDITY, Variable, assemble
 
 if TYPE_CHECKING:
     import xarray as xr
@@ -24,6 +24,7 @@ _ROW = ("target", "mode")
 _SPREAD = (*_ROW, "percentile")
 _INPUT = (*_ROW, "input")
 _MEASURED = (*_ROW, "quantity")
+_SHARED = (*VALIDITY, *REMARKS)  # with the arrivals
 
 
 def _number(dims: tuple[str, ...], long_name: str, units: str) -> Variable:
@@ -73,7 +74,7 @@ PLAN: dict[str, Variable] = {
         _MEASURED, "signal over noise for the median peak, or for 1 cm if that is unknown", "1"
     ),
     "measure_first": Variable(_ROW, "text", "quantity that stands out most"),
-    **{name: ARRIVALS[name] for name in REMARKS},
+    **{name: ARRIVALS[name] for name in _SHARED},
 }
 """Rows of targets and modes; what is not reached has missing numbers."""
 
@@ -102,7 +103,7 @@ def plan_dataset(
     values: dict[str, Any] = {
         "target": arrivals["target"].values, "mode": modes, "percentile": PERCENT,
         "input": INPUTS, "quantity": QUANTITIES, "status": arrivals["status"].values,
-        **{name: arrivals[name].values for name in REMARKS},
+        **{name: arrivals[name].values for name in _SHARED},
     }  # fmt: skip
     lines = [
         [_row(scenario, rows.get((target, mode))) for mode in modes]
