@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from waveguide.geodesy import wrap_longitude
+from waveguide.report.colours import MODE_COLOURS
 from waveguide.report.figures import (
     GREY,
     LARGE,
@@ -30,9 +31,6 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
     from waveguide.geodesy import Array
-
-_COLOURS = {0: "#3b3b3b", 1: "#1f6fb4", 2: "#e06c00", 3: "#0a8f63"}
-"""Of the modes; they stay apart in the common kinds of colour blindness."""
 
 _MOST_IN_LINE = 6  # entries of the legend
 
@@ -165,7 +163,7 @@ def _draw_line(axes: Axes, line: _Line) -> None:
     for piece in line.pieces:
         axes.plot(
             *piece.T,
-            color=_COLOURS[line.mode],
+            color=MODE_COLOURS[line.mode],
             linewidth=line.width,
             linestyle=line.dashes,
             solid_capstyle="round",
@@ -236,11 +234,11 @@ def _draw_ticks(axes: Axes, dataset: xr.Dataset, view: View, labels: LabelPlacer
                 y,
                 marker=(2, 0, along),
                 markersize=9.0 + widths[mode],
-                markeredgecolor=_COLOURS[mode],
+                markeredgecolor=MODE_COLOURS[mode],
                 markeredgewidth=1.4,
                 zorder=5,
             )
-            style: dict[str, Any] = {"fontsize": SMALL, "color": _COLOURS[mode], "zorder": 7.5}
+            style: dict[str, Any] = {"fontsize": SMALL, "color": MODE_COLOURS[mode], "zorder": 7.5}
             labels.place(f"{number * steps[mode]:g} d", x, y, (6.0, 10.0), False, **style)
 
 
@@ -283,7 +281,7 @@ def _draw_legend(figure: Figure, axes: Axes, dataset: xr.Dataset) -> None:
     widths = _widths(dataset)
     present = sorted({int(dataset["mode"].values[i]) for i in dataset["route_mode"].values})
     handles = [
-        Line2D([], [], color=_COLOURS[m], lw=widths[m], label=_mode_name(m)) for m in present
+        Line2D([], [], color=MODE_COLOURS[m], lw=widths[m], label=_mode_name(m)) for m in present
     ]
     if (dataset["leg_kind"].values == "attachment").any():
         handles.append(Line2D([], [], color="#3b3b3b", lw=1.2, ls=":", label="to the guide"))
