@@ -25,9 +25,11 @@ SIGHT = {
     ),
 }
 PALETTES = {
-    "modes": list(MODE_COLOURS.values()), "fates": [*FATE_COLOURS.values(), "#56636d"],  # and what is left, on the page
-    "kinds": list(KIND_COLOURS.values()), "records": list(RECORD_COLOURS),
-}  # fmt: skip
+    "modes": list(MODE_COLOURS.values()),
+    "fates": [*FATE_COLOURS.values(), "#56636d"],  # the page draws what is left in the last one
+    "kinds": list(KIND_COLOURS.values()),
+    "records": list(RECORD_COLOURS),
+}
 
 
 def linear(colour: str) -> np.ndarray:
