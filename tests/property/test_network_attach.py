@@ -6,7 +6,7 @@ from functools import cache
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
 from waveguide.coast.effective import CoastRule
@@ -114,6 +114,7 @@ def test_place_far_inland_is_refused_with_its_distance():
 def test_ties_do_not_know_the_date_line(lat, lon):
     here, found = ties(lon, lat)
     there, turned = ties((lon + 180.0 + 180.0) % 360.0 - 180.0, lat, 180)
+    assume(abs(found.nearest_radii - 3.0) > 0.06)  # distances agree within 2 %, the limit is sharp
     assert turned.node.size == found.node.size
     assert np.sort(turned.distance) == pytest.approx(np.sort(found.distance), rel=0.02, abs=3e3)
     assert np.sort(turned.factor) == pytest.approx(np.sort(found.factor), rel=0.05)
