@@ -1,8 +1,8 @@
 """A curvilinear model grid of an open package, read and mapped.
 
 Three months of sea surface temperature on a tripolar grid of one degree, from iris-sample-data (Met
-Office, Open Government Licence). The package is 29 MB and nothing else needs it, so it is no
-dependency: the tests are skipped where it is not installed.
+Office, Open Government Licence). At the equator its cells are three times as long along it as
+across it, so that bins by the nearest neighbour would be empty every other time.
 """
 
 from __future__ import annotations
@@ -62,7 +62,7 @@ def test_the_pacific_equator_is_mapped(field):
     assert np.isfinite(taken.diagram).mean() > 0.95
     west, east = np.nanmean(taken.diagram[:, :10]), np.nanmean(taken.diagram[:, -10:])
     assert 27.0 < west < 31.0  # the warm pool
-    assert east < west - 1.0
+    assert east < west  # the cold tongue, at its warmest from January to March
 
 
 def test_a_coast_near_the_pole_is_mapped_on_its_sea_side_only(field):

@@ -88,8 +88,7 @@ def guide_cells(lines: Sequence[RouteLine], lon: Array, lat: Array) -> GuideCell
             "and latitude are not what they seem"
         )
     where = unit_vectors(lon.ravel()[flat], lat.ravel()[flat])
-    tree = cKDTree(where)
-    spacing = typical_spacing(where, tree, lines)
+    spacing = typical_spacing(cKDTree(where), lines)
     found = [_on_route(line, where, spacing) for line in lines]
     first_bin = np.concatenate([[0], np.cumsum([part.bins.size for part in found])])
     rows = np.concatenate([part.cell for part in found])
@@ -137,14 +136,30 @@ def near_cells(lines: Sequence[RouteLine], lon: Array, lat: Array) -> Index:
     return np.flatnonzero(found)
 
 
-def typical_spacing(where: Array, tree: cKDTree, lines: Sequence[RouteLine]) -> float:
-    """Median distance between neighbouring cells along the routes (m)."""
-    lon = np.concatenate([line.lon for line in lines])
-    lat = np.concatenate([line.lat for line in lines])
-    _, near = tree.query(unit_vectors(lon, lat))
-    near = np.unique(near)
-    away, _ = tree.query(where[near], k=min(2, len(where)))
-    return float(arc(np.median(np.atleast_2d(away)[:, -1])))
+def typical_spacing(tree: cKDTree, lines: Sequence[RouteLine]) -> float:
+    """Distance along the routes from one cell to the next (m).
+
+    Cells of many grids are far longer one way than the other, so what counts for bins without holes
+    is how far the nearest cell stays the same as one goes along: its median, which stretches
+    outside a regional model do not change.
+
+    Parameters
+    ----------
+    tree : cKDTree
+        Of the cells' unit vectors.
+    lines : sequence of RouteLine
+
+    Returns
+    -------
+    float
+    """
+    stays = [np.zeros(0)]
+    for line in lines:
+        distance, lon, lat = densified(line, ROUTE_SPACING)
+        _, nearest = tree.query(unit_vectors(lon, lat))
+        stays.append(np.diff(distance[np.flatnonzero(np.diff(nearest))]))
+    known = np.concatenate(stays)
+    return float(np.median(known)) if known.size else float(lines[0].distance[-1])
 
 
 @dataclass(frozen=True)
