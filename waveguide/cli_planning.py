@@ -56,5 +56,5 @@ def answer_with_page(question: Scenario, folder: Path) -> Study:
     with Progress() as progress:
         answer = planned(question, progress=progress)
         progress("page")
-        write_page(answer.study.dataset, answer.dataset, route_sections(answer.study), folder)
+        write_page(answer.study.arrays, answer.dataset, route_sections(answer.study), folder)
     return answer.study

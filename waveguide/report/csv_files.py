@@ -73,26 +73,27 @@ def cell(value: Any) -> Any:
 
 
 def _arrival_rows(dataset: xr.Dataset) -> Iterator[list[Any]]:
-    for t, target in enumerate(dataset["target"].values):
-        for m, mode in enumerate(dataset["mode"].values):
-            place = [dataset[name].values[t] for name in _PLACE]
-            yield [target, *place, mode, *(dataset[name].values[t, m] for name in _ROW)]
+    for t, target in enumerate(dataset.variables["target"].values):
+        for m, mode in enumerate(dataset.variables["mode"].values):
+            place = [dataset.variables[name].values[t] for name in _PLACE]
+            yield [target, *place, mode, *(dataset.variables[name].values[t, m] for name in _ROW)]
 
 
 def _leg_rows(dataset: xr.Dataset) -> Iterator[list[Any]]:
     for route in range(dataset.sizes["route"]):
         head = [
-            dataset[dim].values[dataset[f"route_{dim}"].values[route]] for dim in ("target", "mode")
+            dataset.variables[dim].values[dataset.variables[f"route_{dim}"].values[route]]
+            for dim in ("target", "mode")
         ]
-        head += [dataset[name].values[route] for name in _ROUTE]
+        head += [dataset.variables[name].values[route] for name in _ROUTE]
         for number, leg in enumerate(legs_of(dataset, route), start=1):
-            yield [*head, number, *(dataset[name].values[leg] for name in _LEG)]
+            yield [*head, number, *(dataset.variables[name].values[leg] for name in _LEG)]
 
 
 def _instrument_rows(dataset: xr.Dataset) -> Iterator[list[Any]]:
     for i in range(dataset.sizes["instrument"]):
         whose = [
-            dataset[dim].values[dataset[f"instrument_{dim}"].values[i]]
+            dataset.variables[dim].values[dataset.variables[f"instrument_{dim}"].values[i]]
             for dim in ("target", "mode")
         ]
-        yield [*whose, *(dataset[name].values[i] for name in _INSTRUMENT)]
+        yield [*whose, *(dataset.variables[name].values[i] for name in _INSTRUMENT)]

@@ -17,18 +17,21 @@ from waveguide.report.page_data import page_data
 if TYPE_CHECKING:
     import xarray as xr
 
+    from waveguide.stored import Stored
+
 _PARTS = Path(__file__).parent / "page_parts"
 _SCRIPTS = ("data.js", "projection.js", "map.js", "charts.js", "panels.js", "main.js")
 
 
 def write_page(
-    arrivals: xr.Dataset, plan: xr.Dataset, sections: Sequence[Mapping[str, Any]], folder: Path
+    arrivals: Stored, plan: xr.Dataset, sections: Sequence[Mapping[str, Any]], folder: Path
 ) -> None:
     """Write ``page.html``.
 
     Parameters
     ----------
-    arrivals, plan : xarray.Dataset
+    arrivals : xarray.Dataset or Arrays
+    plan : xarray.Dataset
     sections : sequence of mapping
         As for :func:`waveguide.report.page_data.page_data`.
     folder : Path

@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     import xarray as xr
 
     from waveguide.geodesy import Array
+    from waveguide.stored import Stored
 
 _MOST_POINTS = 500  # of a waveform: more than a chart has pixels
 _LONGEST_NAME = 80
@@ -54,13 +55,13 @@ _CHECKS: tuple[tuple[str, str, str, Callable[[float], bool]], ...] = (
 
 
 def page_data(
-    arrivals: xr.Dataset, plan: xr.Dataset, sections: Sequence[Mapping[str, Any]]
+    arrivals: Stored, plan: xr.Dataset, sections: Sequence[Mapping[str, Any]]
 ) -> dict[str, Any]:
     """Everything the page shows.
 
     Parameters
     ----------
-    arrivals : xarray.Dataset
+    arrivals : xarray.Dataset or Arrays
         Arrivals that pass :func:`waveguide.schema.check`.
     plan : xarray.Dataset
         The plan for the same targets and modes; see :mod:`waveguide.report.plan_dataset`.
@@ -98,7 +99,7 @@ def page_data(
     }  # fmt: skip
 
 
-def _positions(arrivals: xr.Dataset) -> tuple[Array, Array]:
+def _positions(arrivals: Stored) -> tuple[Array, Array]:
     """Longitudes and latitudes of all that must be seen."""
     lon, lat = (
         np.concatenate([
@@ -114,7 +115,7 @@ def _mode_name(mode: int) -> str:
     return "mode 0 (barotropic)" if mode == 0 else f"mode {mode}"
 
 
-def _event(arrivals: xr.Dataset) -> dict[str, Any]:
+def _event(arrivals: Stored) -> dict[str, Any]:
     attributes = arrivals.attrs
     start = attributes["event_start"]
     box = attributes.get("event_box_west_south_east_north")
@@ -129,7 +130,7 @@ def _event(arrivals: xr.Dataset) -> dict[str, Any]:
     }
 
 
-def _facts(arrivals: xr.Dataset, plan: xr.Dataset) -> list[list[str]]:
+def _facts(arrivals: Stored, plan: xr.Dataset) -> list[list[str]]:
     """What the answer was computed from, as names and values."""
     attributes = plan.attrs
     return [
@@ -144,7 +145,7 @@ def _facts(arrivals: xr.Dataset, plan: xr.Dataset) -> list[list[str]]:
     ]
 
 
-def _target(arrivals: xr.Dataset, plan: xr.Dataset, t: int) -> dict[str, Any]:
+def _target(arrivals: Stored, plan: xr.Dataset, t: int) -> dict[str, Any]:
     return {
         "name": plain(arrivals["target"].values[t], _LONGEST_NAME),
         "lon": _round(float(arrivals["target_longitude"].values[t]), 3),
@@ -153,7 +154,7 @@ def _target(arrivals: xr.Dataset, plan: xr.Dataset, t: int) -> dict[str, Any]:
     }
 
 
-def _row(arrivals: xr.Dataset, plan: xr.Dataset, row: tuple[int, int]) -> dict[str, Any]:
+def _row(arrivals: Stored, plan: xr.Dataset, row: tuple[int, int]) -> dict[str, Any]:
     """One target and mode."""
     status = str(arrivals["status"].values[row])
     if status != "reached":
@@ -176,7 +177,7 @@ def _row(arrivals: xr.Dataset, plan: xr.Dataset, row: tuple[int, int]) -> dict[s
     }
 
 
-def _instruments(arrivals: xr.Dataset, row: tuple[int, int]) -> list[dict[str, Any]]:
+def _instruments(arrivals: Stored, row: tuple[int, int]) -> list[dict[str, Any]]:
     """What the instruments of a mooring see per centimetre of sea level."""
     names = {
         "depth": "depth_m", "rise": "displacement_m_per_cm", "flow": "current_cm_s_per_cm",
@@ -220,7 +221,7 @@ def _shares(names: Sequence[str], shares: Array) -> list[list[Any]]:
     return [[str(names[i]), _round(float(shares[i]), 3)] for i in order]
 
 
-def _checks(arrivals: xr.Dataset, row: tuple[int, int]) -> list[list[Any]]:
+def _checks(arrivals: Stored, row: tuple[int, int]) -> list[list[Any]]:
     """Each assumption that applies: its name, number, limit, and whether it is beyond it."""
     found = []
     for name, words, bound, beyond in _CHECKS:
@@ -230,7 +231,7 @@ def _checks(arrivals: xr.Dataset, row: tuple[int, int]) -> list[list[Any]]:
     return found
 
 
-def _route(arrivals: xr.Dataset, route: int) -> dict[str, Any]:
+def _route(arrivals: Stored, route: int) -> dict[str, Any]:
     """A route with its legs and the vertices of all of them, in order of travel."""
     legs = legs_of(arrivals, route)
     spans = [vertices_of(arrivals, leg) for leg in legs]
@@ -248,7 +249,7 @@ def _route(arrivals: xr.Dataset, route: int) -> dict[str, Any]:
     }
 
 
-def _leg(arrivals: xr.Dataset, leg: int, vertices: int) -> dict[str, Any]:
+def _leg(arrivals: Stored, leg: int, vertices: int) -> dict[str, Any]:
     def value(name: str, digits: int) -> float | None:
         return _round(float(arrivals[name].values[leg]), digits)
 
@@ -271,7 +272,7 @@ def _steps(values: Array, scale: float) -> list[int]:
     return [int(v) for v in np.diff(whole, prepend=0)]
 
 
-def _waves(arrivals: xr.Dataset) -> dict[str, Any]:
+def _waves(arrivals: Stored) -> dict[str, Any]:
     """Waveforms on a common axis, each as whole numbers of a thousandth of its largest value."""
     every = max(1, -(-arrivals.sizes["time"] // _MOST_POINTS))
     time = arrivals["time_days"].values[::every]
