@@ -51,6 +51,8 @@ class EventResult:
         Days.
     start : float
         Days from the first value of the series to the event.
+    duration : float
+        Of the event (days).
     delay, amplitude : ndarray, shape (k,)
         Delays searched (days) and the amplitude that fits at each (SI).
     estimate : LagEstimate
@@ -64,6 +66,7 @@ class EventResult:
     series: Series
     band: tuple[float, float]
     start: float
+    duration: float
     delay: Array
     amplitude: Array
     estimate: LagEstimate
@@ -113,17 +116,17 @@ def compare_event(
     reason = _uncovered(prepared, fitted, first, window)
     if reason:
         return EventResult(
-            prepared, band, start, np.zeros(0), np.zeros(0), _unknown(pulse, prepared.step), 1.0,
-            1.0,
-            tuple(predictions), tuple(Verdict("not resolvable", reason) for _ in predictions),
+            prepared, band, start, duration, np.zeros(0), np.zeros(0),
+            _unknown(pulse, prepared.step), 1.0, 1.0, tuple(predictions),
+            tuple(Verdict("not resolvable", reason) for _ in predictions),
         )
     delay = np.asarray((first + np.arange(window)) * prepared.step - start - 0.5 * duration)
     here = fitted[first : first + window]
     estimate = _judge(pulse, fitted, share, first, window, prepared.step, float(delay[0]))
     chance = _chance(x, pulse, window, float(np.nanmax(here)))
     return EventResult(
-        prepared, band, start, delay, here, estimate, chance, 1.0 / (1.0 + RECORDS * x.size),
-        tuple(predictions),
+        prepared, band, start, duration, delay, here, estimate, chance,
+        1.0 / (1.0 + RECORDS * x.size), tuple(predictions),
         tuple(verdict(estimate, chance, p.lag, p.status) for p in predictions),
     )
 

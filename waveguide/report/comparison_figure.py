@@ -112,14 +112,19 @@ def _verdicts(result: PairResult | EventResult) -> str:
 def _draw_records(ax: Axes, pair: PairResult) -> None:
     size = round(SHOWN_DAYS / pair.first.step)
     start = _fullest(pair, size)
-    for series, colour in zip((pair.first, pair.second), RECORD_COLOURS, strict=True):
+    both = (ax, ax if pair.first.quantity == pair.second.quantity else ax.twinx())
+    for own, series, colour in zip(both, (pair.first, pair.second), RECORD_COLOURS, strict=True):
         unit, factor = _UNITS[series.quantity]
         inside = (series.times >= start) & (
             series.times <= start + np.timedelta64(round(SHOWN_DAYS * 86400), "s")
         )
         label = f"{plain(series.name, 30)}: {series.quantity} ({unit})"
-        ax.plot(series.times[inside], factor * series.values[inside], color=colour, lw=1.0,
-                label=label)
+        values = factor * series.values[inside]
+        own.plot(series.times[inside], values, color=colour, lw=1.0)
+        ax.plot([], [], color=colour, lw=1.0, label=label)
+        most = 1.1 * float(np.max(np.abs(np.nan_to_num(values)), initial=0.0))
+        own.set_ylim(*np.sort([min(-most, own.get_ylim()[0]), max(most, own.get_ylim()[1])]))
+        own.set_ylabel(unit, fontsize=7.5)
     short, long = pair.band
     ax.axhline(0.0, color="0.8", lw=0.6, zorder=0)
     _head(ax, f"a  records passed {short:g} to {long:g} days (the two fullest years)")
@@ -255,18 +260,20 @@ def draw_event(event: EventResult) -> Figure:
         ax.axhline(0.0, color="0.8", lw=0.6, zorder=0)
         ax.set_xlim(-0.5 * span, 1.5 * span)
         ax.set_xlabel("days after the start of the event", fontsize=7.5)
-        _mark(ax, event.predictions)
-    title = f"a  record passed {event.band[0]:g} to {event.band[1]:g} days"
+    _mark(top, event.predictions, 0.5 * event.duration)
+    _mark(bottom, event.predictions)
+    short, long = event.band
+    title = f"a  record passed {short:g} to {long:g} days; dashed: middle of the event by theory"
     _head(top, title, legend=False)
     _head(bottom, "b  amplitude of the event at each delay; dashed: theory")
     figure.supxlabel(_verdicts(event), fontsize=7, parse_math=False)
     return fit_for_print(figure)
 
 
-def _mark(ax: Axes, predictions: tuple[Prediction, ...]) -> None:
+def _mark(ax: Axes, predictions: tuple[Prediction, ...], later: float = 0.0) -> None:
     for p in predictions:
         if np.isfinite(p.lag):
-            ax.axvline(p.lag, color=MODE_COLOURS[p.mode], lw=1.6, ls="--",
+            ax.axvline(p.lag + later, color=MODE_COLOURS[p.mode], lw=1.6, ls="--",
                        label=f"mode {p.mode}")
 
 
@@ -281,7 +288,7 @@ def draw_mooring(mooring: MooringResult) -> Figure:
     -------
     matplotlib.figure.Figure
     """
-    parts = mooring.instruments
+    parts = sorted(mooring.instruments, key=lambda part: part.series.depth)
     figure, axes = _figure(1, 1, 40.0 + 14.0 * len(parts),
                            f"Mooring: ratios to {plain(mooring.reference, 30)}")
     ax = axes[0, 0]

@@ -117,7 +117,7 @@ def _speeds(result: LookoutResult) -> str:
             plain(diagram.line.target, 28), str(diagram.line.mode),
             _number(speed.predicted, ".2f"), _number(speed.measured, ".2f"),
             f"{_number(speed.low, '.2f')} to {_number(speed.high, '.2f')}",
-            _number(speed.semblance, ".2f"), _number(speed.chance, ".2f"), speed.verdict,
+            _number(speed.semblance, ".2f"), _number(speed.chance, ".3f"), speed.verdict,
         ))
     why = [
         _filled(f"  {plain(d.line.target, 28)}, mode {d.line.mode}: {d.speed.reason}", 6)
