@@ -160,6 +160,20 @@ def test_friction_takes_more_or_less_of_its_own_nepers(guides: SimpleNamespace) 
     assert_allclose(np.ptp(found.peak), 0.0, atol=1.0)
 
 
+def test_coastal_value_counts_at_a_coast_of_sections_only(guides: SimpleNamespace) -> None:
+    coast = zonal(guides)
+    flat = guides.uniform(coast, C)
+    sections = replace(flat, detuning=np.full(coast.size, 0.2))
+    equator = guides.chain([(guides.EQUATOR, [(0.0, 0.0), (30.0, 0.0)])])
+    on_equator = replace(guides.uniform(equator, C), detuning=np.full(equator.size, 0.2))
+    priors = Priors(coastal_value=0.4)
+    found = draw(guides, coast, priors, mode=sections)
+    assert_allclose(np.std(found.log_ratio), 0.4, rtol=2e-3)
+    assert_allclose(np.ptp(found.peak), 0.0, atol=1e-6)
+    for network, mode in ((coast, flat), (equator, on_equator)):
+        assert_allclose(np.ptp(draw(guides, network, priors, mode=mode).log_ratio), 0.0, atol=1e-9)
+
+
 def test_height_of_the_source_counts_for_height_alone(guides: SimpleNamespace) -> None:
     found = draw(guides, zonal(guides), Priors(source_height=0.3))
     assert_allclose(np.std(found.log_height), 0.3, rtol=2e-3)

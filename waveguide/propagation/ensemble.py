@@ -11,7 +11,8 @@ No member is computed anew. About the computed answer of one target and mode
   they come later by up to the time the wave takes through the box;
 - the height is that of the table, times exp(−n(e^ξσ − 1)) for the n nepers that friction and
   damping take, times the factors of straits and facing coasts for other widths
-  (:mod:`waveguide.propagation.gap_errors`).
+  (:mod:`waveguide.propagation.gap_errors`), and at a coast of sections times that of its coastal
+  value.
 
 The same ξ serve all targets and modes: what is wrong with the stratification is wrong for all.
 Errors of routes other than the headline route are taken to be those of the headline route.
@@ -65,6 +66,8 @@ class Sensitivity:
         Of amplitude, taken by friction and damping.
     gaps : dict of str to ndarray, shape (7,)
         Change of ln height by straits and facing coasts at `GRID`.
+    sections : bool
+        Whether the target lies on a coast whose modes are those of sections.
     """
 
     front: float
@@ -74,6 +77,7 @@ class Sensitivity:
     table: WaveTable
     nepers: float
     gaps: dict[str, Array]
+    sections: bool
 
 
 @dataclass(frozen=True)
@@ -136,6 +140,7 @@ def sensitivity(
         transfers[0].front_time, delay, *_source(network, answer.mode, arrival.source, headline),
         table, float(transfers[0].leg_nepers[lost, :, at].sum()),
         gap_logs(network, answer.mode, headline.steps, omega, priors.gap_width),
+        _ends_on_sections(network, answer.mode, arrival.target, headline),
     )
 
 
@@ -166,6 +171,7 @@ def members(given: Sensitivity, priors: Priors, sample: Array) -> Members:
     height = figures[:, 3] - given.nepers * np.expm1(priors.friction * error["friction"])
     for name, logs in given.gaps.items():
         height = height + np.interp(error[name], GRID, logs)
+    height = height + given.sections * priors.coastal_value * error["coastal value"]
     half_height, peak, fall = (front + upstream)[None, :] + figures[:, :3].T
     stronger = priors.source_height * error["source height"]
     return Members(front, half_height, peak, fall, height, height + stronger)
@@ -208,6 +214,14 @@ def _grid(spread: float, count: int) -> Array:
     """Values over the reach of a table."""
     half = max(_REACH * spread, _SMALLEST)
     return np.linspace(-half, half, count)
+
+
+def _ends_on_sections(
+    network: Network, mode: ModeAtNodes, target: Ties, route: Route
+) -> bool:
+    """Whether a route ends on a coast where coastal values change from section to section."""
+    node = int(target.node[route.end])
+    return bool(np.isfinite(network.offshore[node]) and np.isfinite(mode.detuning[node]))
 
 
 def _source(

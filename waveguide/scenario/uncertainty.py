@@ -51,6 +51,8 @@ class Uncertainty(Table):
         Of the width of straits and of the water between facing coasts.
     friction_percent : float
         Of bottom friction and interior damping.
+    coastal_value_percent : float
+        Of the coastal value of a mode at a target on a coast.
     """
 
     members: Annotated[int, Field(strict=True, ge=1, le=MOST_MEMBERS)] = 8192
@@ -69,6 +71,7 @@ class Uncertainty(Table):
     height_percent: Percent = _percent(USUAL.source_height)
     gap_width_km: Annotated[Number, Field(ge=0.0, le=500.0)] = USUAL.gap_width / 1e3
     friction_percent: Percent = _percent(USUAL.friction)
+    coastal_value_percent: Percent = _percent(USUAL.coastal_value)
 
     @property
     def priors(self) -> Priors:
@@ -84,6 +87,7 @@ class Uncertainty(Table):
             self.height_percent / 100.0,
             1e3 * self.gap_width_km,
             self.friction_percent / 100.0,
+            self.coastal_value_percent / 100.0,
         )
 
 
