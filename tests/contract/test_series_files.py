@@ -10,7 +10,7 @@ import pytest
 import xarray as xr
 
 from waveguide.compare.reading import Record, read_series
-from waveguide.compare.units import si_factor, unit_change
+from waveguide.compare.units import si_factor, unit_change, unit_island
 from waveguide.errors import InputError
 
 DAYS = np.arange("2031-01-01", "2032-01-01", dtype="datetime64[D]")
@@ -206,6 +206,25 @@ def test_units_that_change_within_a_record(tmp_path, factor):
     assert unit_change(level) == pytest.approx(700, abs=110)
     level[700:] /= factor
     assert unit_change(level) is None
+
+
+@pytest.mark.parametrize("factor", [1000.0, 100.0, 10.0, 0.1, 0.01])
+@pytest.mark.parametrize(("first", "last"), [(400, 500), (1000, 1030)])
+def test_a_stretch_amid_the_record_in_other_units(tmp_path, factor, first, last):
+    days = np.arange("2031-01-01", "2034-01-01", dtype="datetime64[D]")
+    level = 1.5 + 0.05 * np.random.default_rng(2).standard_normal(days.size)
+    assert unit_island(level) is None
+    level[first:last] *= factor
+    assert unit_island(level) == first
+    with pytest.raises(InputError, match="units are mixed"):
+        read(csv_file(tmp_path / "a.csv", days, level))
+
+
+def test_a_season_far_above_all_others_is_no_change_of_unit(tmp_path):
+    days = np.arange("2031-01-01", "2034-01-01", dtype="datetime64[D]")
+    level = 0.05 * np.random.default_rng(2).standard_normal(days.size)  # anomalies, without datum
+    level += 0.5 * np.exp(-(((np.arange(days.size) - 600.0) / 40.0) ** 2))
+    np.testing.assert_allclose(read(csv_file(tmp_path / "a.csv", days, level)).values, level)
 
 
 def test_a_fill_value_that_nobody_knows_is_asked_about(tmp_path):

@@ -45,6 +45,12 @@ UNIT_RATIO = 8.0
 """Parts of one record whose level and scatter both differ by this factor are in other units: the
 next unit is ten times as large."""
 
+ISLAND_FAR = 4.0
+"""A run of values in another unit lies so many robust standard deviations from the median."""
+
+ISLAND_LEAST = 10
+"""It has so many values at least: fewer tell no scatter."""
+
 
 def si_factor(units: str | None, quantity: str, name: str) -> float:
     """SI units in the units of a record.
@@ -100,6 +106,7 @@ def check_scatter(values: Array, quantity: str, units: str, name: str) -> None:
     InputError
     """
     part = unit_change(values)
+    part = unit_island(values) if part is None else part
     if part is not None:
         raise InputError(
             f"{name!r}: level and scatter of {quantity} change {UNIT_RATIO:g}-fold or more about "
@@ -134,3 +141,36 @@ def unit_change(values: Array, parts: int = 20) -> int | None:
     contrast = both * np.sqrt(np.arange(1, len(known)) * np.arange(len(known) - 1, 0, -1))
     best = int(np.argmax(contrast))
     return int(edges[known[best + 1]]) if both[best] > np.log(UNIT_RATIO) else None
+
+
+def unit_island(values: Array) -> int | None:
+    """First value of a run amid a record that is in another unit, None if there is none.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n,)
+        NaN where missing.
+
+    Returns
+    -------
+    int or None
+    """
+    known = np.flatnonzero(np.isfinite(values))
+    x = values[known]
+    far = np.abs(x - np.median(x)) > ISLAND_FAR * robust_scatter(x)
+    edges = np.flatnonzero(np.diff(np.concatenate([[0], far.astype(int), [0]])))
+    for first, last in zip(edges[::2], edges[1::2], strict=True):
+        if last - first >= ISLAND_LEAST and _other_unit(x[first:last], x[~far]):
+            return int(known[first])
+    return None
+
+
+def _other_unit(part: Array, rest: Array) -> bool:
+    """Whether level and changes from value to value differ as by a unit, and the same way.
+
+    Few values tell their scatter badly, so half the ratio is enough of it.
+    """
+    pairs = [(abs(float(np.median(v))), robust_scatter(np.diff(v))) for v in (part, rest)]
+    level, scatter = np.diff(np.log(np.maximum(pairs, 1e-12)), axis=0)[0]
+    large = abs(level) > np.log(UNIT_RATIO) and abs(scatter) > np.log(0.5 * UNIT_RATIO)
+    return bool(large and level * scatter > 0.0)
