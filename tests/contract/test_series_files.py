@@ -241,6 +241,30 @@ def test_all_missing(tmp_path):
         read(csv_file(tmp_path / "a.csv", DAYS, np.full(DAYS.size, -9999)))
 
 
+def test_too_few_values_and_rows_without_a_time(tmp_path):
+    with pytest.raises(InputError, match="2 of 2 values are there"):
+        read(csv_file(tmp_path / "a.csv", DAYS[:2], LEVEL[:2]))
+    times = [str(day) for day in DAYS]
+    times[7] = ""
+    with pytest.raises(InputError, match="value 8 has no time"):
+        read(csv_file(tmp_path / "b.csv", times, LEVEL))
+
+
+def test_net_cdf_times_that_are_missing_repeat_or_go_back(tmp_path):
+    for change, message in (
+        ((9, np.datetime64("NaT")), "value 10 has no time"),
+        ((9, DAYS[8]), "is there 2 times"),
+        ((9, DAYS[30]), "go back at value"),
+    ):
+        times = DAYS.astype("datetime64[ns]")
+        times[change[0]] = change[1]
+        xr.Dataset(
+            {"Callao": ("time", LEVEL, {"units": "m"})}, {"time": times}
+        ).to_netcdf(tmp_path / "a.nc")
+        with pytest.raises(InputError, match=message):
+            read(tmp_path / "a.nc", units=None, column="Callao")
+
+
 def test_files_that_are_none(tmp_path):
     (tmp_path / "a.nc").write_bytes(b"no netcdf")
     with pytest.raises(InputError, match="cannot be read as NetCDF"):

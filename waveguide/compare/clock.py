@@ -43,8 +43,13 @@ def parse_times(texts: Sequence[str], name: str, zone: str | None) -> Times:
     Raises
     ------
     InputError
-        If a time cannot be read, or is a clock time without a zone.
+        If a time is missing or cannot be read, or is a clock time without a zone.
     """
+    if "" in texts:
+        raise InputError(
+            f"{name!r}: value {list(texts).index('') + 1} has no time; write one, or leave the row "
+            "out"
+        )
     if texts and all(_DATE.fullmatch(text) for text in texts):
         try:
             return np.asarray(np.array(texts, "datetime64[s]") + HALF_DAY)
@@ -115,6 +120,11 @@ def regular(times: Times, values: Array, name: str) -> tuple[np.datetime64, floa
 def _require_rising(seconds: NDArray[np.int64], times: Times, name: str) -> None:
     if seconds.size < 3:
         raise InputError(f"{name!r}: {seconds.size} values are no series; give a longer record")
+    if np.isnat(times).any():
+        raise InputError(
+            f"{name!r}: value {int(np.argmax(np.isnat(times))) + 1} has no time; write one, or "
+            "leave the value out"
+        )
     steps = np.diff(seconds)
     if np.any(steps == 0):
         at = int(np.argmax(steps == 0)) + 1

@@ -112,8 +112,10 @@ def without_fills(
     fills = np.array([*FILLS, *([] if fill is None else [fill])])
     missing = np.isclose(values[:, None], fills, rtol=1e-6, atol=0.0).any(axis=1)
     kept = np.where(missing | ~np.isfinite(values), np.nan, values)
-    if np.isfinite(kept).sum() < 3:
-        raise InputError(f"{name!r}: all values are missing; look at column, units and fill")
+    left = int(np.isfinite(kept).sum())
+    if left < 3:
+        told = f"{left} of {values.size} values are there" if left else "all values are missing"
+        raise InputError(f"{name!r}: {told}; look at column, units and fill")
     far = np.abs(kept - np.nanmedian(kept)) > FAR * max(robust_scatter(kept), 1e-300)
     suspects, count = np.unique(kept[far], return_counts=True)
     if count.size and count.max() >= REPEATED:
