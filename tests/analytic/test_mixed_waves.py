@@ -31,7 +31,7 @@ def ocean(guides: SimpleNamespace, width: float, north: bool = True) -> Network:
 def brought(network: Network, mode: ModeAtNodes, omega: np.ndarray, ends: list[int]) -> np.ndarray:
     nodes = np.arange(network.size)
     table = network_wall_table(network, mode, omega, nodes).junctions
-    return gains(network, mode, table, omega, np.arange(network.tail.size), np.array(ends))
+    return gains(network, mode, table, omega, [(np.arange(network.tail.size), np.array(ends))])[0]
 
 
 @pytest.mark.parametrize("frequency", [0.4, 0.7, 1.0, 1.4])
@@ -93,8 +93,10 @@ def test_an_ocean_is_crossed_from_coast_to_coast(guides: SimpleNamespace) -> Non
     steps = np.arange(network.tail.size)
     found = crossings(network, table, steps)
     assert len(found) == 1
+    end, crossing = found[0]
     equator = network.kind == guides.EQUATOR
-    assert_allclose(found[0].length, network.length[equator].sum(), rtol=1e-12)
-    assert (found[0].west_side, found[0].east_side) == (0, 0)
+    assert end == int(np.flatnonzero(equator)[-1]) + 1
+    assert_allclose(crossing.length, network.length[equator].sum(), rtol=1e-12)
+    assert (crossing.west_side, crossing.east_side) == (0, 0)
     assert crossings(network, table, steps[equator]) == []
     assert crossings(network, table, steps[int(np.flatnonzero(equator)[0]):]) == []

@@ -230,7 +230,8 @@ def test_mixed_waves_of_a_short_burst(name: str) -> None:
 
 def test_without_mixed_waves_nothing_would_come_then(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(
-        transfer, "gains", lambda *given: np.ones((given[5].size, given[3].size), complex)
+        transfer, "gains",
+        lambda *given: [np.ones((ends.size, given[3].size), complex) for _, ends in given[4]],
     )
     day, record, theory = whole("Luanda")
     later = (day > 60.0) & (day < 95.0)

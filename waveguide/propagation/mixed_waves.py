@@ -36,6 +36,7 @@ Matsuno (1966), J. Meteorol. Soc. Japan 44, 25 (the mixed wave).
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import NamedTuple
 
 import numpy as np
@@ -50,6 +51,7 @@ from waveguide.propagation.modes import HIGHEST_SCALED_FREQUENCY, ModeAtNodes, s
 Array = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 Index = NDArray[np.int64]
+Mask = NDArray[np.bool_]
 
 FADED, FULL = 0.4, 0.5
 """ω̂ below which the mixed wave is left out, and from which it is whole."""
@@ -62,8 +64,6 @@ class Crossing(NamedTuple):
 
     Attributes
     ----------
-    end : int
-        Number of steps of the path up to the eastern junction.
     west, east : int
         Rows of the junctions.
     west_side, east_side : int
@@ -72,7 +72,6 @@ class Crossing(NamedTuple):
         Of the equator between them (m).
     """
 
-    end: int
     west: int
     east: int
     west_side: int
@@ -80,7 +79,9 @@ class Crossing(NamedTuple):
     length: float
 
 
-def crossings(network: Network, table: JunctionTable, steps: Index) -> list[Crossing]:
+def crossings(
+    network: Network, table: JunctionTable, steps: Index
+) -> list[tuple[int, Crossing]]:
     """Where a path comes along a coast, crosses an ocean on the equator and goes on along a coast.
 
     Parameters
@@ -92,7 +93,8 @@ def crossings(network: Network, table: JunctionTable, steps: Index) -> list[Cros
 
     Returns
     -------
-    list of Crossing
+    list of (int, Crossing)
+        With the number of steps up to the eastern junction.
     """
     equator = network.kind[steps] == StepKind.EQUATOR
     change = np.flatnonzero(np.diff(np.concatenate([[False], equator, [False]])))
@@ -108,15 +110,15 @@ def crossings(network: Network, table: JunctionTable, steps: Index) -> list[Cros
         came, went = network.tail[steps[first - 1]], network.head[steps[end]]
         sides = int(network.lat[came] < 0.0), int(network.lat[went] < 0.0)
         length = float(network.length[steps[first:end]].sum())
-        found.append(Crossing(end, west, east, sides[0], sides[1], length))
+        found.append((end, Crossing(west, east, sides[0], sides[1], length)))
     return found
 
 
 def gains(
-    network: Network, mode: ModeAtNodes, table: JunctionTable, omega: Array, steps: Index,
-    ends: Index, damping: float = 0.0,
-) -> ComplexArray:
-    """Factors of sea level, 1 + ρ, at several places along a path.
+    network: Network, mode: ModeAtNodes, table: JunctionTable, omega: Array,
+    ways: Sequence[tuple[Index, Index]], damping: float = 0.0,
+) -> list[ComplexArray]:
+    """Factors of sea level, 1 + ρ, at several places along each of several paths.
 
     Parameters
     ----------
@@ -126,57 +128,67 @@ def gains(
         At the same frequencies.
     omega : ndarray, shape (nω,)
         Angular frequency (rad/s).
-    steps : ndarray of int, shape (k,)
-        Of the path, in order.
-    ends : ndarray of int, shape (legs,)
-        Numbers of steps up to the places.
+    ways : sequence of (ndarray of int, shape (k,), ndarray of int, shape (legs,))
+        Steps of a path in order, and numbers of steps up to the places along it.
     damping : float
         Interior damping (1/s), which acts longer on the slower wave.
 
     Returns
     -------
-    ndarray of complex, shape (legs, nω)
+    list of ndarray of complex, shape (legs, nω)
         1 where no ocean has been crossed from coast to coast.
     """
-    factor = np.ones((ends.size, omega.size), complex)
+    found = [np.ones((ends.size, omega.size), complex) for _, ends in ways]
     if mode.number == 0:
-        return factor
-    for crossing in crossings(network, table, steps):
-        ratio = _ratio(mode, table, omega, crossing, damping)
-        for row in np.flatnonzero(ends > crossing.end):
-            node = int(network.head[steps[ends[row] - 1]])
-            factor[row] *= 1.0 + ratio * _near(network, mode, table, omega, crossing, node)
-    return factor
+        return found
+    ratios: dict[Crossing, ComplexArray] = {}
+    near: dict[tuple[int, int], ComplexArray] = {}
+    for factor, (steps, ends) in zip(found, ways, strict=True):
+        for end, crossing in crossings(network, table, steps):
+            carried = _weight(mode, table, omega, crossing) > 0.0
+            if crossing not in ratios:
+                ratios[crossing] = _ratio(mode, table, omega, carried, crossing, damping)
+            for row in np.flatnonzero(ends > end):
+                place = crossing.east, int(network.head[steps[ends[row] - 1]])
+                if place not in near:
+                    near[place] = _near(network, mode, table, omega[carried], *place)
+                factor[row, carried] *= 1.0 + ratios[crossing] * near[place]
+    return found
+
+
+def _weight(mode: ModeAtNodes, table: JunctionTable, omega: Array, crossing: Crossing) -> Array:
+    """How much of the mixed wave is taken, 0 for slow and 1 for fast waves."""
+    rise = (_scaled(mode, table, omega, crossing.west) - FADED) / (FULL - FADED)
+    return np.asarray(np.sin(0.5 * np.pi * np.clip(rise, 0.0, 1.0)) ** 2)
 
 
 def _ratio(
-    mode: ModeAtNodes, table: JunctionTable, omega: Array, crossing: Crossing, damping: float
+    mode: ModeAtNodes, table: JunctionTable, omega: Array, carried: Mask, crossing: Crossing,
+    damping: float,
 ) -> ComplexArray:
-    """ρ far from the equator."""
-    ratio = np.full(omega.size, 1.0 if crossing.west_side == crossing.east_side else -1.0) + 0j
+    """ρ far from the equator, at the frequencies that are carried."""
+    sign = 1.0 if crossing.west_side == crossing.east_side else -1.0
+    ratio = sign * _weight(mode, table, omega, crossing)[carried] + 0j
+    omega = omega[carried]
     for row, side in ((crossing.west, crossing.west_side), (crossing.east, crossing.east_side)):
-        mine, other = table.energy[row, side], table.energy[row, 1 - side]
+        mine, other = table.energy[row, side, carried], table.energy[row, 1 - side, carried]
         frequency = _scaled(mode, table, omega, row)
         turned = eastern_wall_mixed(frequency, _FAR) / eastern_wall(frequency, _FAR)
         share = np.divide(other, mine, out=np.zeros_like(mine), where=mine > 0.0)
         ratio *= np.sqrt(share) * np.exp(1j * np.angle(turned))
-    rise = (_scaled(mode, table, omega, crossing.west) - FADED) / (FULL - FADED)
-    weight = np.sin(0.5 * np.pi * np.clip(rise, 0.0, 1.0)) ** 2
-    carried = weight > 0.0
-    slow = np.where(carried, omega, np.inf)
-    later = BETA_EQUATOR * crossing.length / slow
-    return np.asarray(weight * ratio * np.exp(-1j * later - damping * later / slow))
+    later = BETA_EQUATOR * crossing.length / omega
+    return np.asarray(ratio * np.exp(-1j * later - damping * later / omega))
 
 
 def _near(
-    network: Network, mode: ModeAtNodes, table: JunctionTable, omega: Array, crossing: Crossing,
+    network: Network, mode: ModeAtNodes, table: JunctionTable, omega: Array, junction: int,
     node: int,
-) -> ComplexArray | float:
+) -> ComplexArray:
     """What ρ is multiplied by within reach of the equator, where the mixed wave vanishes."""
     place = float(scaled_distance(network, mode, np.array([node]))[0])
-    if table.junctions.coast[node] // 2 != crossing.east or place >= mode.matching:
-        return 1.0
-    frequency, here = _scaled(mode, table, omega, crossing.east), np.array([place, mode.matching])
+    if table.junctions.coast[node] // 2 != junction or place >= mode.matching:
+        return np.ones(omega.size, complex)
+    frequency, here = _scaled(mode, table, omega, junction), np.array([place, mode.matching])
     mixed, kelvin = eastern_wall_mixed(frequency, here), eastern_wall(frequency, here)
     return np.asarray(mixed[:, 0] / mixed[:, 1] * kelvin[:, 1] / kelvin[:, 0])
 

@@ -235,16 +235,17 @@ def route_transfers(
     if not paths:
         return []
     lag, nepers, at_nodes, junctions = _leg_sums(network, mode, paths, omega, conditions)
+    ways = [(path.steps, path.leg_ends) for path in paths]
+    mixed = gains(network, mode, junctions, omega, ways, conditions.damping)
     transfers, leg = [], 0
     for row, path in enumerate(paths):
         legs = slice(leg, leg + path.leg_ends.size)
         here = at_nodes[leg + row : legs.stop + row + 1]  # a path has one node more than legs
         leg = legs.stop
         time = _times(network, mode, path, conditions)
-        mixed = gains(
-            network, mode, junctions, omega, path.steps, path.leg_ends, conditions.damping
+        transfers.append(
+            _assembled(path, omega, lag[legs], nepers[:, legs], here, time, mixed[row])
         )
-        transfers.append(_assembled(path, omega, lag[legs], nepers[:, legs], here, time, mixed))
     return transfers
 
 
