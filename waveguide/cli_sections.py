@@ -13,7 +13,7 @@ from waveguide.cli_arguments import JSON, out_option, print_json, say_where
 from waveguide.progress import Bar, Progress
 
 if TYPE_CHECKING:
-    from waveguide.network.trapped_atlas import TrappedAtlas
+    from waveguide.network.atlas import TrappedAtlas
 
 
 def section(

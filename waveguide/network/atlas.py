@@ -1,15 +1,16 @@
 """The mode atlas: what every node of a network knows about its modes.
 
-For now the modes are those of a flat bottom over the deep water that adjoins the node (section by
-section modes go into the same table). The deep water is the deepest within two deformation radii,
-since that is what the trapped wave feels; a barotropic wave feels the whole ocean within its R,
-so its depth is the mean over the offshore distance x with the weight e^(−2x/R) of its energy.
+The modes made here are those of a flat bottom over the deep water that adjoins the node; those of
+cross-shelf sections go into the same table (:mod:`waveguide.network.trapped_atlas`). The deep water
+is the deepest within two deformation radii, since that is what the trapped wave feels; a barotropic
+wave feels the whole ocean within its R, so its depth is the mean over the offshore distance x with
+the weight e^(−2x/R) of its energy.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -71,6 +72,41 @@ class Atlas:
         """Row of a mode, −1 if the atlas does not hold it."""
         found = np.nonzero(self.mode == mode)[0]
         return int(found[0]) if found.size else -1
+
+
+@dataclass(frozen=True)
+class TrappedAtlas(Atlas):
+    """Modes of sections at the nodes of the baroclinic network.
+
+    Attributes
+    ----------
+    error : ndarray, shape (k, n)
+        Relative error of the phase speed, NaN for flat-bottom modes.
+    trapping_scale : ndarray, shape (k, n)
+        Offshore scale (m), no more than the equatorial radius.
+    rank : ndarray of int, shape (k, n)
+        Rank by speed that the mode has on the node's own section (0 barotropic).
+    overlap : ndarray, shape (3, 3, m)
+        Along each step of a coast, the overlap of modes 1 to 3 of its tail (first axis) with
+        those of its head; NaN elsewhere. The product of many single overlaps along a route
+        overstates scattering: what one step scatters the next may gather. A wave longer than the
+        steps is passed on by the product of these matrices.
+    flags : ndarray of int, shape (n,)
+        Bits of :class:`waveguide.coast.section_quality.QualityFlag`.
+    """
+
+    error: Array
+    trapping_scale: Array
+    rank: Index
+    overlap: Array
+    flags: Index
+
+    def of_modes(self, first: int) -> TrappedAtlas:
+        """The same without the modes below `first`."""
+        rows = np.flatnonzero(self.mode >= first)
+        names = ("mode", "phase_speed", "coastal_value", "gap_share", "error", "decay_per_drag",
+                 "dispersion", "barotropic_tail", "trapping_scale", "rank")
+        return replace(self, **{name: getattr(self, name)[rows] for name in names})
 
 
 def _offshore_depths(network: Network, depths: Bathymetry, nodes: Index, distance: Array) -> Array:

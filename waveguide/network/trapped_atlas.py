@@ -10,7 +10,7 @@ Nodes on the equator and in straits, and those without a section, have the flat-
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
@@ -22,7 +22,7 @@ from waveguide.coast.section_quality import QualityFlag
 from waveguide.constants import coriolis, deformation_radius
 from waveguide.modes.trapped import TOLERANCE
 from waveguide.modes.vertical import barotropic_speed
-from waveguide.network.atlas import Atlas
+from waveguide.network.atlas import Atlas, TrappedAtlas
 from waveguide.network.continuity import followed_ranks
 from waveguide.network.graph import Network, StepKind
 from waveguide.network.section_runs import (
@@ -50,41 +50,6 @@ BLENDED = 1.0
 LEAST_VALUE = 1e-4
 """Smallest F(0,0) (m^-1/2). Values and frictions are extrapolated from two meshes, which can carry
 a quantity that is nearly nothing to the wrong side of nothing (two values, a few frictions)."""
-
-
-@dataclass(frozen=True)
-class TrappedAtlas(Atlas):
-    """Modes of sections at the nodes of the baroclinic network.
-
-    Attributes
-    ----------
-    error : ndarray, shape (k, n)
-        Relative error of the phase speed, NaN for flat-bottom modes.
-    trapping_scale : ndarray, shape (k, n)
-        Offshore scale (m), no more than the equatorial radius.
-    rank : ndarray of int, shape (k, n)
-        Rank by speed that the mode has on the node's own section (0 barotropic).
-    overlap : ndarray, shape (3, 3, m)
-        Along each step of a coast, the overlap of modes 1 to 3 of its tail (first axis) with
-        those of its head; NaN elsewhere. The product of many single overlaps along a route
-        overstates scattering: what one step scatters the next may gather. A wave longer than the
-        steps is passed on by the product of these matrices.
-    flags : ndarray of int, shape (n,)
-        Bits of :class:`waveguide.coast.section_quality.QualityFlag`.
-    """
-
-    error: Array
-    trapping_scale: Array
-    rank: Index
-    overlap: Array
-    flags: Index
-
-    def of_modes(self, first: int) -> TrappedAtlas:
-        """The same without the modes below `first`."""
-        rows = np.flatnonzero(self.mode >= first)
-        names = ("mode", "phase_speed", "coastal_value", "gap_share", "error", "decay_per_drag",
-                 "dispersion", "barotropic_tail", "trapping_scale", "rank")
-        return replace(self, **{name: getattr(self, name)[rows] for name in names})
 
 
 def build_trapped_atlas(

@@ -11,11 +11,11 @@ import numpy as np
 
 from waveguide.constants import deformation_radius
 from waveguide.errors import InputError
-from waveguide.network.atlas import Atlas, flat_bottom_atlas
+from waveguide.network.atlas import Atlas, TrappedAtlas, flat_bottom_atlas
 from waveguide.network.graph import Network
 from waveguide.network.latitude import typical_ocean
 from waveguide.network.packaged import network_file, packaged_network
-from waveguide.network.trapped_atlas import Region, TrappedAtlas, build_trapped_atlas, inside
+from waveguide.network.trapped_atlas import Region, build_trapped_atlas, inside
 from waveguide.network.trapped_store import ATLAS_FILE, NETWORK_HASH, save_atlas
 from waveguide.ocean.bathymetry import Bathymetry, packaged_bathymetry, read_bathymetry
 from waveguide.ocean.hydrography import read_climatology

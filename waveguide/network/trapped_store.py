@@ -11,10 +11,9 @@ from numpy.typing import NDArray
 
 from waveguide.coast.section_quality import QualityFlag
 from waveguide.errors import DataError, InputError
-from waveguide.network.atlas import Atlas
+from waveguide.network.atlas import Atlas, TrappedAtlas
 from waveguide.network.graph import Network
 from waveguide.network.packaged import Family, network_file, packaged_network
-from waveguide.network.trapped_atlas import TrappedAtlas
 from waveguide.ocean.packaged import WAY_OUT, packaged_file, used_files
 
 if TYPE_CHECKING:

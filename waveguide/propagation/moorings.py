@@ -17,9 +17,9 @@ from waveguide.geodesy import wgs84
 from waveguide.modes.modeset import ModeSet
 from waveguide.modes.trapped import trapped_modes
 from waveguide.modes.vertical import VerticalModes, vertical_modes
-from waveguide.network.atlas import Atlas
+from waveguide.network.atlas import Atlas, TrappedAtlas
 from waveguide.network.graph import Network, StepKind
-from waveguide.network.trapped_atlas import BLENDED, TrappedAtlas
+from waveguide.network.trapped_atlas import BLENDED
 from waveguide.ocean.bathymetry import Bathymetry
 from waveguide.ocean.stratification import Climatology
 from waveguide.propagation.arrivals import Arrival
