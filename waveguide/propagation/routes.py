@@ -29,9 +29,8 @@ FAINTEST_ALTERNATIVE = 0.02
 """Routes with less than this share of the strongest one's amplitude are not listed."""
 
 NOTHING_LEFT = 1e-4
-"""A path that would leave less than this amplitude ratio without friction and damping is no route:
-signals do not travel that way, but for what crosses wide gaps. What friction makes faint is told,
-since its nepers are not known to better than half."""
+"""A path on which even with half the friction less than this amplitude ratio is left is no route.
+The nepers of friction are not known to better than that; what they only may make faint is told."""
 
 LATEST_ALTERNATIVE = 4.0
 """Nor are those that take this many times longer than the headline route."""
@@ -93,7 +92,7 @@ class RouteFinder:
         """
         family = [self._best(target, patience, -1) for patience in PATIENCE_DAYS]
         found = _distinct([route for route in family if route is not None])
-        if not any(self._without_friction(route) >= NOTHING_LEFT for route in found):
+        if not any(self._with_half_the_friction(route) >= NOTHING_LEFT for route in found):
             return []
         found = _distinct(found + self._detours(target, _headline(found)))
         headline = _headline(found)
@@ -110,9 +109,9 @@ class RouteFinder:
         told = _told_apart(self._searcher.network, [headline, *by_amplitude])
         return [headline, *sorted(told[1 : MOST_ALTERNATIVES + 1], key=lambda route: route.time)]
 
-    def _without_friction(self, route: Route) -> float:
-        """Amplitude that a route would leave without bottom friction and damping."""
-        return route.amplitude * float(np.exp(self._physics.rubbed[route.steps].sum()))
+    def _with_half_the_friction(self, route: Route) -> float:
+        """Amplitude that a route would leave with half of bottom friction and damping."""
+        return route.amplitude * float(np.exp(0.5 * self._physics.rubbed[route.steps].sum()))
 
     def _detours(self, target: Ties, headline: Route) -> list[Route]:
         """Routes that do without one of the gaps the headline route crosses."""
