@@ -12,6 +12,7 @@ from waveguide.propagation.sampling import (
     first_order_shares,
     normal_sample,
     percentiles,
+    share_error,
     sample_size,
 )
 
@@ -82,6 +83,18 @@ def test_shares_of_curved_and_of_joint_effects() -> None:
 
 # DERIVED: exp(σx) has variance e^(2σ²) − e^(σ²), of which the first three Hermite terms take
 # σ² + σ⁴/2 + σ⁶/6 over e^(σ²) − 1: all but 6e-4 for σ = 0.5.
+@pytest.mark.parametrize("members", [64, 512, 2048])
+def test_error_of_shares_is_no_larger_than_it_is_told(members: int) -> None:
+    weight = np.linspace(0.2, 1.0, 11)
+    found = []
+    for seed in range(12):
+        x = normal_sample(members, weight.size, seed)
+        values = np.exp(x @ weight / 6.0) + 0.3 * x[:, 0] * x[:, 1]
+        found.append(first_order_shares(x, values[None])[0])
+    assert np.std(found, axis=0).max() < share_error(members)
+    assert share_error(1) == 1.0
+
+
 def test_third_degree_is_enough_for_a_lognormal() -> None:
     x = normal_sample(16384, 2, 6)
     assert_allclose(first_order_shares(x, np.exp(0.5 * x[:, :1].T))[0], [1.0, 0.0], atol=5e-3)

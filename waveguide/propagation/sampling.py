@@ -112,6 +112,21 @@ def percentiles(values: Array, shares: Array) -> Percentile:
     return Percentile(np.quantile(values, shares), error)
 
 
+def share_error(members: int) -> float:
+    """Standard error that shares by :func:`first_order_shares` do not exceed, measured over seeds.
+
+    Parameters
+    ----------
+    members : int
+
+    Returns
+    -------
+    float
+        1.3/√members, at most 1.
+    """
+    return min(1.0, 1.3 / float(np.sqrt(members)))
+
+
 def first_order_shares(sample: Array, values: Array) -> Array:
     """First-order Sobol' indices of every input.
 

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from waveguide.propagation.sampling import share_error
 from waveguide.report.caution_text import cautions_text
 from waveguide.report.document import cautions_of, plain_value
 from waveguide.report.layout import WIDTH, aligned, filled
@@ -154,7 +155,8 @@ def _notes(dataset: xr.Dataset) -> str:
     lines = [
         "Notes",
         f"  Percentiles of times have standard errors of up to {error:.2g} days from the size of "
-        "the ensemble.",
+        "the ensemble, shares of the variance of up to "
+        f"{100.0 * share_error(int(dataset.attrs['members'])):.0f} %.",
         "  Noise levels (m, m, m/s, m) are round figures to compare instruments: "
         f"{dataset.attrs['noise']}.",
     ]
