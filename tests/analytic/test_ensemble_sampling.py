@@ -12,8 +12,8 @@ from waveguide.propagation.sampling import (
     first_order_shares,
     normal_sample,
     percentiles,
-    share_error,
     sample_size,
+    share_error,
 )
 
 SHARES = np.array([0.1, 0.5, 0.9])
