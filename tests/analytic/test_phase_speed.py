@@ -93,6 +93,23 @@ def test_reversed_waves_are_not_resolvable():
     assert back.verdict == "not resolvable"
 
 
+def test_two_waves_of_one_size_leave_the_speed_open():
+    fast, days, distance = diagram(7, speed=3.5, noise=0.05)
+    slow, _, _ = diagram(8, speed=1.5, noise=0.05)
+    speed = phase_speed(fast + np.roll(slow, 40, axis=0), days, distance, distance / 2.5 / 86400.0)
+    assert speed.chance <= 0.05
+    assert speed.verdict == "not resolvable"
+    assert "line up almost as well" in speed.reason
+
+
+def test_a_pure_line_between_few_places_is_ambiguous():
+    # Six days from place to place and a period of eight: the wave might as well run backwards.
+    days, distance = np.arange(200.0), 6.0 * 86400.0 * 2.5 * np.arange(10.0)
+    wave = np.cos(2.0 * np.pi * (days[:, None] - 6.0 * np.arange(10.0)) / 8.0)
+    speed = phase_speed(wave, days, distance, distance / 2.5 / 86400.0)
+    assert speed.verdict == "not resolvable"
+
+
 def test_a_route_without_values_has_no_speed():
     values, days, distance = diagram(4)
     values[:, 3:] = np.nan
