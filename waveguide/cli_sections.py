@@ -150,13 +150,19 @@ def _numbers(given: dict[str, str], others: list[str]) -> list[float]:
         try:
             values.append(float(text))
         except ValueError:
-            what = "no such option" if text.startswith("-") else f"{name} must be a number"
+            meant = f"{name} must be decimal degrees with a point, as in -77.2"
+            what = "no such option" if _is_option(text) else meant
             problems.append(f"{text}: {what}; see `waveguide section --help`")
     problems += [
-        f"{text}: {'no such option' if text.startswith('-') else 'unexpected'}; "
+        f"{text}: {'no such option' if _is_option(text) else 'unexpected'}; "
         "see `waveguide section --help`"
         for text in others
     ]
     if problems:
         raise InputError(problems)
     return values
+
+
+def _is_option(text: str) -> bool:
+    """Whether somebody meant an option; -77,2 is a number gone wrong."""
+    return text.startswith("-") and not text[1:2].isdigit()

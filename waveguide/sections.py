@@ -103,7 +103,8 @@ def check_numbers(lon: float, lat: float, drag: float, modes: int) -> None:
     """
     problems = []
     if not abs(lat) <= 90.0:
-        swapped = f" Are they swapped? Try {lat:g} {lon:g}." if abs(lon) <= 90.0 else ""
+        exchanged = abs(lon) <= 90.0 and abs(lat) <= 360.0
+        swapped = f" Are they swapped? Try {lat:g} {lon:g}." if exchanged else ""
         problems.append(f"latitude {lat:g}: must lie within -90..90 degrees.{swapped}")
     if not abs(lon) <= 360.0:
         problems.append(f"longitude {lon:g}: must lie within -180..360 degrees")

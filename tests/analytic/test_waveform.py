@@ -243,6 +243,11 @@ def test_coarse_time_step_is_refused(guides: SimpleNamespace) -> None:
         mode_waveforms(network, mode, [arrival], gaussian_burst(2.0 * DAY), 50.0 * DAY, DAY)
 
 
+def test_a_window_of_too_many_steps_is_refused(guides: SimpleNamespace) -> None:
+    with pytest.raises(InputError, match="window_days of 1562 or less"):
+        run(guides, zonal(guides), gaussian_burst(0.5 * DAY), 2000.0)
+
+
 @pytest.mark.parametrize("duration", [0.0, -1.0, np.nan, np.inf])
 def test_burst_of_no_duration_is_refused(duration: float) -> None:
     for shape in (gaussian_burst, boxcar_burst, step_rise):

@@ -92,6 +92,11 @@ def test_an_empty_cell_of_a_profile_is_a_hole(tmp_path):
         ("offshore_km,depth_m\n0,5\n10,deep\n", "'deep' in row 2"),
         ("offshore_km,depth_m\n0,5\n10;100\n", "1 values where 2"),
         ("distance,depth_m\n0,5\n10,100\n", "offshore_km or offshore_m"),
+        ("offshore_km;depth_m\n0,5;5\n10,5;100\n", "separate columns with commas"),
+        ("offshore_km\tdepth_m\n0\t5\n10\t100\n", "separate columns with commas"),
+        ("offshore_km,depth_m\n0,5\n300000,4000\n", "offshore_m if it is in metres"),
+        ("offshore_km,depth_m\n0,5\n300,400000\n", "deeper than any trench"),
+        ("offshore_km,depth_m\n0," + "5" * 140000 + "\n", "save it as CSV in UTF-8"),
     ],
 )
 def test_csv_files_that_are_refused(tmp_path, text, said):
@@ -172,6 +177,7 @@ def test_the_equator_has_no_section_problem(lat):
     [
         ((38.5, -123.3, 5e-4, 3), "Are they swapped"),
         ((400.0, 38.5, 5e-4, 3), "longitude 400"),
+        ((-77.0, float("nan"), 5e-4, 3), "degrees.$"),
         ((float("nan"), 38.5, 5e-4, 3), "longitude nan"),
         ((-123.3, 38.5, -1.0, 3), "drag"),
         ((-123.3, 38.5, 5e-4, 0), "modes 0"),

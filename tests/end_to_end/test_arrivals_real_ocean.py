@@ -159,6 +159,10 @@ BAD = {
     "unknown mode": ({"modes": [7]}, "mode"),
     "duration not positive": ({"duration": 0}, "duration_days"),
     "period not positive": ({"period": -3}, "period_days"),
+    "nothing left": ({"period": "20\ndamping_days = 0.01"}, "nothing is left"),
+    "window of millions of steps": (
+        {"duration": 0.01, "period": "20\nwindow_days = 3000"}, "window_days of"
+    ),
     "NaN": ({"period": "nan"}, "period_days"),
     "unknown key": ({"more": "[ocean]\nphase_sped_m_s = 2.5"}, "phase_speed_m_s"),
     "file missing": ({"more": '[ocean]\nbathymetry = "nowhere.nc"'}, "nowhere.nc"),
@@ -174,6 +178,7 @@ def test_bad_input_ends_with_2_and_one_message_and_no_output(tmp_path, case):
     assert done.returncode == 2
     assert word in done.stderr
     assert "Traceback" not in done.stderr
+    assert "Warning" not in done.stderr
     assert not out.exists()
     assert done.stdout == ""
 

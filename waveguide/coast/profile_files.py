@@ -23,6 +23,9 @@ Array = NDArray[np.float64]
 DISTANCES = {"offshore_km": 1e3, "offshore_m": 1.0}
 """Columns that may hold the offshore distance, and metres per unit."""
 
+WIDEST, DEEPEST = 2e7, 12e3
+"""Half-way round the earth, and below the deepest trench (m): beyond them a unit is wrong."""
+
 DEPTHS = ("depth_m", "depth", "z")
 TEMPERATURES, SALINITIES, FREQUENCIES = ("temperature",), ("salinity",), ("n2",)
 
@@ -53,14 +56,21 @@ def read_table(path: Path, what: str) -> dict[str, Array]:
         raise InputError(f"{what} {path}: no such file; give the path of a CSV file")
     try:
         text = path.read_text("utf-8-sig")
-    except (OSError, UnicodeDecodeError) as error:
-        raise DataError(f"{what} {path}: it cannot be read as text ({error})") from None
-    lines = [line for line in text.splitlines() if line.strip() and not line.startswith("#")]
-    rows = [[cell.strip() for cell in row] for row in csv.reader(lines)]
+        lines = [line for line in text.splitlines() if line.strip() and not line.startswith("#")]
+        rows = [[cell.strip() for cell in row] for row in csv.reader(lines)]
+    except (OSError, UnicodeDecodeError, csv.Error) as error:
+        raise DataError(
+            f"{what} {path}: it cannot be read as text ({error}); save it as CSV in UTF-8"
+        ) from None
     if not rows or any(_is_number(cell) for cell in rows[0]):
         raise InputError(
             f"{what} {path}: the first line must name the columns, for example "
             f"{'offshore_km,depth_m' if what == 'profile' else 'depth,temperature,salinity'}"
+        )
+    if len(rows[0]) == 1 and any(separator in rows[0][0] for separator in ";\t"):
+        raise InputError(
+            f"{what} {path}: the names {rows[0][0]!r} are not separated by commas; separate "
+            "columns with commas, and write decimals with a point"
         )
     return _columns(rows[0], rows[1:], f"{what} {path}")
 
@@ -120,12 +130,23 @@ def read_profile(path: Path) -> tuple[Array, Array]:
     Raises
     ------
     InputError
-        If the file has not these columns.
+        If the file has not these columns, or they are in another unit.
     """
     table = read_table(path, "profile")
     distance = _one(table, tuple(DISTANCES), f"profile {path}")
-    unit = next(scale for name, scale in DISTANCES.items() if name in table)
-    return distance * unit, _one(table, DEPTHS[:2], f"profile {path}")
+    name, unit = next((name, scale) for name, scale in DISTANCES.items() if name in table)
+    depth = _one(table, DEPTHS[:2], f"profile {path}")
+    if np.any(distance * unit > WIDEST):
+        raise InputError(
+            f"profile {path}: {name} reaches {np.nanmax(distance):g}, farther than across any "
+            "ocean; name the column offshore_m if it is in metres"
+        )
+    if np.any(depth > DEEPEST):
+        raise InputError(
+            f"profile {path}: depth reaches {np.nanmax(depth):g}, deeper than any trench; "
+            "give it in metres"
+        )
+    return distance * unit, depth
 
 
 def read_stratification(path: Path, lon: float, lat: float) -> Column:

@@ -19,7 +19,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from waveguide.constants import GRAVITY
+from waveguide.constants import GRAVITY, SECONDS_PER_DAY
 from waveguide.errors import InputError
 from waveguide.modes.assembly import Rotation
 from waveguide.modes.barotropic import refined, solve_depth_averaged
@@ -202,7 +202,8 @@ def dispersion(guide: Guide, frequency: float) -> Dispersion:
     if not 0.0 < frequency < abs(guide.f):
         raise InputError(
             f"frequency is {frequency:.3g} 1/s: coastal-trapped waves have frequencies between 0 "
-            f"and |f| = {abs(guide.f):.3g} 1/s (period {2e-3 * np.pi / abs(guide.f) / 3.6:.1f} h)"
+            f"and |f| = {abs(guide.f):.3g} 1/s; give a period longer than "
+            f"{2.0 * np.pi / abs(guide.f) / SECONDS_PER_DAY:.4g} days"
         )
     modes = range(guide.mode.size)
     wavenumber = np.array([_wavenumber(guide, n, frequency) for n in modes])

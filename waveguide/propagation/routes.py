@@ -111,7 +111,9 @@ class RouteFinder:
 
     def _with_half_the_friction(self, route: Route) -> float:
         """Amplitude that a route would leave with half of bottom friction and damping."""
-        return route.amplitude * float(np.exp(0.5 * self._physics.rubbed[route.steps].sum()))
+        rubbed = float(self._physics.rubbed[route.steps].sum())
+        # Beyond 2 x 700 the amplitude itself is zero in floating point.
+        return route.amplitude * float(np.exp(min(0.5 * rubbed, 700.0)))
 
     def _detours(self, target: Ties, headline: Route) -> list[Route]:
         """Routes that do without one of the gaps the headline route crosses."""

@@ -65,6 +65,7 @@ ComplexArray = NDArray[np.complex128]
 _FAINTEST = 1e-7  # of the spectrum, below which frequencies are left out
 _WRAPS = 5e-3  # of the peak, what may come back at the beginning of a period
 _MOST_DOUBLINGS = 2
+_MOST_STEPS = 100_000  # of a window
 
 
 class ArrivalTimes(NamedTuple):
@@ -165,7 +166,8 @@ def mode_waveforms(
     Raises
     ------
     InputError
-        If the event lasts longer than the window, or the time step does not resolve it.
+        If the event lasts longer than the window, or the time step is too long for the event
+        or too short for the window.
     """
     step = time_step(source) if step is None else step
     _require_window(source, window, step)
@@ -352,6 +354,12 @@ def _require_window(source: SourceFunction, window: float, step: float) -> None:
         raise InputError(
             f"step: {step / 3600.0:g} h does not resolve an event of {days:g} days; "
             f"take {source.finest / 3600.0:g} h or less"
+        )
+    if window > _MOST_STEPS * step:
+        raise InputError(
+            f"window: {window / SECONDS_PER_DAY:.6g} days in the steps of {step / 3600.0:.3g} h "
+            f"that an event of {days:g} days asks for are more than {_MOST_STEPS} values; state a "
+            f"window_days of {_MOST_STEPS * step / SECONDS_PER_DAY:.4g} or less, or a longer event"
         )
 
 

@@ -20,11 +20,17 @@ from pydantic import (
 HIGHEST_MODE = 3
 """The mode atlas holds the barotropic mode 0 and the baroclinic modes 1 to 3."""
 
+SHORTEST_DAYS = 0.01
+"""A quarter of an hour: far below the day or more at which the theory of long waves holds."""
+
 LONGEST_DAYS = 3650.0
 """Ten years: longer than any boundary-trapped signal keeps its identity."""
 
 YEARS = (1800, 2200)
 """Dates are stored to the nanosecond, which ends in 2262; a delay still fits in."""
+
+SLOWEST = 0.01
+"""A tenth of the slowest third mode over a shelf (m/s)."""
 
 FASTEST_BAROCLINIC = 10.0
 """Three times the fastest first-mode speed of any ocean (m/s): beyond it the unit is wrong."""
@@ -125,7 +131,7 @@ def distinct_modes(value: tuple[int, ...]) -> tuple[int, ...]:
 
 
 Number = Annotated[float, Field(strict=True, allow_inf_nan=False)]
-Days = Annotated[float, Field(strict=True, allow_inf_nan=False, gt=0.0, le=LONGEST_DAYS)]
+Days = Annotated[float, Field(strict=True, allow_inf_nan=False, ge=SHORTEST_DAYS, le=LONGEST_DAYS)]
 Name = Annotated[
     str,
     StringConstraints(strict=True, strip_whitespace=True, min_length=1, max_length=120),

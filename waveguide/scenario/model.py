@@ -13,6 +13,7 @@ from pydantic import AfterValidator, Field, model_validator
 from waveguide.scenario.fields import (
     FASTEST_BAROCLINIC,
     FASTEST_BAROTROPIC,
+    SLOWEST,
     Box,
     DataFile,
     Days,
@@ -158,7 +159,7 @@ class Ocean(Table):
     climatology: DataFile | None = None
     temperature: Literal["in-situ", "potential", "conservative"] | None = None
     atlas: DataFile | None = None
-    phase_speed_m_s: Annotated[Number, Field(gt=0.0, le=FASTEST_BAROTROPIC)] | None = None
+    phase_speed_m_s: Annotated[Number, Field(ge=SLOWEST, le=FASTEST_BAROTROPIC)] | None = None
 
     @model_validator(mode="after")
     def _one_ocean(self) -> Ocean:
