@@ -177,7 +177,7 @@ def test_each_assumption_that_fails_is_named_with_its_number(change, words) -> N
 
 
 def test_faint_signals_are_called_faint() -> None:
-    assert "too faint" in told(GOOD, amplitude=0.005)
+    assert "0.005: faint" in told(GOOD, amplitude=0.005)
 
 
 def test_survey_of_a_route_along_a_channel(guides: SimpleNamespace) -> None:

@@ -67,7 +67,9 @@ class Kind:
 
 
 KINDS = (
-    Kind("faint signal", "1", ".2g", "amplitude ratio {}: too faint to be told from noise"),
+    Kind("faint signal", "1", ".2g",
+         "amplitude ratio {}: faint, and no better known than what friction and straits take on "
+         "the way: ten times as much may be left"),
     Kind("early rise", "days", ".1f",
          "half-height comes {} days before the front: where a coast slants away from a junction "
          "the wave takes a short cut to or from the equator, the front is told along the guide"),

@@ -20,8 +20,10 @@ is multiplied by 1 + ρ,
 
 plus if W and E lie in one hemisphere and minus if not; L is the length of the equator between. On
 the equator itself the mixed wave has no sea level. At ω̂ < 0.5 its group has less than a fifth of
-the Kelvin wave's speed, its waves are shorter than 3 L_e and it takes most of a year: it is faded
-out between ω̂ = 0.5 and 0.4.
+the Kelvin wave's speed, its waves are shorter than 4.2 L_e and it takes most of a year over the
+Pacific: it is faded out between ω̂ = 0.5 and 0.4. Above 1 + √½ (periods below 5.6 days at 2.5 m/s)
+walls turn Kelvin waves into inertia-gravity waves first; there ρ is told too small, by a factor of
+2 at ω̂ = 1.8 and of 3 at ω̂ = 2 for each of the two coasts.
 
 A shallow-water integration over the real Atlantic (tests/oracle/test_oracle_atlantic.py) has it:
 of a burst of 1.5 days down Brazil the mixed wave reaches Africa 27 days after the Kelvin wave, and
