@@ -53,14 +53,24 @@ def theory(coast: str, wave: dict, average: bool = True) -> np.ndarray:
     return level[np.array(RESULTS["coasts"][coast]["stops"]) - 1]
 
 
-def misses(mode: int, drag: float, average: bool = True, coasts: list[str] = COASTS) -> np.ndarray:
-    """|ln(theory/oracle)| of all stops and periods of some coasts."""
-    return np.concatenate([
-        np.abs(np.log(theory(coast, wave, average) / np.array(wave["sea_level"])))
+def both(
+    mode: int, drag: float, average: bool = True, coasts: list[str] = COASTS
+) -> tuple[np.ndarray, np.ndarray]:
+    """Sea level by theory and by the oracle at all stops and periods of some coasts."""
+    waves = [
+        (theory(coast, wave, average), wave["sea_level"])
         for coast in coasts
         for wave in RESULTS["coasts"][coast]["waves"]
         if wave["mode"] == mode and wave["drag"] == drag
-    ])
+    ]
+    told, found = (np.concatenate(levels) for levels in zip(*waves, strict=True))
+    return told, found
+
+
+def misses(mode: int, drag: float, average: bool = True, coasts: list[str] = COASTS) -> np.ndarray:
+    """|ln(theory/oracle)| of all stops and periods of some coasts."""
+    told, found = both(mode, drag, average, coasts)
+    return np.abs(np.log(told / found))
 
 
 def delay_ratios(coasts: list[str]) -> np.ndarray:
@@ -106,6 +116,22 @@ def test_mode_2_in_the_bay_of_bengal() -> None:
     assert np.median(misses(2, DRAG, coasts=["Bay of Bengal"])) < np.log(2.0)
 
 
+def test_mode_1_is_told_too_high_where_a_tenth_to_a_third_is_left() -> None:
+    told, found = both(1, DRAG)
+    little = (found > 0.1) & (found < 0.3)
+    assert 1.2 < np.median(told / found) < 1.4
+    assert 1.5 < np.median((told / found)[little]) < 2.2
+
+
+def test_less_than_a_hundredth_is_told_too_low() -> None:
+    """Modes that last longer hold sea level up."""
+    told, found = both(2, DRAG)
+    ratio = (found / told)[told < 0.01]
+    assert ratio.size > 5
+    assert ratio.min() > 2.5
+    assert ratio.max() < 50.0
+
+
 def test_travel_time_of_mode_1() -> None:
     """No wave is only mode 1: delays of one period and coast scatter, their middle is that of c."""
     found = delay_ratios(COASTS)
@@ -113,6 +139,6 @@ def test_travel_time_of_mode_1() -> None:
     assert np.mean(np.abs(found - 1.0) < 0.3) > 0.75
 
 
-@pytest.mark.xfail(strict=True, reason="1300 km in 1.2 to 1.7 days where ∫ds/c has 2.7")
+@pytest.mark.xfail(strict=True, reason="1300 km in 1.8 and 2.1 days where ∫ds/c has 3.4")
 def test_travel_time_off_japan() -> None:
     assert np.all(np.abs(delay_ratios(["Japan"]) - 1.0) < 0.3)
