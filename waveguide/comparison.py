@@ -169,7 +169,7 @@ def predictions(
             told[row].append(Prediction(
                 mode, arrival.status, float(phase[-1] / omega[-1] / SECONDS_PER_DAY),
                 transfer.front_time / SECONDS_PER_DAY,
-                float(np.abs(transfer.response[-1])) * factor,
+                float(np.abs(transfer.response[-1])) * factor, tuple(arrival.cautions),
             ))
     return told
 

@@ -59,7 +59,8 @@ def lookout(
         If the model has no such variable, times or places.
     """
     say = progress or (lambda stage: None)
-    lines = route_lines(arrivals(scenario, progress))
+    answers = arrivals(scenario, progress)
+    lines = route_lines(answers)
     if not lines:
         raise InputError(
             "lookout: every target lies at the source, so there is no way to look along; give "
@@ -73,7 +74,7 @@ def lookout(
         float("nan") if height is None else height, found,
     )
     if model is None:
-        return LookoutResult(*basics, "", (), None, 0, ())
+        return LookoutResult(*basics, "", (), None, 0, (), answers)
     field = model_field(model, scenario.lookout.variable, scenario.lookout.depth_m)
     days = (field.times - start) / np.timedelta64(1, "s") / SECONDS_PER_DAY
     first, last, note = wanted_times(field, days, found)
@@ -91,6 +92,7 @@ def lookout(
     return LookoutResult(
         *basics, f"{field.data.name} ({units})" if units else str(field.data.name),
         diagrams(lines, cells, taken, span), subset, taken.chunks, (*field.notes, *note),
+        answers,
     )
 
 

@@ -37,6 +37,7 @@ def test_gauges_get_lags_verdicts_and_reasons(run, tmp_path, printed_figures):
     # The invented lag is 3.0 days (scenarios/invent.py).
     assert first["lag_low_days"] <= 3.0 <= first["lag_high_days"]
     assert first["chance"] < 0.05
+    assert "below the critical frequency" in first["cautions"][0]
     assert first["verdict"][1] == "too early"  # the second mode would be days later
     assert rows["Antofagasta", "Callao"]["lag_high_days"] < 0.0
     assert rows["Callao", "Talcahuano"]["verdict"] == ["not resolvable"] * 2

@@ -81,7 +81,11 @@ def test_the_measured_speed_is_that_of_the_wave_in_the_output(run, model):
     pytest.importorskip("dask")
     status, out, _ = run("lookout", "pacific_model", "--model", model, "--json")
     assert status == 0
-    routes = json.loads(out)["routes"]
+    document = json.loads(out)
+    routes = document["routes"]
+    told = {(row["target"], row["mode"]): row["cautions"] for row in document["cautions"]}
+    critical = next(c for c in told["Callao", 1] if c["kind"] == "below the critical frequency")
+    assert 50.0 < critical["number"] <= 100.0  # north of Callao, at 60 days
     callao = next(route for route in routes if route["target"] == "Callao")
     # 2.5 m/s along the equator (scenarios/invent.py), nothing but noise along the coast
     assert callao["measured_speed_m_s"] == pytest.approx(2.5, rel=0.05)

@@ -71,6 +71,8 @@ class LookoutResult:
     chunks : int
         Chunks of the output that were read.
     notes : tuple of str
+    arrivals : xarray.Dataset
+        Of the scenario, with the cautions and validity numbers of every answer.
     """
 
     name: str
@@ -84,6 +86,7 @@ class LookoutResult:
     subset: xr.Dataset | None
     chunks: int
     notes: tuple[str, ...]
+    arrivals: xr.Dataset
 
 
 def cell_windows(

@@ -20,6 +20,7 @@ from waveguide.compare.significance import (
 )
 from waveguide.compare.spectra import CrossSpectrum, cross_spectrum
 from waveguide.compare.verdict import Verdict, verdict
+from waveguide.propagation.cautions import Caution
 
 Array = NDArray[np.float64]
 
@@ -57,6 +58,8 @@ class Prediction:
     ratio : float
         Amplitude at the second place per amplitude at the first, in the quantities measured
         there; negative where one rises as the other falls; NaN if none.
+    cautions : tuple of Caution
+        Of the route between them, the most serious first.
     """
 
     mode: int
@@ -64,6 +67,7 @@ class Prediction:
     lag: float
     front: float
     ratio: float
+    cautions: tuple[Caution, ...] = ()
 
 
 @dataclass(frozen=True)

@@ -58,12 +58,23 @@ def _of_kind(dataset: Stored, kind: Kind) -> str:
             dataset["remark_target"].values[mine], dataset["remark_mode"].values[mine], strict=True
         )
     ]
-    text = kind.text.format(_span(kind, dataset["remark_number"].values[mine]))
+    text = kind.text.format(span(kind, dataset["remark_number"].values[mine]))
     return filled(f"  {text}", 4) + "\n" + filled(f"      {_concerned(dataset, rows)}", 6)
 
 
-def _span(kind: Kind, numbers: np.ndarray[tuple[int], np.dtype[np.float64]]) -> str:
-    """The smallest and the largest number, or one where they read the same."""
+def span(kind: Kind, numbers: np.ndarray[tuple[int], np.dtype[np.float64]]) -> str:
+    """The smallest and the largest number, or one where they read the same.
+
+    Parameters
+    ----------
+    kind : Kind
+    numbers : ndarray, shape (k,)
+        In the unit of the kind.
+
+    Returns
+    -------
+    str
+    """
     low, high = (format(float(number), kind.style) for number in (numbers.min(), numbers.max()))
     return low if low == high else f"{low} to {high}"
 

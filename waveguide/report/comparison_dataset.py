@@ -51,6 +51,7 @@ COMPARISON: dict[str, Variable] = {
     "predicted_ratio": _number(_ROW_MODE, "predicted amplitude ratio, SI units", "1"),
     "verdict": _text(_ROW_MODE, "consistent, too early, too late or not resolvable"),
     "reason": _text(_ROW_MODE, "why"),
+    "cautions": _text(_ROW_MODE, "where the theory of the route is out of its depth"),
     "instrument_name": _text(_PART, "record of a mooring"),
     "instrument_reference": _text(_PART, "record it is compared with"),
     "instrument_depth": _number(_PART, "depth of the instrument", "m"),
@@ -134,6 +135,7 @@ def _shared(result: PairResult | EventResult) -> dict[str, Any]:
         "predicted_ratio": [p.ratio for p in result.predictions],
         "verdict": [v.word for v in result.verdicts],
         "reason": [v.reason for v in result.verdicts],
+        "cautions": ["; ".join(c.text for c in p.cautions) for p in result.predictions],
     }
 
 

@@ -9,6 +9,10 @@ from collections.abc import Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+import numpy as np
+
+from waveguide.propagation.cautions import KINDS
+from waveguide.report.caution_text import span
 from waveguide.report.document import plain_value
 from waveguide.report.text import columns, pad, plain
 
@@ -41,8 +45,30 @@ def comparison_table(result: ComparisonResult, dataset: xr.Dataset) -> str:
         f"Ocean   {result.ocean}"
     )
     parts = [head, _lags(dataset), _reasons(dataset), _moorings(result), _records(result)]
-    parts.append("Cautions\n" + _filled("  " + dataset.attrs["caution"], 2))
+    parts.append("\n".join(["Cautions", *_cautions(result),
+                            _filled("  " + dataset.attrs["caution"], 2)]))
     return "\n\n".join(part for part in parts if part)
+
+
+def _cautions(result: ComparisonResult) -> list[str]:
+    """Each kind of caution once, with the range of its numbers and the rows it concerns."""
+    rows = [(pair.first.name, pair.second.name, pair.predictions) for pair in result.pairs]
+    rows += [("event", e.series.name, e.predictions) for e in result.events]
+    lines = []
+    for kind in KINDS:
+        numbers: list[float] = []
+        modes: dict[str, list[str]] = {}
+        for first, second, predictions in rows:
+            for p in predictions:
+                for caution in (c for c in p.cautions if c.kind == kind.name):
+                    numbers.append(caution.number)
+                    way = f"{plain(first, 24)} to {plain(second, 24)}"
+                    modes.setdefault(way, []).append(str(p.mode))
+        if numbers:
+            lines.append(_filled("  " + kind.text.format(span(kind, np.array(numbers))), 4))
+            who = (f"{way} (mode {', '.join(which)})" for way, which in modes.items())
+            lines.append(_filled("      " + " · ".join(who), 6))
+    return lines
 
 
 def _lags(dataset: xr.Dataset) -> str:

@@ -11,11 +11,14 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from waveguide.report.document import plain_value
+from waveguide.report.caution_text import cautions_text
+from waveguide.report.document import cautions_of, plain_value
 from waveguide.report.text import columns, pad, plain
 from waveguide.schema import CAUTION
 
 if TYPE_CHECKING:
+    import xarray as xr
+
     from waveguide.compare.lookout_result import Diagram, LookoutResult
     from waveguide.compare.windows import Window
 
@@ -82,8 +85,7 @@ def lookout_table(result: LookoutResult) -> str:
             f"Subset  {sizes['cell']} cells at {sizes['time']} times, from {result.chunks} chunks "
             "of the output, each read once"
         )
-    notes = [*result.notes, CAUTION]
-    parts.append("Cautions\n" + "\n".join(_filled(f"  {plain(note, 400)}", 4) for note in notes))
+    parts.append(cautions_text(result.arrivals, [plain(note, 400) for note in result.notes]))
     return "\n\n".join(part for part in parts if part)
 
 
@@ -174,8 +176,19 @@ def lookout_document(result: LookoutResult) -> dict[str, Any]:
         "routes": [route_row(diagram) for diagram in result.diagrams],
         "chunks_read": result.chunks,
         "notes": list(result.notes),
+        "cautions": _cautions(result.arrivals),
         "caution": CAUTION,
     }
+
+
+def _cautions(arrivals: xr.Dataset) -> list[dict[str, Any]]:
+    """Cautions of every answer that has some."""
+    rows = [
+        {"target": str(name), "mode": int(mode), "cautions": cautions_of(arrivals, t, m)}
+        for t, name in enumerate(arrivals["target"].values)
+        for m, mode in enumerate(arrivals["mode"].values)
+    ]
+    return [row for row in rows if row["cautions"]]
 
 
 def route_row(diagram: Diagram) -> dict[str, Any]:
