@@ -9,6 +9,7 @@ import numpy as np
 import pytest
 
 from waveguide.constants import BETA_EQUATOR, EARTH_RADIUS, REFERENCE_DENSITY, coriolis
+from waveguide.errors import InputError
 from waveguide.forcing.characteristics import add_delayed, held_on, taken_back
 from waveguide.forcing.drag import AIR_DENSITY, LAWS, wind_stress
 from waveguide.forcing.events import Patch, Storm, event_stress, within_reach
@@ -81,6 +82,11 @@ def test_equator_weighs_the_wind_as_the_kelvin_wave(width):
     found = (samples.eastward * np.exp(-((y / width) ** 2))).sum()
     assert samples.eastward.sum() == pytest.approx(1.0)
     assert found == pytest.approx((1.0 + 2.0 * c / BETA_EQUATOR / width**2) ** -0.5, rel=2e-3)
+
+
+def test_a_response_of_millions_of_steps_is_refused():
+    with pytest.raises(InputError, match="longer step_hours"):
+        uniform_times(START, START + np.timedelta64(100 * 365, "D"), 3600.0)
 
 
 def test_patch_moves_and_fades_as_described():

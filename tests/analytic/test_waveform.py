@@ -243,6 +243,15 @@ def test_coarse_time_step_is_refused(guides: SimpleNamespace) -> None:
         mode_waveforms(network, mode, [arrival], gaussian_burst(2.0 * DAY), 50.0 * DAY, DAY)
 
 
+@pytest.mark.parametrize(("first", "height"), [(0.0, 0.0), (-400.0, 1.0), (400.0, 1.0)])
+def test_a_series_without_signal_in_the_window_is_refused(
+    guides: SimpleNamespace, first: float, height: float
+) -> None:
+    source = series_source(np.arange(first, first + 5.0) * DAY, np.full(5, height))
+    with pytest.raises(InputError, match="0 throughout the 200 days"):
+        run(guides, zonal(guides), source)
+
+
 def test_a_window_of_too_many_steps_is_refused(guides: SimpleNamespace) -> None:
     with pytest.raises(InputError, match="window_days of 1562 or less"):
         run(guides, zonal(guides), gaussian_burst(0.5 * DAY), 2000.0)

@@ -195,6 +195,8 @@ def test_a_curvilinear_grid_is_refused(tmp_path):
     ({"lat": LAT * 10.0}, "not degrees on the earth"),
     ({"values": np.full((LAT.size, LON.size), np.nan)}, "every value of elevation is missing"),
     ({"units": "fathoms"}, "no length known here"),
+    ({"units": "km"}, "deepest trench"),
+    ({"values": np.where(LAT[:, None] > LAT[2], 1e300, 0.0 * LON)}, "deepest trench"),
 ])
 def test_unusable_content_is_refused(tmp_path, change, message):
     path = write(tmp_path / "b.nc", **{"values": -peru(), "units": "m", **change})

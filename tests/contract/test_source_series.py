@@ -33,7 +33,7 @@ def test_reads_times_in_any_zone_and_ignores_other_columns(tmp_path: Path) -> No
 def test_tells_all_rows_that_cannot_be_read(tmp_path: Path) -> None:
     text = (
         "time,value\n2031-03-05T00:00,1\nyesterday,1\n2031-03-05T12:00Z,\n2031-03-06T00:00Z,nan\n"
-        "2031-03-06T12:00Z\n"
+        "2031-03-06T12:00Z\n2031-03-07T00:00Z,-9999\n"
     )
     with pytest.raises(InputError) as caught:
         read_source_series(write(tmp_path, text), START)
@@ -43,9 +43,10 @@ def test_tells_all_rows_that_cannot_be_read(tmp_path: Path) -> None:
         "row 4: value = '' is not a number; gaps are not filled",
         "row 5: value = 'nan' is not a number",
         "row 6: a column is missing",
+        "row 7: value = '-9999' is no sea level",
     ):
         assert any(words in problem for problem in caught.value.problems)
-    assert len(caught.value.problems) == 5
+    assert len(caught.value.problems) == 6
 
 
 @pytest.mark.parametrize(

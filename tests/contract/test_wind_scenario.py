@@ -111,6 +111,26 @@ radius_km = 40
     assert "must rise" in told[0]
 
 
+def test_a_track_with_latitude_first_is_refused(tmp_path):
+    told = _problems(tmp_path, """
+[wind]
+end = 2031-09-01T00:00:00Z
+[[wind.storms]]
+track = [[15.0, 130.0, 2031-08-01T00:00:00Z], [20.0, 125.0, 2031-08-03T00:00:00Z]]
+max_wind_m_s = 45
+radius_km = 40
+""")
+    assert len(told) == 2
+    assert "latitude 130" in told[0]
+    assert "swapped" in told[0]
+
+
+def test_a_csv_of_winds_needs_its_stations(tmp_path):
+    (tmp_path / "winds.csv").write_text("time,a\n", "utf-8")
+    told = _problems(tmp_path, '[wind]\nfile = "winds.csv"')
+    assert "name the file of their positions in stations" in told[0]
+
+
 def test_a_file_without_an_event_says_so_to_arrivals(tmp_path):
     path = tmp_path / "wind.toml"
     path.write_text(HEAD + PATCH, "utf-8")

@@ -73,6 +73,11 @@ def test_what_is_no_atlas(tmp_path):
     (tmp_path / "cut.nc").write_bytes(packaged_file(ATLAS_FILE).read_bytes()[:20000])
     with pytest.raises(InputError, match="not a whole atlas"):
         arrivals(tmp_path, 'atlas = "cut.nc"')
+    content = packaged_file(ATLAS_FILE).read_bytes()
+    half = len(content) // 2
+    (tmp_path / "altered.nc").write_bytes(content[:half] + bytes(300) + content[half + 300 :])
+    with pytest.raises(InputError, match="not a whole atlas"):
+        arrivals(tmp_path, 'atlas = "altered.nc"')
     other = changed(tmp_path, {"network_sha256": "0" * 64})
     with pytest.raises(InputError, match="another network"):
         arrivals(tmp_path, f'atlas = "{other.name}"')

@@ -56,3 +56,11 @@ def test_what_cannot_be_used_is_said_before_any_work(tmp_path):
     (tmp_path / "file.txt").write_text("no folder")
     with pytest.raises(InputError, match="cannot be written"):
         atlas_file(tmp_path / "file.txt" / "below", HAWAII, workers=1)
+    with pytest.raises(InputError, match="--climatology"):
+        atlas_file(tmp_path / "out", HAWAII, temperature="potential", workers=1)
+
+
+def test_own_depths_elsewhere_are_refused(piece, tmp_path):
+    with pytest.raises(InputError, match="give files that cover it"):
+        atlas_file(tmp_path / "out", (-82.0, -20.0, -70.0, 0.0), bathymetry=piece, workers=1)
+    assert not (tmp_path / "out").exists()

@@ -21,6 +21,9 @@ LONGEST_GAP = 10.0 * 86400.0
 """Gaps of up to ten days (s), or of three records if that is longer, are bridged by straight
 lines."""
 
+MOST_TIMES = 250_000
+"""Steps of a response: 28 years at 1 h. More need more memory than a computer has."""
+
 _MOST_RECORDS = 3.0
 
 _UNEVEN = 1.6
@@ -171,7 +174,18 @@ def uniform_times(first: np.datetime64, last: np.datetime64, step: float) -> Tim
     Returns
     -------
     ndarray of datetime64[ns], shape (nt,)
+
+    Raises
+    ------
+    InputError
+        If there are more than `MOST_TIMES`.
     """
     count = int(np.floor(float(seconds(np.asarray(last - first))) / step + 1e-9)) + 1
+    if count > MOST_TIMES:
+        raise InputError(
+            f"wind: {count} steps of {step / 3600.0:.3g} h from {str(first)[:10]} to "
+            f"{str(last)[:10]} are more than {MOST_TIMES}; take a shorter period with start and "
+            "end, or a longer step_hours"
+        )
     offset = (np.arange(count) * step * 1e9).round().astype("timedelta64[ns]")
     return np.asarray(first.astype("datetime64[ns]") + offset)

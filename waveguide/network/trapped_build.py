@@ -70,15 +70,21 @@ def atlas_file(
     """
     network, packaged = packaged_network("baroclinic")
     check_region(network, region)
+    if temperature is not None and climatology is None:
+        raise InputError(
+            f"--temperature {temperature}: it says what a climatology of your own holds; name that "
+            "file with --climatology, or leave --temperature out"
+        )
     depths = packaged_bathymetry() if bathymetry is None else read_bathymetry(bathymetry)
     columns = (
         packaged_climatology() if climatology is None
         else read_climatology(climatology, temperature=temperature)
     )
-    parts = _parts_folder(out)
     flat = packaged
     if bathymetry is not None or climatology is not None:
         flat = _own_flat_bottom(network, depths, columns)
+        _require_cover(network, flat, region)
+    parts = _parts_folder(out)
     atlas = build_trapped_atlas(
         network, flat, depths, columns, parts, region, workers, report
     )
@@ -119,6 +125,17 @@ def check_region(network: Network, region: Region | None) -> None:
         )
     if not (inside(network, region) & np.isfinite(network.offshore)).any():
         raise InputError(f"{stated}: no coast of the guide lies in it; make it larger")
+
+
+def _require_cover(network: Network, flat: Atlas, region: Region | None) -> None:
+    """Refuse files of one's own that reach no node of the region."""
+    wanted = np.ones(network.size, bool) if region is None else inside(network, region)
+    if not (wanted & np.isfinite(flat.phase_speed[flat.row(1)])).any():
+        raise InputError(
+            "the files given hold no deep water with stratification along the guide"
+            f"{'' if region is None else ' in the region'}; give files that cover it, or leave "
+            "them out to use the packaged data"
+        )
 
 
 def _parts_folder(out: Path) -> Path:

@@ -161,7 +161,7 @@ def own_trapped_atlas(path: Path) -> TrappedAtlas:
     way_out = "make it with `waveguide atlas` of this version"
     try:
         atlas, attributes = load_atlas(path)
-    except (OSError, KeyError, ValueError) as error:
+    except (OSError, RuntimeError, KeyError, ValueError, TypeError) as error:
         raise InputError(
             f"atlas {str(path)!r}: not a whole atlas of section modes ({error}); {way_out}"
         ) from None

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -25,6 +25,9 @@ if TYPE_CHECKING:
     import xarray as xr
 
 Array = NDArray[np.float64]
+
+HIGHEST = 12e3
+"""No depth and no height on earth is greater (m)."""
 
 UPWARD_NAMES = {
     "elevation", "topography", "topo", "altitude", "height", "relief", "rose", "btopo", "etopo",
@@ -189,14 +192,27 @@ def read_bathymetry(path: str | Path, variable: str | None = None) -> Bathymetry
         values = read_values(field.squeeze(drop=True).transpose(*dimensions[::-1]), path)
         attributes = dict(field.attrs)
         name = str(field.name)
-    values = grid.apply(values).astype(np.float32)
-    values *= np.float32(metres_per_unit(attributes, name, path))
+    with np.errstate(over="ignore"):  # what float32 cannot hold becomes inf, refused below
+        values = grid.apply(values).astype(np.float32)
+        values *= np.float32(metres_per_unit(attributes, name, path))
     if not np.isfinite(values).any():
         raise InputError(f"data file {path}: every value of {name} is missing; give another file")
+    _require_earthly(values, name, path)
     upward, note = points_up(name, attributes, grid.lon, grid.lat, values)
     if upward:
         np.negative(values, out=values)
     return Bathymetry(grid.lon, grid.lat, values, f"{path}, variable {name}", note)
+
+
+def _require_earthly(values: NDArray[np.floating[Any]], name: str, path: str | Path) -> None:
+    """Refuse depths or heights (m) that the earth has not."""
+    low, high = float(np.nanmin(values)), float(np.nanmax(values))
+    if max(-low, high) > HIGHEST:
+        raise InputError(
+            f"data file {path}: {name} runs from {low:.6g} to {high:.6g} m, more than from the "
+            "deepest trench to the highest mountain; see whether its attribute units is right, "
+            "its _FillValue stated and the file whole"
+        )
 
 
 def depth_variable(

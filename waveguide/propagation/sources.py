@@ -172,6 +172,28 @@ def time_step(source: SourceFunction) -> float:
     return min(LONGEST_STEP, source.finest)
 
 
+def require_signal(source: SourceFunction, window: float, step: float) -> None:
+    """Refuse a source of which nothing falls within the window.
+
+    Parameters
+    ----------
+    source : SourceFunction
+    window, step : float
+        s.
+
+    Raises
+    ------
+    InputError
+        If the values are 0 throughout, as those of a series from another year.
+    """
+    if not np.any(source.values(np.arange(0.0, window + step, step))):
+        raise InputError(
+            "series: sea level at the source is 0 throughout the "
+            f"{window / SECONDS_PER_DAY:g} days after the start of the event; see that its dates "
+            "are those of the event"
+        )
+
+
 def _require_duration(duration: float) -> None:
     if not 0.0 < duration < np.inf:
         raise InputError(f"duration: {duration:g} s; a burst needs a positive one")

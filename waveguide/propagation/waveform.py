@@ -49,7 +49,7 @@ from waveguide.errors import InputError
 from waveguide.network.graph import Network
 from waveguide.propagation.arrivals import Arrival
 from waveguide.propagation.modes import ModeAtNodes
-from waveguide.propagation.sources import SourceFunction, time_step
+from waveguide.propagation.sources import SourceFunction, require_signal, time_step
 from waveguide.propagation.step_response import STILL, Conditions
 from waveguide.propagation.transfer import (
     Path,
@@ -361,6 +361,7 @@ def _require_window(source: SourceFunction, window: float, step: float) -> None:
             f"that an event of {days:g} days asks for are more than {_MOST_STEPS} values; state a "
             f"window_days of {_MOST_STEPS * step / SECONDS_PER_DAY:.4g} or less, or a longer event"
         )
+    require_signal(source, window, step)
 
 
 def _first_period(source: SourceFunction, window: float) -> float:

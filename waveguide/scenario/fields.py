@@ -57,7 +57,8 @@ def _latitude(value: float) -> float:
     return value
 
 
-def _position(value: tuple[float, float]) -> tuple[float, float]:
+def checked_position(value: tuple[float, float]) -> tuple[float, float]:
+    """Longitude and latitude that lie on the earth, longitude as −180..180."""
     lon, lat = value
     if not -90.0 <= lat <= 90.0 and -90.0 <= lon <= 90.0:
         raise ValueError(
@@ -142,7 +143,7 @@ Prose = Annotated[
     StringConstraints(strict=True, strip_whitespace=True, max_length=4000),
     AfterValidator(_storable),
 ]
-Position = Annotated[tuple[Number, Number], AfterValidator(_position)]
+Position = Annotated[tuple[Number, Number], AfterValidator(checked_position)]
 Box = Annotated[tuple[Number, Number, Number, Number], AfterValidator(_box)]
 Moment = Annotated[datetime, BeforeValidator(_utc)]
 Depths = Annotated[

@@ -15,6 +15,9 @@ from waveguide.scenario.problems import shown
 
 Array = NDArray[np.float64]
 
+HIGHEST = 9000.0
+"""More than any sea level in mm; -9999, 32767 or 1e20 stand for a missing value."""
+
 
 def read_source_series(path: Path, start: datetime) -> tuple[Array, Array]:
     """Read a series of sea level at the source; rows are counted from the header, which is row 1.
@@ -97,5 +100,10 @@ def _number(text: str) -> float:
         raise ValueError(
             f"value = {shown(text)} is not a number; gaps are not filled here, so interpolate "
             "them first or give a part without gaps"
+        )
+    if abs(number) > HIGHEST:
+        raise ValueError(
+            f"value = {shown(text)} is no sea level, but may stand for a missing one; gaps are not "
+            "filled here, so interpolate them first or give a part without gaps"
         )
     return number

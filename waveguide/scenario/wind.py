@@ -3,13 +3,23 @@
 from __future__ import annotations
 
 import os
+from datetime import datetime
 from itertools import pairwise
 from pathlib import Path
 from typing import Annotated, Any, Literal
 
 from pydantic import AfterValidator, BeforeValidator, Field, ValidationInfo, model_validator
 
-from waveguide.scenario.fields import DataFile, Days, Moment, Name, Number, Position, Table
+from waveguide.scenario.fields import (
+    DataFile,
+    Days,
+    Moment,
+    Name,
+    Number,
+    Position,
+    Table,
+    checked_position,
+)
 
 DragLaw = Literal["Large and Pond 1981", "Trenberth et al. 1990"]
 Azimuth = Annotated[Number, Field(ge=0.0, le=360.0)]
@@ -32,6 +42,11 @@ def _paths(value: object, info: ValidationInfo) -> tuple[Path, ...]:
     return tuple(paths)
 
 
+def _on_earth(point: tuple[float, float, datetime]) -> tuple[float, float, datetime]:
+    lon, lat, when = point
+    return *checked_position((lon, lat)), when
+
+
 def _rising(track: tuple[Any, ...]) -> tuple[Any, ...]:
     if len(track) < 2:
         raise ValueError("a track needs two points at least")
@@ -41,7 +56,7 @@ def _rising(track: tuple[Any, ...]) -> tuple[Any, ...]:
 
 
 Files = Annotated[tuple[Path, ...], BeforeValidator(_paths)]
-TrackPoint = tuple[Number, Number, Moment]
+TrackPoint = Annotated[tuple[Number, Number, Moment], AfterValidator(_on_earth)]
 
 
 class WindPatch(Table):
@@ -142,7 +157,7 @@ class Wind(Table):
     remove: Literal["nothing", "mean", "annual cycle"] = "nothing"
     start: Moment | None = None
     end: Moment | None = None
-    step_hours: Annotated[Number, Field(gt=0.0, le=240.0)] | None = None
+    step_hours: Annotated[Number, Field(ge=0.1, le=240.0)] | None = None
     patches: tuple[WindPatch, ...] = ()
     storms: tuple[WindStorm, ...] = ()
 
@@ -168,6 +183,11 @@ class Wind(Table):
             raise ValueError(
                 "stations and a quantity of 'alongshore stress' or 'upwelling index' belong "
                 "together; give both or neither"
+            )
+        if not along and any(path.suffix.lower() == ".csv" for path in self.file or ()):
+            raise ValueError(
+                "a CSV file holds winds at stations; name the file of their positions in stations "
+                "and what the values are in quantity"
             )
         if along and (self.file is None or len(self.file) > 1):
             raise ValueError("winds at stations come in one CSV file; name it in file")
