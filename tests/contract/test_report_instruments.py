@@ -20,7 +20,7 @@ from waveguide.scenario import read_scenario
 SCENARIO = """
 title = "A mooring"
 [event]
-position = [-80.0, 0.0]
+position = [-81.0, 0.0]
 start = 2031-03-05T00:00:00Z
 duration_days = 10
 [waves]
