@@ -5,6 +5,7 @@ Exit status: 0 answered, 2 the input cannot be used, 1 a defect of the package.
 
 from __future__ import annotations
 
+import errno
 import os
 import sys
 import traceback
@@ -69,7 +70,11 @@ def main() -> None:
         for problem in error.problems:  # which may quote a file, whatever it holds
             print(f"waveguide: {plain(problem, _LONGEST_PROBLEM)}", file=sys.stderr)
         sys.exit(2)
-    except Exception:
+    except Exception as error:
+        if isinstance(error, OSError) and error.errno == errno.ENOSPC:
+            print(f"waveguide: {error.strerror}; free some, or send the output elsewhere",
+                  file=sys.stderr)  # fmt: skip
+            os._exit(2)  # without another attempt to empty what waits for standard output
         traceback.print_exc()
         print("waveguide: this is a defect of waveguide; please report it", file=sys.stderr)
         sys.exit(1)

@@ -114,13 +114,15 @@ def atlas(
 ) -> None:
     """Modes of every section of the guide; goes on if interrupted."""
     from waveguide.network.trapped_build import atlas_file
+    from waveguide.report.files import written
 
     try:
-        path, found = atlas_file(
-            out, region, bathymetry, climatology,
-            temperature,  # type: ignore[arg-type]  # checked where the file is read
-            workers, Bar("atlas"),
-        )
+        with written():
+            path, found = atlas_file(
+                out, region, bathymetry, climatology,
+                temperature,  # type: ignore[arg-type]  # checked where the file is read
+                workers, Bar("atlas"),
+            )
     except KeyboardInterrupt:
         print("\nwaveguide: interrupted; the same command goes on from here", file=sys.stderr)
         raise typer.Exit(130) from None

@@ -13,7 +13,7 @@ import shapely
 import xarray as xr
 
 from waveguide.errors import InputError
-from waveguide.report.files import output_folder, write_outputs
+from waveguide.report.files import output_folder, write_outputs, written
 from waveguide.scenario.fields import Format
 from waveguide.schema import check
 
@@ -82,6 +82,24 @@ def test_a_folder_in_the_way_of_a_file_stops_all_files(arrivals, tmp_path):
     with pytest.raises(InputError, match=r"legs\.csv is a folder"), output_folder(tmp_path) as f:
         write_outputs(arrivals, f, ["csv"])
     assert os.listdir(tmp_path) == ["legs.csv"]
+
+
+@pytest.mark.parametrize(
+    ("error", "reason"),
+    [
+        (OSError(28, "No space left on device"), "No space left on device"),
+        (RuntimeError("NetCDF: HDF error"), "NetCDF: HDF error"),  # a full disk too
+    ],
+)
+def test_a_full_disk_is_told(error, reason):
+    with pytest.raises(InputError, match=rf"cannot be written \({reason}\); free some space"):
+        with written():
+            raise error
+
+
+def test_other_errors_while_writing_stay_defects():
+    with pytest.raises(RuntimeError, match="ours"), written():
+        raise RuntimeError("ours")
 
 
 def test_csv(arrivals, tmp_path):

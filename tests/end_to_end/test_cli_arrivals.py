@@ -10,6 +10,7 @@ import subprocess
 import sys
 import time
 import types
+from pathlib import Path
 
 import pytest
 
@@ -191,3 +192,15 @@ def test_a_name_the_terminal_cannot_show_is_escaped(run, arrivals, monkeypatch):
     status, _, err = run("arrivals", "peru_burst")
     assert (status, err) == (0, "")
     assert b"Gal\\xe1pagos" in narrow.buffer.getvalue()
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="no device that is always full")
+def test_a_full_standard_output_is_told():
+    with Path("/dev/full").open("w") as full:
+        done = subprocess.run(
+            [sys.executable, "-c", "from waveguide.cli import main; main()", "scenarios"],
+            stdout=full, stderr=subprocess.PIPE, text=True, check=False,
+        )  # fmt: skip
+    assert done.returncode == 2
+    assert done.stderr.startswith("waveguide: No space left on device")
+    assert len(done.stderr.splitlines()) == 1

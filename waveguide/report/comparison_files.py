@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from waveguide.errors import InputError
+from waveguide.report.files import written
 
 if TYPE_CHECKING:
     import xarray as xr
@@ -36,7 +36,7 @@ def write_comparison(
     InputError
         Where the files cannot be written.
     """
-    try:
+    with written():
         for name in formats:
             if name == "csv":
                 from waveguide.report.comparison_text import write_comparison_csv
@@ -49,11 +49,6 @@ def write_comparison(
                 from waveguide.report.comparison_figure import write_comparison_figures
 
                 write_comparison_figures(result, folder)
-    except OSError as error:
-        raise InputError(
-            f"the outputs cannot be written ({error.strerror}); free some space, or choose "
-            "another folder with --out"
-        ) from None
 
 
 def series_dataset(result: ComparisonResult) -> xr.Dataset:

@@ -35,16 +35,32 @@ def write_outputs(dataset: xr.Dataset, folder: Path, formats: Iterable[str]) -> 
     InputError
         Where the files cannot be written, for example because the disk is full.
     """
+    with written(), warnings.catch_warnings():
+        # Letters that the font of the figures lacks are boxes; README says so.
+        warnings.filterwarnings("ignore", r"Glyph .* missing from font")
+        for name in formats:
+            _writer(name)(dataset, folder)
+
+
+@contextmanager
+def written() -> Iterator[None]:
+    """Around the writing of outputs: a disk that does not take them is told in words.
+
+    Raises
+    ------
+    InputError
+        Where they cannot be written, for example because the disk is full.
+    """
     try:
-        with warnings.catch_warnings():
-            # Letters that the font of the figures lacks are boxes; README says so.
-            warnings.filterwarnings("ignore", r"Glyph .* missing from font")
-            for name in formats:
-                _writer(name)(dataset, folder)
-    except OSError as error:
+        yield
+    except (OSError, RuntimeError) as error:
+        # A full disk reaches us from the library of NetCDF as RuntimeError("NetCDF: HDF error").
+        if isinstance(error, RuntimeError) and not str(error).startswith("NetCDF"):
+            raise
+        reason = getattr(error, "strerror", None) or error
         raise InputError(
-            f"the outputs cannot be written ({error.strerror}); free some space, or choose "
-            "another folder with --out"
+            f"the outputs cannot be written ({reason}); free some space, or choose another folder "
+            "with --out"
         ) from None
 
 

@@ -9,8 +9,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from waveguide.errors import InputError
 from waveguide.report.document import plain_value
+from waveguide.report.files import written
 from waveguide.report.lookout_text import window_rows, write_lookout_csv
 
 if TYPE_CHECKING:
@@ -34,14 +34,9 @@ def write_lookout(result: LookoutResult, folder: Path, formats: Iterable[str]) -
     InputError
         Where the files cannot be written.
     """
-    try:
+    with written():
         for name in formats:
             _write(result, folder, name)
-    except OSError as error:
-        raise InputError(
-            f"the outputs cannot be written ({error.strerror}); free some space, or choose "
-            "another folder with --out"
-        ) from None
 
 
 def _write(result: LookoutResult, folder: Path, name: str) -> None:

@@ -11,7 +11,7 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from waveguide.errors import InputError
+from waveguide.report.files import written
 from waveguide.report.page_data import page_data
 
 if TYPE_CHECKING:
@@ -42,13 +42,8 @@ def write_page(
         Where the file cannot be written.
     """
     text = page(page_data(arrivals, plan, sections))
-    try:
+    with written():
         (folder / "page.html").write_text(text, encoding="utf-8")
-    except OSError as error:
-        raise InputError(
-            f"the page cannot be written ({error.strerror}); free some space, or choose another "
-            "folder with --out"
-        ) from None
 
 
 def page(data: Mapping[str, Any]) -> str:

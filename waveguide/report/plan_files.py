@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from waveguide.errors import InputError
+from waveguide.report.files import written
 
 if TYPE_CHECKING:
     import xarray as xr
@@ -31,18 +31,13 @@ def write_plan(dataset: xr.Dataset, folder: Path, formats: Iterable[str]) -> Non
     InputError
         Where the files cannot be written.
     """
-    try:
+    with written():
         if "csv" in formats:
             from waveguide.report.plan_text import write_plan_csv
 
             write_plan_csv(dataset, folder)
         if "netcdf" in formats:
             _write_netcdf(dataset, folder / "plan.nc")
-    except OSError as error:
-        raise InputError(
-            f"the outputs cannot be written ({error.strerror}); free some space, or choose "
-            "another folder with --out"
-        ) from None
 
 
 def _write_netcdf(dataset: xr.Dataset, path: Path) -> None:

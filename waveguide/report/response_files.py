@@ -9,8 +9,8 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from waveguide.errors import InputError
 from waveguide.report.csv_files import cell
+from waveguide.report.files import written
 from waveguide.report.response_dataset import RESPONSE
 
 if TYPE_CHECKING:
@@ -39,7 +39,7 @@ def write_response(
     InputError
         Where the files cannot be written.
     """
-    try:
+    with written():
         for name in formats:
             if name == "csv":
                 write_response_csv(dataset, folder)
@@ -50,11 +50,6 @@ def write_response(
                 from waveguide.report.response_figure import write_response_figures
 
                 write_response_figures(result, dataset, folder)
-    except OSError as error:
-        raise InputError(
-            f"the outputs cannot be written ({error.strerror}); free some space, or choose "
-            "another folder with --out"
-        ) from None
 
 
 def write_response_csv(dataset: xr.Dataset, folder: Path) -> None:

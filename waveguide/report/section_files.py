@@ -7,8 +7,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from waveguide.errors import InputError
 from waveguide.report.figures import save_for_print
+from waveguide.report.files import written
 from waveguide.report.section_figure import draw_section
 
 if TYPE_CHECKING:
@@ -36,11 +36,6 @@ def write_section(dataset: xr.Dataset, folder: Path) -> None:
         for name, variable in dataset.data_vars.items()
         if variable.dtype.kind == "f"
     }
-    try:
+    with written():
         save_for_print(figure, folder, "section", dataset.attrs["title"])
         dataset.to_netcdf(folder / "section.nc", engine="netcdf4", encoding=encoding)
-    except OSError as error:
-        raise InputError(
-            f"the outputs cannot be written ({error.strerror}); free some space, or choose "
-            "another folder with --out"
-        ) from None
