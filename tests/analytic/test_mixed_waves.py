@@ -10,6 +10,7 @@ from numpy.testing import assert_allclose
 
 from waveguide.constants import BETA_EQUATOR
 from waveguide.network.graph import Network
+from waveguide.propagation import mixed_waves
 from waveguide.propagation.equator import eastern_wall, eastern_wall_mixed
 from waveguide.propagation.mixed_waves import FADED, FULL, crossings, gains
 from waveguide.propagation.modes import ModeAtNodes
@@ -100,3 +101,11 @@ def test_an_ocean_is_crossed_from_coast_to_coast(guides: SimpleNamespace) -> Non
     assert (crossing.west_side, crossing.east_side) == (0, 0)
     assert crossings(network, table, steps[equator]) == []
     assert crossings(network, table, steps[int(np.flatnonzero(equator)[0]):]) == []
+
+
+@pytest.mark.parametrize("place", [0.5, 2.0, 6.0])
+def test_wall_solutions_between_the_frequencies_computed(place: float) -> None:
+    frequency = np.sort(np.random.default_rng(0).uniform(FADED, 1.7, 300))
+    direct = eastern_wall_mixed(frequency, place) / eastern_wall(frequency, place)
+    found = np.interp(frequency, mixed_waves._GRID, mixed_waves._wall_ratios(place))
+    assert_allclose(found, direct, rtol=3e-3)

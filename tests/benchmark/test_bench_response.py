@@ -20,7 +20,7 @@ from waveguide.forcing.influence import step_increment
 from waveguide.forcing.projection import record_forcing
 from waveguide.forcing.samples import step_samples
 from waveguide.forcing.wind_file import open_wind
-from waveguide.network.packaged import packaged_network
+from waveguide.network.trapped_store import packaged_guide
 from waveguide.ocean.bathymetry import packaged_bathymetry
 from waveguide.propagation.losses import step_physics
 from waveguide.propagation.modes import atlas_mode
@@ -51,7 +51,7 @@ def winds(tmp_path_factory) -> Path:
 
 
 def test_ten_years_to_all_nodes_of_the_pacific(winds):
-    network, atlas = packaged_network("baroclinic")
+    network, atlas = packaged_guide("baroclinic")
     depths = packaged_bathymetry()
     east = network.lon % 360.0
     pacific = (east > 115.0) & (east < 285.0) & (np.abs(network.lat) < 55.0)

@@ -13,7 +13,8 @@ import pytest
 import xarray as xr
 
 import waveguide
-from waveguide.propagation.cautions import KINDS, rise_cautions
+from waveguide.propagation.cautions import KINDS, mixed_cautions, rise_cautions
+from waveguide.propagation.legs import Leg
 from waveguide.report.document import document
 from waveguide.report.page_data import _CHECKS
 
@@ -38,6 +39,7 @@ FLAGS = {
     ),
     "amplitude": (["amplitude_ratio"], ["faint signal"]),
     "half-height and front": (["half_height_time_days", "front_time_days"], ["early rise"]),
+    "mixed waves": (["peak_time_days", "half_height_time_days"], ["mixed waves"]),
 }  # fmt: skip
 
 LIMITS = {name: beyond for name, _, _, beyond in _CHECKS}
@@ -84,7 +86,11 @@ def test_a_caution_stands_for_every_number_beyond_its_limit_and_for_no_other(ans
             assert all(abs(number) == pytest.approx(abs(value), rel=1e-9)
                        or number == pytest.approx(100.0 * value) for number in raised), name
         front, half = (answer[f"{n}_time_days"].values[t, m] for n in ("front", "half_height"))
-        assert ("early rise" in told) == (front - half > 1.0)
+        wave, time = answer["source_waveform"].values, answer["time_days"].values
+        source = time[np.argmax(wave >= 0.5 * wave.max())]  # to a step of the waveform
+        early = front - half + source
+        if abs(early - 1.0) > time[1]:
+            assert ("early rise" in told) == (early > 1.0)
         assert ("faint signal" in told) == (answer["amplitude_ratio"].values[t, m] < 0.01)
 
 
@@ -97,8 +103,23 @@ def test_cautions_are_told_the_most_serious_first(answer):
 
 def test_half_height_well_before_the_front_is_told_with_the_difference():
     day = 86400.0
-    (caution,) = rise_cautions(30.0 * day, 22.5 * day)
+    (caution,) = rise_cautions(30.0 * day, 24.5 * day, 2.0 * day)
     assert caution.number == pytest.approx(7.5)
-    assert "7.5 days before the front" in caution.text
-    assert rise_cautions(30.0 * day, 29.5 * day) == []
-    assert rise_cautions(30.0 * day, 33.0 * day) == []
+    assert "7.5 days less than the front" in caution.text
+    assert rise_cautions(30.0 * day, 31.5 * day, 2.0 * day) == []
+    assert rise_cautions(30.0 * day, 33.0 * day, 2.0 * day) == []
+
+
+def test_mixed_waves_are_told_for_short_events_from_coast_to_coast():
+    def leg(kind, length):
+        ends = np.array([0.0, length])
+        return Leg(kind, ends, ends, ends, ends / 2.5, 1.0, 3)
+
+    crossing = [leg("coast", 1e6), leg("equator", 6e6), leg("coast", 1e6)]
+    omega = 2.0 * np.pi / (86400.0 * np.array([60.0, 30.0, 9.6]))
+    (caution,) = mixed_cautions(crossing, omega, np.array([0.3, 0.4, 0.3]))
+    assert caution.number == pytest.approx(30.0)
+    assert mixed_cautions(crossing, omega, np.array([0.5, 0.45, 0.05])) == []
+    assert mixed_cautions(crossing[1:], omega, np.array([0.3, 0.4, 0.3])) == []
+    islands = [leg("coast", 1e6), leg("equator", 3e5), leg("coast", 1e6)]
+    assert mixed_cautions(islands, omega, np.array([0.3, 0.4, 0.3])) == []

@@ -2,12 +2,23 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
-from waveguide.constants import SECONDS_PER_DAY
+import numpy as np
+from numpy.typing import NDArray
+
+from waveguide.constants import BETA_EQUATOR, SECONDS_PER_DAY
 from waveguide.network.attach import Ties
+from waveguide.propagation.mixed_waves import FULL
 from waveguide.propagation.routes import Route
 from waveguide.propagation.validity import UPPER_OCEAN, Validity
+
+if TYPE_CHECKING:
+    from waveguide.propagation.legs import Leg
+
+Array = NDArray[np.float64]
 
 FASTEST_SHARE_OF_F = 0.3
 """ω/|f| above which a wave is not "low-frequency": the error of the long-wave limit is ω²/f²."""
@@ -42,7 +53,14 @@ COVERED_WIND = 0.99
 """Share of the influence that a wind record covers below which it is told."""
 
 EARLIEST_RISE = 1.0
-"""Days by which half-height may precede the front without a word: T_e or so (see `waveform`)."""
+"""Days by which half-height, less that at the source, may precede the front without a word: T_e
+or so (see :mod:`waveguide.propagation.waveform`)."""
+
+LEAST_MIXED = 0.1
+"""Share of the event's energy from which mixed waves are told."""
+
+SHORTEST_OCEAN = 1000e3
+"""Equator between two coasts that is an ocean (m)."""
 
 
 @dataclass(frozen=True)
@@ -71,10 +89,16 @@ KINDS = (
          "amplitude ratio {}: faint, and no better known than what friction and straits take on "
          "the way: ten times as much may be left"),
     Kind("early rise", "days", ".1f",
-         "half-height comes {} days before the front: where a coast slants away from a junction "
-         "the wave takes a short cut to or from the equator, the front is told along the guide"),
+         "from half-height at the source to half-height it takes {} days less than the front: "
+         "where a coast slants away from a junction the wave takes a short cut to or from the "
+         "equator, and below the critical frequency sea level rises all along a coast; the front "
+         "is told along the guide"),
     Kind("uncovered wind", "%", ".0f",
          "the wind record covers {} % of what lies upstream: the rest is taken as calm"),
+    Kind("mixed waves", "%", ".0f",
+         "{} % of the event's energy is at periods at which mixed Rossby-gravity waves cross the "
+         "ocean too, later, with heights known within a factor of two: a peak or half-height may "
+         "be theirs"),
     Kind("fast wave", "1", ".2f",
          "ω/|f| reaches {} on the route: the wave is not slow beside the earth's rotation"),
     Kind("sea ice in the north", "°N", ".0f",
@@ -211,21 +235,51 @@ def _raised(found: Found) -> list[Caution]:
     return [Caution(kind.name, raised[kind.name]) for kind in KINDS if kind.name in raised]
 
 
-def rise_cautions(front: float, half_height: float) -> list[Caution]:
+def rise_cautions(front: float, half_height: float, at_source: float) -> list[Caution]:
     """The caution of a waveform that does not wait for the front.
 
     Parameters
     ----------
-    front, half_height : float
-        Times from the start of the event (s).
+    front : float
+        Travel time of the front (s).
+    half_height, at_source : float
+        Half-height at the target and at the source, from the start of the event (s).
 
     Returns
     -------
     list of Caution
         None or one.
     """
-    early = (front - half_height) / SECONDS_PER_DAY
+    early = (front - (half_height - at_source)) / SECONDS_PER_DAY
     return [Caution("early rise", early)] if early > EARLIEST_RISE else []
+
+
+def mixed_cautions(legs: Sequence[Leg], omega: Array, power: Array) -> list[Caution]:
+    """The caution of an event so short that mixed waves cross an ocean beside the Kelvin wave.
+
+    Parameters
+    ----------
+    legs : sequence of Leg
+        Of the route.
+    omega, power : ndarray, shape (nω,)
+        Frequencies of the source (rad/s) and its energy spectrum, with sum 1.
+
+    Returns
+    -------
+    list of Caution
+        None or one.
+    """
+    guided = [leg for leg in legs if leg.kind != "attachment"]
+    crossed = [
+        leg for before, leg, after in zip(guided, guided[1:], guided[2:], strict=False)
+        if (before.kind, leg.kind, after.kind) == ("coast", "equator", "coast")
+        and leg.distance[-1] > SHORTEST_OCEAN
+    ]
+    if not crossed:
+        return []
+    speed = crossed[0].distance[-1] / crossed[0].time[-1]
+    share = float(power[omega > FULL * np.sqrt(BETA_EQUATOR * speed)].sum())
+    return [Caution("mixed waves", 100.0 * share)] if share > LEAST_MIXED else []
 
 
 def by_seriousness(cautions: list[Caution]) -> list[Caution]:

@@ -32,7 +32,7 @@ from waveguide.propagation.answers import ModeAnswer
 from waveguide.propagation.gap_errors import GRID, gap_logs
 from waveguide.propagation.modes import ModeAtNodes
 from waveguide.propagation.path_errors import relative_delays
-from waveguide.propagation.priors import INPUTS, PATH_INPUTS, Priors
+from waveguide.propagation.priors import HIGHER_MODES, INPUTS, PATH_INPUTS, Priors
 from waveguide.propagation.routes import Route
 from waveguide.propagation.sources import SourceFunction
 from waveguide.propagation.step_response import FATES, STILL, Conditions
@@ -66,8 +66,9 @@ class Sensitivity:
         Of amplitude, taken by friction and damping.
     gaps : dict of str to ndarray, shape (7,)
         Change of ln height by straits and facing coasts at `GRID`.
-    sections : bool
-        Whether the target lies on a coast whose modes are those of sections.
+    sections : float
+        Size of the error of the coastal value in units of its prior: 0 where the target does not
+        lie on a coast whose modes are those of sections.
     """
 
     front: float
@@ -77,7 +78,7 @@ class Sensitivity:
     table: WaveTable
     nepers: float
     gaps: dict[str, Array]
-    sections: bool
+    sections: float
 
 
 @dataclass(frozen=True)
@@ -140,7 +141,7 @@ def sensitivity(
         transfers[0].front_time, delay, *_source(network, answer.mode, arrival.source, headline),
         table, float(transfers[0].leg_nepers[lost, :, at].sum()),
         gap_logs(network, answer.mode, headline.steps, omega, priors.gap_width),
-        _ends_on_sections(network, answer.mode, arrival.target, headline),
+        _error_of_sections(network, answer.mode, arrival.target, headline),
     )
 
 
@@ -216,12 +217,14 @@ def _grid(spread: float, count: int) -> Array:
     return np.linspace(-half, half, count)
 
 
-def _ends_on_sections(
+def _error_of_sections(
     network: Network, mode: ModeAtNodes, target: Ties, route: Route
-) -> bool:
-    """Whether a route ends on a coast where coastal values change from section to section."""
+) -> float:
+    """`Sensitivity.sections`: higher modes are known half as well as the first."""
     node = int(target.node[route.end])
-    return bool(np.isfinite(network.offshore[node]) and np.isfinite(mode.detuning[node]))
+    if not (np.isfinite(network.offshore[node]) and np.isfinite(mode.detuning[node])):
+        return 0.0
+    return 1.0 if mode.number == 1 else HIGHER_MODES
 
 
 def _source(

@@ -39,6 +39,7 @@ Matsuno (1966), J. Meteorol. Soc. Japan 44, 25 (the mixed wave).
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import cache
 from typing import NamedTuple
 
 import numpy as np
@@ -57,6 +58,9 @@ Mask = NDArray[np.bool_]
 
 FADED, FULL = 0.4, 0.5
 """ω̂ below which the mixed wave is left out, and from which it is whole."""
+
+_GRID = np.linspace(FADED, HIGHEST_SCALED_FREQUENCY, 521)
+"""ω̂ at which wall solutions are computed: between them, below 1 + √½, linear to 3e-3."""
 
 _FAR = 6.0  # ŷ where only the wave along the coast is left of the wall solution
 
@@ -174,10 +178,10 @@ def _ratio(
     omega = omega[carried]
     for row, side in ((crossing.west, crossing.west_side), (crossing.east, crossing.east_side)):
         mine, other = table.energy[row, side, carried], table.energy[row, 1 - side, carried]
-        frequency = _scaled(mode, table, omega, row)
-        turned = eastern_wall_mixed(frequency, _FAR) / eastern_wall(frequency, _FAR)
+        turned = np.angle(_wall_ratios(_FAR))
         share = np.divide(other, mine, out=np.zeros_like(mine), where=mine > 0.0)
-        ratio *= np.sqrt(share) * np.exp(1j * np.angle(turned))
+        phase = np.interp(_scaled(mode, table, omega, row), _GRID, np.unwrap(turned))
+        ratio *= np.sqrt(share) * np.exp(1j * phase)
     later = BETA_EQUATOR * crossing.length / omega
     return np.asarray(ratio * np.exp(-1j * later - damping * later / omega))
 
@@ -190,9 +194,14 @@ def _near(
     place = float(scaled_distance(network, mode, np.array([node]))[0])
     if table.junctions.coast[node] // 2 != junction or place >= mode.matching:
         return np.ones(omega.size, complex)
-    frequency, here = _scaled(mode, table, omega, junction), np.array([place, mode.matching])
-    mixed, kelvin = eastern_wall_mixed(frequency, here), eastern_wall(frequency, here)
-    return np.asarray(mixed[:, 0] / mixed[:, 1] * kelvin[:, 1] / kelvin[:, 0])
+    shape = _wall_ratios(place) / _wall_ratios(mode.matching)
+    return np.asarray(np.interp(_scaled(mode, table, omega, junction), _GRID, shape))
+
+
+@cache
+def _wall_ratios(distance: float) -> ComplexArray:
+    """Mixed over Kelvin wave along an eastern wall, on `_GRID`."""
+    return eastern_wall_mixed(_GRID, distance) / eastern_wall(_GRID, distance)
 
 
 def _scaled(mode: ModeAtNodes, table: JunctionTable, omega: Array, row: int) -> Array:

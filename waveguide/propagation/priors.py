@@ -21,7 +21,8 @@ path are correlated as exp(−|s − s′|/L), L being given beside each. Where 
   a cell (uniform);
 - coastal value, a factor e^±0.4 of sea level at a target on a coast: of the coasts along which
   twelve modes are coupled (tests/oracle/test_oracle_coupled.py) half the heights of mode 1 are off
-  by more than a factor of 1.31, which is e^(0.674 × 0.4);
+  by more than a factor of 1.31, which is e^(0.674 × 0.4). Half of those of mode 2 are off by more
+  than 1.79: higher modes have `HIGHER_MODES` times the error;
 - bottom friction and damping, a factor e^±0.5: linear drags in use for shelves go from 2e-4 to
   1e-3 m/s (MEMORY), which is two of these about the usual 5e-4.
 
@@ -70,6 +71,10 @@ INPUTS = (
 
 PATH_INPUTS = INPUTS[:4]
 """Those whose errors add up along the path."""
+
+
+HIGHER_MODES = 2.0
+"""Error of the coastal value of modes from 2 upward, over that of mode 1."""
 
 
 @dataclass(frozen=True)

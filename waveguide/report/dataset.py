@@ -10,13 +10,13 @@ import numpy as np
 from waveguide.constants import SECONDS_PER_DAY
 from waveguide.propagation.answers import ModeAnswer
 from waveguide.propagation.arrivals import REACHED, Arrival
-from waveguide.propagation.cautions import Caution, by_seriousness, rise_cautions
+from waveguide.propagation.cautions import Caution, by_seriousness, mixed_cautions, rise_cautions
 from waveguide.propagation.frequency_limits import Criticality
 from waveguide.propagation.legs import Leg
 from waveguide.propagation.routes import Route
 from waveguide.propagation.step_response import FATES
 from waveguide.propagation.transfer import LegBudget
-from waveguide.propagation.waveform import ArrivalTimes, mode_shares
+from waveguide.propagation.waveform import ArrivalTimes, arrival_times, mode_shares
 from waveguide.report.instruments import instrument_columns
 from waveguide.report.remarks import caution_words, remark_rows, validity_values
 from waveguide.report.sums import farthest
@@ -138,8 +138,12 @@ def _cautions(answer: ModeAnswer, target: int) -> list[Caution]:
     arrival = answer.arrivals[target]
     if arrival.status != REACHED:
         return arrival.cautions
-    rise = rise_cautions(arrival.routes[0].time, answer.times[target].half_height)
-    return by_seriousness(arrival.cautions + rise)
+    waves, front = answer.waveforms, arrival.routes[0].time
+    source = arrival_times(waves.time, waves.source).half_height
+    return by_seriousness([
+        *arrival.cautions, *rise_cautions(front, answer.times[target].half_height, source),
+        *mixed_cautions(arrival.legs[0], waves.omega, waves.power),
+    ])
 
 
 def _waveforms(answers: list[ModeAnswer], start: np.datetime64) -> dict[str, Any]:
