@@ -92,9 +92,9 @@ def test_a_folder_in_the_way_of_a_file_stops_all_files(arrivals, tmp_path):
     ],
 )
 def test_a_full_disk_is_told(error, reason):
-    with pytest.raises(InputError, match=rf"cannot be written \({reason}\); free some space"):
-        with written():
-            raise error
+    said = rf"cannot be written \({reason}\); free some space"
+    with pytest.raises(InputError, match=said), written():
+        raise error
 
 
 def test_other_errors_while_writing_stay_defects():

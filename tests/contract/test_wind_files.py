@@ -327,6 +327,13 @@ def test_values_missing_for_long_are_refused(tmp_path):
         _stress(_open(_saved(d, tmp_path)))
 
 
+def test_a_rare_missing_value_that_is_not_marked_is_refused(tmp_path):
+    d = _wind(days=40)
+    d["v10"][10] = -9999.0
+    with pytest.raises(InputError, match="_FillValue"):
+        _stress(_open(_saved(d, tmp_path)))
+
+
 # --- stations -----------------------------------------------------------------------------
 
 VALUES = "date,a,b\n2031-01-01,10,-20\n2031-01-02,,5\n2031-01-03,30,5\n"
@@ -366,3 +373,14 @@ def test_stations_are_read(tmp_path):
 def test_bad_station_files_are_refused(tmp_path, values, places, words):
     with pytest.raises(InputError, match=words):
         read_stations(*_station_files(tmp_path, values, places), "upwelling index")
+
+
+def test_a_station_with_one_value_for_missing_or_no_text_is_refused(tmp_path):
+    dates = np.datetime64("2031-01-01") + np.arange(300)
+    rows = [f"{day},{-9999 if n == 150 else 5}" for n, day in enumerate(dates)]
+    files = _station_files(tmp_path, "\n".join(["date,a", *rows]))
+    with pytest.raises(InputError, match="leave its cell empty"):
+        read_stations(*files, "upwelling index")
+    files[0].write_bytes("date,Á\n2031-01-01,1\n".encode("latin-1"))
+    with pytest.raises(InputError, match="save it as CSV in UTF-8"):
+        read_stations(*files, "upwelling index")

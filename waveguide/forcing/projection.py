@@ -27,6 +27,9 @@ from waveguide.network.graph import Network
 Array = NDArray[np.float64]
 Series = NDArray[np.float32]
 Index = NDArray[np.int64]
+STRONGEST = 30.0
+"""Stress (Pa) under a wind of some 70 m/s."""
+
 Removal = Literal["nothing", "mean", "annual cycle"]
 
 YEAR = 365.2425 * SECONDS_PER_DAY
@@ -90,7 +93,7 @@ def record_forcing(
     Raises
     ------
     InputError
-        If values are missing in too long a row.
+        If values are missing in too long a row, or impossible.
     """
     first, last = period
     matrix, covered = sampling_matrix(wind, samples)
@@ -105,6 +108,13 @@ def record_forcing(
         east, north = (csr_array(part[:, cells], dtype=np.float64) for part in parts)
         for where, x, y in stress_chunks(wind, cells, first, last):
             stress[:, where] = east @ x.T + north @ y.T
+    strongest = float(np.nanmax(np.abs(stress), initial=0.0))
+    if strongest > STRONGEST:
+        raise InputError(
+            f"wind: the record makes a stress of {strongest:.3g} Pa along the guide, as no storm "
+            "does; mark missing values as such (_FillValue), or choose a period without them "
+            "(wind.start, wind.end)"
+        )
     bridged = fill_gaps(stress, wind.time[first:last], _places(network, steps))
     record = seconds(wind.time[first:last] - wind.time[first])
     time = uniform_times(wind.time[first], wind.time[last - 1], step)

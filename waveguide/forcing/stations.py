@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import csv
 import gzip
+import zlib
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Literal
@@ -103,6 +104,12 @@ def read_stations(values: Path, places: Path, measure: Measure) -> StationWinds:
             f"{'Pa' if measure == 'alongshore stress' else 'm³/s per 100 m of coast'}; convert it, "
             "or correct quantity in [wind]"
         )
+    worst = float(np.nanmax(np.abs(table)))
+    if worst > 3.0 * LARGEST[measure]:
+        raise InputError(
+            f"{values.name}: a value of size {worst:g} is no {measure}, but may stand for a "
+            "missing one; leave its cell empty"
+        )
     lon, lat = np.array([position[name] for name in names]).T
     factor = np.ones(len(names))
     if measure == "upwelling index":
@@ -112,9 +119,14 @@ def read_stations(values: Path, places: Path, measure: Measure) -> StationWinds:
 
 def _table(path: Path) -> tuple[list[str], list[list[str]]]:
     """Header and rows of a CSV file, each row as long as the header."""
-    content = path.read_bytes()
-    text = (gzip.decompress(content) if path.suffix == ".gz" else content).decode("utf-8-sig")
-    rows = [[cell.strip() for cell in row] for row in csv.reader(text.splitlines()) if any(row)]
+    try:
+        content = path.read_bytes()
+        text = (gzip.decompress(content) if path.suffix == ".gz" else content).decode("utf-8-sig")
+        rows = [[cell.strip() for cell in row] for row in csv.reader(text.splitlines()) if any(row)]
+    except (OSError, EOFError, UnicodeDecodeError, zlib.error, csv.Error) as error:
+        raise InputError(
+            f"{path.name}: it cannot be read as CSV ({error}); save it as CSV in UTF-8"
+        ) from None
     if len(rows) < 2:
         raise InputError(f"{path.name}: it has no rows of values below a header")
     wrong = [number for number, row in enumerate(rows, start=1) if len(row) != len(rows[0])]
