@@ -377,7 +377,7 @@ def test_bad_station_files_are_refused(tmp_path, values, places, words):
 
 def test_a_station_with_one_value_for_missing_or_no_text_is_refused(tmp_path):
     dates = np.datetime64("2031-01-01") + np.arange(300)
-    rows = [f"{day},{-9999 if n == 150 else 5}" for n, day in enumerate(dates)]
+    rows = [f"{day},{-99999 if n == 150 else 5}" for n, day in enumerate(dates)]
     files = _station_files(tmp_path, "\n".join(["date,a", *rows]))
     with pytest.raises(InputError, match="leave its cell empty"):
         read_stations(*files, "upwelling index")
