@@ -166,8 +166,7 @@ def mode_waveforms(
     Raises
     ------
     InputError
-        If the event lasts longer than the window, or the time step is too long for the event
-        or too short for the window.
+        If the event does not fit the window, or the time step does not suit both.
     """
     step = time_step(source) if step is None else step
     _require_window(source, window, step)
