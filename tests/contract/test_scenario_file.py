@@ -126,6 +126,7 @@ def test_all_problems_are_told_at_once(scenario):
         ("waves", "[2, 1]", "[1.0]", ("1.0", "whole number")),
         ("waves", "[2, 1]", "[4]", ("waves.modes = 4", "at most 3")),
         ("waves", "[2, 1]", "[-1]", ("waves.modes = -1", "at least 0")),
+        ("waves", "period_days = 20", "period_days = 0.3", ("0.3 days", "ω < |f|", "0.499")),
         ("waves", "period_days = 20", "period_days = -20", ("-20", "at least 0.01")),
         ("waves", "period_days = 20", "period_days = nan", ("nan", "period_days = 20")),
         ("[targets]", "name =", "nam =", ("did you mean name",)),

@@ -6,10 +6,12 @@ the sentences a person reads when one is broken are in :mod:`.problems`.
 
 from __future__ import annotations
 
+import math
 from typing import Annotated, Literal, get_args
 
-from pydantic import AfterValidator, Field, model_validator
+from pydantic import AfterValidator, Field, field_validator, model_validator
 
+from waveguide.constants import ROTATION_RATE, SECONDS_PER_DAY
 from waveguide.scenario.fields import (
     FASTEST_BAROCLINIC,
     FASTEST_BAROTROPIC,
@@ -124,7 +126,8 @@ class Waves(Table):
     modes : tuple of int
         0 is the barotropic mode, 1 to 3 the baroclinic ones; in rising order.
     period_days : float
-        Dominant period of the signal.
+        Dominant period of the signal, more than half a sidereal day: waves of shorter period are
+        not slow beside the earth's rotation at any latitude.
     window_days : float or None
         How long after the start waveforms go on; None for as long as the slowest route needs.
     drag_m_s : float
@@ -138,6 +141,16 @@ class Waves(Table):
     window_days: Days | None = None
     drag_m_s: Annotated[Number, Field(ge=0.0, le=0.01)] = 5e-4
     damping_days: Days | None = None
+
+    @field_validator("period_days")
+    @classmethod
+    def _slower_than_rotation(cls, days: float) -> float:
+        if days * SECONDS_PER_DAY * ROTATION_RATE <= math.pi:
+            raise ValueError(
+                f"{days:g} days is no period of these waves, which need ω < |f|: more than 0.499 "
+                "days at the poles, more the closer to the equator"
+            )
+        return days
 
 
 class Ocean(Table):
