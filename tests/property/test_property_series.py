@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 from scipy.signal import lfilter
 
@@ -129,6 +129,7 @@ def test_the_unit_of_the_file_does_not_matter(tmp_path_factory, seed, unit):
 
 @settings(max_examples=30, deadline=None)
 @given(seeds, st.integers(250, 850), st.floats(0.5, 3.0), st.sampled_from([-1.0, 1.0]))
+@example(0, 335, 3.0, -1.0)
 def test_a_datum_jump_is_said_with_its_size_and_date(seed, at, size, sign):
     # Noise of 5 cm that forgets itself within days: a jump of half a metre is no weather.
     values = 0.05 * red(seed, 1100, 0.8)

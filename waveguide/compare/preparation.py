@@ -208,9 +208,10 @@ def anomalies(series: Series) -> Series:
         f"trend removed; under {LEAST_YEARS:g} years an annual cycle is not told from signal"
     )
     places = datum_jumps(rest, series.step) if series.quantity in WITH_DATUM else []
+    # its size from the record itself: the annual cycle has taken up a part of it
     jumps = [
-        f"the level jumps by {jump_size(rest, i):+.3g} m at {series.times[i]} and stays: a change "
-        "of datum? It is not corrected; cut the record there, or correct it"
+        f"the level jumps by {jump_size(series.values, i):+.3g} m at {series.times[i]} and "
+        "stays: a change of datum? It is not corrected; cut the record there, or correct it"
         for i in places
     ]
     return replace(series, values=rest, notes=(*series.notes, told, *jumps))
