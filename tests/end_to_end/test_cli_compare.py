@@ -4,27 +4,10 @@ from __future__ import annotations
 
 import csv
 import json
-import sys
 
 import numpy as np
 import pytest
 import xarray as xr
-
-from waveguide import cli
-
-
-@pytest.fixture
-def run(monkeypatch, capsys):
-    """Run the command line in this process: exit status, standard output, standard error."""
-
-    def go(*arguments):
-        monkeypatch.setattr(sys, "argv", ["waveguide", *map(str, arguments)])
-        with pytest.raises(SystemExit) as ended:
-            cli.main()
-        captured = capsys.readouterr()
-        return ended.value.code or 0, captured.out, captured.err
-
-    return go
 
 
 def test_gauges_get_lags_verdicts_and_reasons(run, tmp_path, printed_figures):

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import importlib.util
 import json
-import sys
 from pathlib import Path
 
 import numpy as np
@@ -12,22 +11,7 @@ import pytest
 import xarray as xr
 
 import waveguide
-from waveguide import cli
 from waveguide.scenario import find_scenario
-
-
-@pytest.fixture
-def run(monkeypatch, capsys):
-    """Run the command line in this process: exit status, standard output, standard error."""
-
-    def go(*arguments):
-        monkeypatch.setattr(sys, "argv", ["waveguide", *map(str, arguments)])
-        with pytest.raises(SystemExit) as ended:
-            cli.main()
-        captured = capsys.readouterr()
-        return ended.value.code or 0, captured.out, captured.err
-
-    return go
 
 
 @pytest.fixture(scope="module")
@@ -142,7 +126,7 @@ def test_a_local_cluster_gives_the_same_answer(run, model):
     distributed = pytest.importorskip("distributed")
     _, alone, _ = run("lookout", "pacific_model", "--model", model, "--json")
     with distributed.LocalCluster(
-        n_workers=1, threads_per_worker=1, processes=False, dashboard_address=None
+        n_workers=1, threads_per_worker=1, processes=True, dashboard_address=None
     ) as cluster:
         status, out, _ = run(
             "lookout", "pacific_model", "--model", model, "--json", "--dask",

@@ -12,7 +12,6 @@ import pytest
 import xarray as xr
 
 import waveguide
-from waveguide import cli
 from waveguide.scenario import Scenario
 from waveguide.schema import VALIDITY
 
@@ -49,20 +48,6 @@ def scenario(tmp_path_factory):
     path = tmp_path_factory.mktemp("scenario") / "burst.toml"
     path.write_text(BURST, "utf-8")
     return path
-
-
-@pytest.fixture
-def run(monkeypatch, capsys):
-    """Run the command line in this process: exit status, standard output, standard error."""
-
-    def go(*arguments):
-        monkeypatch.setattr(sys, "argv", ["waveguide", *map(str, arguments)])
-        with pytest.raises(SystemExit) as ended:
-            cli.main()
-        captured = capsys.readouterr()
-        return ended.value.code or 0, captured.out, captured.err
-
-    return go
 
 
 def test_the_answer_is_a_table(run, scenario):

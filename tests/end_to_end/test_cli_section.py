@@ -10,20 +10,6 @@ import numpy as np
 import pytest
 import xarray as xr
 
-from waveguide import cli
-
-
-@pytest.fixture
-def run(monkeypatch, capsys):
-    def go(*arguments):
-        monkeypatch.setattr(sys, "argv", ["waveguide", *map(str, arguments)])
-        with pytest.raises(SystemExit) as ended:
-            cli.main()
-        captured = capsys.readouterr()
-        return ended.value.code or 0, captured.out, captured.err
-
-    return go
-
 
 def test_a_negative_longitude_typed_plainly(run):
     status, out, _ = run("section", "-123.3", "38.5")
