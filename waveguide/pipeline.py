@@ -296,17 +296,12 @@ def mode_guide(scenario: Scenario, mode: int, say: Progress) -> tuple[Network, M
     packaged = adapted(network, atlas_mode(atlas, mode), omega)
     if ocean.source == "packaged":
         return network, packaged
-    from waveguide.network.own import own_atlas
+    from waveguide.own_modes import own_modes
 
     say(f"own files at the nodes of mode {mode}")
-    own = atlas_mode(
-        own_atlas(
-            family_of(mode), ocean.bathymetry, ocean.climatology, ocean.temperature, ocean.atlas
-        ),
-        mode,
-    )
+    own = adapted(network, atlas_mode(own_modes(ocean, mode), mode), omega)
     _require_coverage(scenario, network, packaged, own)
-    return network, adapted(network, own, omega)
+    return network, own
 
 
 def _require_coverage(

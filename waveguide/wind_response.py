@@ -142,7 +142,7 @@ class _OfMode(NamedTuple):
 
 
 def _of_mode(question: WindScenario, number: int, omega: float, forcer: Forcer) -> _OfMode:
-    network, mode, depth = _mode(question, number, omega)
+    network, mode = _mode(question, number, omega)
     damping, drag = damping_rate(question.waves.damping_days, mode), question.waves.drag_m_s
     physics = step_physics(network, mode, omega, damping, drag)
     friction = friction_of_steps(network, mode, drag)
@@ -153,7 +153,9 @@ def _of_mode(question: WindScenario, number: int, omega: float, forcer: Forcer) 
     )
     responding = {i: a for i, a in enumerate(found.targets) if a.status == RESPONDS}
     ratios = {
-        i: mooring_ratios(packaged_climatology(), *places[i], float(depth[answer.node]), number)
+        i: mooring_ratios(
+            packaged_climatology(), *places[i], float(mode.depth[answer.node]), number
+        )
         for i, answer in responding.items() if number > 0 and network.equatorial[answer.node]
     }
     own = question.ocean.climatology or question.ocean.atlas
@@ -164,19 +166,14 @@ def _of_mode(question: WindScenario, number: int, omega: float, forcer: Forcer) 
     )
 
 
-def _mode(
-    question: WindScenario, number: int, omega: float
-) -> tuple[Network, ModeAtNodes, Array]:
-    """Network, mode and depth at its nodes in the scenario's ocean."""
+def _mode(question: WindScenario, number: int, omega: float) -> tuple[Network, ModeAtNodes]:
+    """Network and mode in the scenario's ocean."""
     network, atlas = packaged_guide(family_of(number))
-    ocean = question.ocean
-    if ocean.source == "own files":
-        from waveguide.network.own import own_atlas
+    if question.ocean.source == "own files":
+        from waveguide.own_modes import own_modes
 
-        atlas = own_atlas(
-            family_of(number), ocean.bathymetry, ocean.climatology, ocean.temperature, ocean.atlas
-        )
-    return network, adapted(network, atlas_mode(atlas, number), omega), atlas.depth
+        atlas = own_modes(question.ocean, number)
+    return network, adapted(network, atlas_mode(atlas, number), omega)
 
 
 def _forcer(question: WindScenario) -> tuple[Forcer, list[str], list[Path]]:

@@ -67,7 +67,8 @@ FASTEST_DISPERSION = 0.3
 
 LARGEST_GROWTH = 0.5
 """Relative growth of the wavenumber at which the first order is held: about there a shelf mode
-reaches its cut-off, which the first order does not have."""
+reaches its cut-off, which the first order does not have. A wavenumber so held is not quite causal:
+a short burst has up to a tenth of its peak in the day before the front (mode 2 off south China)."""
 
 _MOST_NEPERS = 300.0  # stands for "nothing is left": exp(−2·300) is above the smallest double
 

@@ -102,7 +102,8 @@ function between(values, place) {
 }
 
 function fixed(value, digits) {
-  return value === null || value === undefined || !isFinite(value) ? "–" : value.toFixed(digits);
+  if (value === null || value === undefined || !isFinite(value)) { return "–"; }
+  return value.toFixed(digits).replace(/^-(0(\.0*)?)$/, "$1"); // no negative nothing
 }
 
 function significant(value, digits) {
